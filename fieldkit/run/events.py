@@ -183,8 +183,11 @@ class Check(Body):
 
 
 class Unlocked(Answer):
+    """A lock taken off by `who` (its holder, or under the exception another), whose signature event follows at once."""
+
     point: str
     lock: str
+    who: str
     checks: tuple[Check, ...] = ()
     #: the second person of the exception
     second: str | None = None
@@ -255,7 +258,7 @@ class WentOn(Body):
 
 
 class Corrected(Body):
-    """The text of an earlier event was wrong. `field` names which: "text", "before", "after", "points.<name>", "lock"."""
+    """The text of an earlier event was wrong. `field`: "text", "before", "after", "points.<name>", "lock"."""
 
     seq: int
     field: str
@@ -420,6 +423,45 @@ class Event(Body):
     raw: bytes
 
 
+def plain(event: Event) -> dict[str, Any]:
+    """The event as plain JSON values, defaults written out: what the fold reads, here and on the tablet."""
+    head = event.head
+    return {
+        "seq": head.seq,
+        "kind": head.kind,
+        "by": head.by,
+        "at": {"wall": head.at.wall, "mono": head.at.mono, "boot": head.at.boot},
+        "run": head.run,
+        "chain": head.chain,
+        "prev": head.prev,
+        "sha256": event.sha256,
+        "body": event.body.model_dump(mode="json"),
+    }
+
+
+def next_event(
+    state: dict[str, Any], kind: str, body: dict[str, Any], by: str, at: dict[str, str], app: str
+) -> dict[str, Any]:
+    """The envelope of the event that follows `state`, ready for `to_text`; the caller hashes and stores that text."""
+    return {
+        "v": VERSION,
+        "run": state["run"],
+        "chain": state["chain"],
+        "seq": state["seq"] + 1,
+        "prev": state["head"],
+        "kind": kind,
+        "by": by,
+        "at": {"wall": at["wall"], "mono": at["mono"], "boot": at["boot"]},
+        "app": app,
+        "body": body,
+    }
+
+
+def to_text(envelope: dict[str, Any]) -> str:
+    """One event as compact JSON in the order of its keys. Made once, by whoever makes the event; never remade."""
+    return json.dumps(envelope, ensure_ascii=False, separators=(",", ":"), allow_nan=False)
+
+
 def digest(raw: bytes) -> str:
     """SHA-256 of an event's bytes: its name, and the next one's `prev`."""
     return hashlib.sha256(raw).hexdigest()
@@ -447,10 +489,15 @@ def parse(raw: bytes) -> Event:
     while v < VERSION and (head.kind, v) in UPCASTS:
         body, v = UPCASTS[head.kind, v](body), v + 1
     if v != VERSION or head.kind not in EVENTS:
-        raise Refusal("unknown-version", f"Event {head.seq} is {head.kind!r} version {head.v}, which is not known here. Update fieldkit.")
+        raise Refusal(
+            "unknown-version",
+            f"Event {head.seq} is {head.kind!r} version {head.v}, which is not known here. Update fieldkit.",
+        )
     try:
         return Event(head=head, body=EVENTS[head.kind].model_validate(body), sha256=digest(raw), raw=raw)
     except ValidationError as exc:
         first = exc.errors()[0]
         where = ".".join(str(p) for p in first["loc"])
-        raise Refusal("damaged-event", f"Event {head.seq} ({head.kind}) is damaged at {where}: {first['msg']}.") from exc
+        raise Refusal(
+            "damaged-event", f"Event {head.seq} ({head.kind}) is damaged at {where}: {first['msg']}."
+        ) from exc
