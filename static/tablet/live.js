@@ -1,0 +1,46 @@
+/** Live now, locked, next change: what the rails show, in words, beside their heads. */
+import { h } from "./dom.js";
+import { CHANGE_WORDS, LIVE, SHUT, countdown, list, minute, sourceTitle } from "./words.js";
+import { current } from "./timeline.js";
+
+/** @param {any} sheet @param {any} state @param {any} progress */
+function liveWords(sheet, state, progress) {
+  const now = current(state.sources);
+  const waiting = new Set((progress?.waits ?? []).filter((/** @type {any} */ w) => Number(w.left) > 0).map((/** @type {any} */ w) => w.source));
+  return sheet.sources.filter((/** @type {any} */ s) => LIVE.includes(now[s.name])).map((/** @type {any} */ s) => {
+    const level = progress?.level && s.name === "beam_supply" && now[s.name] === "on" ? ` at ${progress.level}` : "";
+    const manner = now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) ? " (waiting)" : "";
+    return `${sourceTitle(sheet, s.name)}${level}${manner}`;
+  });
+}
+
+/** @param {any} sheet @param {any} state */
+function shutWords(sheet, state) {
+  const at = new Map((state.log ?? []).map((/** @type {any} */ row) => [row.seq, row.wall]));
+  return sheet.sources.filter((/** @type {any} */ s) => SHUT.includes(state.sources?.[s.name]?.state)).map((/** @type {any} */ s) => {
+    const found = state.sources[s.name], when = at.get(found.seq);
+    const how = found.state === "locked" ? "not proved dead" : found.state === "proved" ? "proved dead" : "proved dead and earthed";
+    return { title: sourceTitle(sheet, s.name), how: `${how}${when && found.state !== "locked" ? ` ${minute(when)}` : ""}`, sure: found.state !== "locked" };
+  });
+}
+
+/** @param {any} sheet @param {any} state @param {any} progress */
+export function nextWords(sheet, state, progress) {
+  const next = progress?.next_change;
+  if (!next) return "none in sight";
+  const sets = Array.isArray(next.sources) ? Object.fromEntries(next.sources.map((/** @type {any} */ s) => (typeof s === "string" ? [s, null] : [s.name, s.state]))) : next.sources;
+  const move = sheet.moves.filter((/** @type {any} */ m) => m.origin === next.step).map((/** @type {any} */ m) => m.effects?.sets ?? {}).find((/** @type {any} */ s) => Object.keys(sets).some((k) => k in s)) ?? {};
+  const words = Object.keys(sets).map((s) => `${sourceTitle(sheet, s)} ${/** @type {any} */ (CHANGE_WORDS)[sets[s] ?? move[s]] ?? "changes"}`);
+  const wait = (progress.waits ?? []).map((/** @type {any} */ w) => Number(w.left)).filter((/** @type {number} */ n) => n > 0);
+  const where = next.step === progress.node ? "at this step" : `at step ${next.number}`;
+  return `${list(words)}, ${where}${wait.length ? `, in ${countdown(Math.max(...wait))} at the earliest` : ""}`;
+}
+
+/** The words as a list of terms. @param {any} sheet @param {any} state @param {any} progress @returns {HTMLElement} */
+export function liveList(sheet, state, progress) {
+  const live = liveWords(sheet, state, progress), shut = shutWords(sheet, state);
+  return h("dl", {},
+    h("dt", {}, "Live now"), h("dd", {}, live.length ? live.join(", ") : "nothing"),
+    shut.length ? [h("dt", {}, "Locked"), h("dd", {}, shut.map((/** @type {any} */ s, /** @type {number} */ k) => [k ? ", " : "", `${s.title}, `, s.sure ? s.how : h("b", {}, s.how)]))] : null,
+    h("dt", {}, "Next change"), h("dd", {}, nextWords(sheet, state, progress)));
+}
