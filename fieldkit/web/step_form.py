@@ -75,7 +75,11 @@ FORMS: dict[str, type[Form]] = {
 def controls_html() -> str:
     """The HTML of every control's template, in order. Raises jinja2.UndefinedError where a template asks for more."""
     environment = Environment(
-        loader=FileSystemLoader(folder("templates")), autoescape=True, undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True
+        loader=FileSystemLoader(folder("templates")),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
     )
     return "".join(
         environment.get_template(f"controls/{control}.html").render(form=FORMS[control]()) for control in CONTROLS
