@@ -82,10 +82,15 @@ class Rule(Part):
 
 
 class Argument(Part):
-    """One argument of a library formula, SI range inclusive, decimal strings; None is unbounded."""
+    """One argument of a library formula, SI range inclusive, decimal strings; None is unbounded.
+
+    `factor` and `offset` are those of `unit`, so that a refusal outside the range can be told in it.
+    """
 
     name: str
     unit: str
+    factor: str = "1"
+    offset: str = "0"
     low: str | None = None
     high: str | None = None
 
