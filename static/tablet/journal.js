@@ -24,6 +24,24 @@ export const lockOf = (/** @type {string} */ run) => `fieldkit-run:${run}`;
 export const OPEN_LOCK = "fieldkit-run-open";
 
 /**
+ * An event from its bytes, or null where they are no text. A newer version than this page knows is told apart from damage.
+ * @param {ArrayBuffer} bytes
+ */
+async function readKept(bytes) {
+  const name = await sha256(bytes);
+  try {
+    const line = text(bytes);
+    const event = events.read(line, name);
+    if (!("refused" in event)) return event;
+    if (event.refused.code !== "unknown-version") return null;
+    const { seq, prev } = JSON.parse(line);
+    return { seq, prev, sha256: name, refused: event.refused };
+  } catch {
+    return null;
+  }
+}
+
+/**
  * Every event of a run as stored, each checked: bytes against hash, hash against the next one's `prev`, and the last
  * against the run's own record. `broken` says what does not hold; the sound part is given all the same.
  * @param {Store} store @param {RunRow} row
@@ -36,13 +54,12 @@ export async function load(store, row) {
   const found = [];
   let prev = row.sheet;
   for (const { seq, sha256: name, bytes } of kept) {
-    const real = await sha256(bytes);
-    const event = events.read(text(bytes), real);
-    if ("refused" in event) return { events: found, broken: event.refused.says };
-    if (real !== name || seq !== found.length || event.seq !== seq || event.prev !== prev) {
+    const event = await readKept(bytes);
+    if (!event || event.sha256 !== name || seq !== found.length || event.seq !== seq || event.prev !== prev) {
       return { events: found, broken: `The record of this run is damaged on this tablet at event ${seq}. Nothing more can be added to it; what is sound can be read and sent.` };
     }
-    prev = real;
+    if ("refused" in event) return { events: found, broken: event.refused.says };
+    prev = event.sha256;
     found.push(event);
   }
   if (found.length - 1 !== row.seq || prev !== row.head) {

@@ -43,6 +43,7 @@ function start() {
  */
 function send(job) {
   return new Promise((resolve, reject) => {
+    const to = start();
     const id = (next += 1);
     const timer = setTimeout(() => {
       waiting.delete(id);
@@ -58,7 +59,7 @@ function send(job) {
         reject(bad);
       },
     });
-    start().postMessage({ id, ...job });
+    to.postMessage({ id, ...job });
   });
 }
 
