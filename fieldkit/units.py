@@ -112,6 +112,7 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("uF", "µF", "0.000001", _FARAD),
     ("nF", "nF", "0.000000001", _FARAD),
     ("pF", "pF", "0.000000000001", _FARAD),
+    ("F/m", "F/m", "1", _FARAD.over(_METRE)),
     ("s", "s", "1", _SECOND),
     ("ms", "ms", "0.001", _SECOND),
     ("us", "µs", "0.000001", _SECOND),

@@ -28,7 +28,7 @@ class Function:
     most: int | None
     #: "operator": written + - < and so on; "call": written by its name; "column": by name, first argument a column
     way: str
-    #: how units behave: same, times, over, power, order, equal, flags, number, root, pick, number-of, index
+    #: how units behave: a rule of check.py
     rule: str
     says: str
     apply: Callable[..., Value] | None = None

@@ -194,7 +194,7 @@ def _other_spellings() -> set[str]:
 
 
 @v_args(inline=True)
-class _Terms(Transformer):  # type: ignore[type-arg]
+class _Terms(Transformer):
     """Builds terms bottom-up while the text is parsed, so that no nesting can exhaust the stack."""
 
     def start(self, term: Term) -> Term:
