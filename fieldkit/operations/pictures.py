@@ -12,6 +12,7 @@ import warnings
 from dataclasses import dataclass
 
 from PIL import Image, ImageOps
+from sqlalchemy.orm import Session
 
 from fieldkit.errors import Refusal
 from fieldkit.operations import moment
@@ -64,36 +65,52 @@ def reencode(data: bytes) -> Made:
     return Made(out.getvalue(), clean.width, clean.height)
 
 
-def put(data: bytes, source: str, expected: str | None = None) -> str:
-    """Store a picture that came from `source` (a device or person id); gives its SHA-256. Sending it again is fine.
+@dataclass(frozen=True)
+class Prepared:
+    """A picture as received and as made here, ready to be stored."""
+
+    sha256: str
+    original: bytes
+    made: Made
+
+
+def prepare(data: bytes, expected: str | None = None) -> Prepared:
+    """Check and re-encode, outside any transaction.
 
     Raises Refusal wrong-digest when the bytes are not those of `expected`, not-a-picture, too-large.
     """
     digest = hashlib.sha256(data).hexdigest()
     if expected is not None and digest != expected:
-        raise Refusal(
-            "wrong-digest",
-            f"What arrived is {digest[:12]}, not {expected[:12]}: it was damaged on the way. Send it again.",
+        says = f"What arrived is {digest[:12]}, not {expected[:12]}: it was damaged on the way. Send it again."
+        raise Refusal("wrong-digest", says)
+    return Prepared(digest, data, reencode(data))
+
+
+def add(session: Session, one: Prepared, source: str) -> None:
+    """Within the caller's transaction; a picture that is here already stays as it is."""
+    if session.get(Picture, one.sha256) is not None:
+        return
+    session.add(
+        Picture(
+            sha256=one.sha256,
+            original=one.original,
+            data=one.made.data,
+            data_sha256=hashlib.sha256(one.made.data).hexdigest(),
+            media="image/jpeg",
+            width=one.made.width,
+            height=one.made.height,
+            source=source,
+            received=moment.text(),
         )
-    if db.session.get(Picture, digest) is not None:
-        return digest
-    made = reencode(data)
+    )
+
+
+def put(data: bytes, source: str) -> str:
+    """Store a picture that came from `source` (a person's id); gives its SHA-256. Storing it again is fine."""
+    one = prepare(data)
     with writing() as session:
-        if session.get(Picture, digest) is None:
-            session.add(
-                Picture(
-                    sha256=digest,
-                    original=data,
-                    data=made.data,
-                    data_sha256=hashlib.sha256(made.data).hexdigest(),
-                    media="image/jpeg",
-                    width=made.width,
-                    height=made.height,
-                    source=source,
-                    received=moment.text(),
-                )
-            )
-    return digest
+        add(session, one, source)
+    return one.sha256
 
 
 def shown(sha256: str) -> bytes:

@@ -77,7 +77,8 @@ class Enrolment(Model):
     __tablename__ = "enrolments"
     id: Mapped[str] = mapped_column(String(40), primary_key=True)
     person: Mapped[str] = mapped_column(ForeignKey("people.id"))
-    device: Mapped[str] = mapped_column(ForeignKey("devices.id"))
+    #: None for a key that a supervisor holds in a desk browser
+    device: Mapped[str | None] = mapped_column(ForeignKey("devices.id"))
     person_jwk: Mapped[str] = mapped_column(Text)
     proof: Mapped[str] = mapped_column(Text)
     #: waiting, issued, refused
@@ -124,7 +125,7 @@ class Tube(Model):
 
 
 class Nameplate(Model):
-    """One entry of a tube's nameplate. It counts only when a second person entered the same and its photograph is here."""
+    """An entry of a tube's nameplate. It counts when a second person entered the same and its photograph is here."""
 
     __tablename__ = "nameplates"
     id: Mapped[int] = mapped_column(primary_key=True, autoincrement=True)
@@ -272,7 +273,7 @@ class KeptEvent(Model):
 
 
 class Picture(Model):
-    """A picture: `original` as received, under its SHA-256; `data` re-encoded here, the only one that is shown. Fenced."""
+    """A picture: `original` as received, under its SHA-256; `data` re-encoded here, the one that is shown. Fenced."""
 
     __tablename__ = "pictures"
     sha256: Mapped[str] = _sha()
@@ -303,6 +304,8 @@ class Receipt(Model):
     run: Mapped[str] = mapped_column(String(80), primary_key=True)
     chain: Mapped[str] = mapped_column(String(160), primary_key=True)
     seq: Mapped[int] = mapped_column(primary_key=True)
+    #: a restored database has another store id, and gives its own receipts
+    store: Mapped[str] = mapped_column(String(64), primary_key=True)
     head: Mapped[str] = mapped_column(String(64))
     jws: Mapped[str] = mapped_column(Text)
     time: Mapped[str] = mapped_column(String(32))

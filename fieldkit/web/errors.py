@@ -52,8 +52,8 @@ def is_api() -> bool:
 
 
 def refused(code: str, says: str, status: int, **more: Any) -> Response:
-    """The one form of an error on the wire."""
-    response = jsonify({"refused": {"code": code, "says": says}, **more})
+    """The one form of an error on the wire; `more` stands beside code and sentence."""
+    response = jsonify({"refused": {"code": code, "says": says, **more}})
     response.status_code = status
     response.headers["X-Fieldkit"] = "1"
     return response
@@ -63,22 +63,25 @@ def _page(code: str, says: str, status: int) -> ResponseReturnValue:
     return render_template("errors/refused.html", code=code, says=says, status=status), status
 
 
-def _answer(code: str, says: str, status: int) -> ResponseReturnValue:
-    return refused(code, says, status) if is_api() else _page(code, says, status)
+def _answer(code: str, says: str, status: int, **more: Any) -> ResponseReturnValue:
+    return refused(code, says, status, **more) if is_api() else _page(code, says, status)
 
 
 def on_refusal(bad: Refusal) -> ResponseReturnValue:
     status = STATUS.get(bad.code, 422)
     if bad.code == "not-signed-in" and not is_api() and request.method == "GET":
         return redirect(url_for("signin.page", then=request.full_path.rstrip("?")))
-    answer = current_app.make_response(_answer(bad.code, bad.sentence, status))
-    if bad.code == "slow-down":
-        answer.headers["Retry-After"] = str(bad.detail.get("seconds", 1))
+    wait = {"wait_s": bad.detail["seconds"]} if "seconds" in bad.detail else {}
+    answer = current_app.make_response(_answer(bad.code, bad.sentence, status, **wait))
+    if wait:
+        answer.headers["Retry-After"] = str(wait["wait_s"])
     return answer
 
 
 def on_csrf(_bad: CSRFError) -> ResponseReturnValue:
-    says = "This form was open for too long, or did not come from this site. Go back, load the page again, and send it once more."
+    says = (
+        "This form was open for too long, or did not come from this site. Load the page again, and send it once more."
+    )
     return _answer("form-too-old", says, 400)
 
 

@@ -1,15 +1,17 @@
 """The fields of the controls, and their HTML: what the tablet fills from a sheet, without anyone's data.
 
 `controls_html` is the kit's "controls" blob: one `<template data-control="...">` a control, rendered when the kit is
-made. Not here: what an answer means (fieldkit.run) and any value; no form is ever posted, events are made on the tablet.
-To add a control: a Form below (or PLAIN), one line in FORMS, templates/controls/<control>.html.
+made. Not here: what an answer means (fieldkit.run) and any value; no form is posted, events are made on the tablet.
+To add a control: a Form below (or Plain), one line in FORMS, templates/controls/<control>.html.
 """
 
 from __future__ import annotations
 
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
+from markupsafe import Markup
 from wtforms import FileField, Form, StringField, TextAreaField
 
+from fieldkit import drawing
 from fieldkit.files import folder
 from fieldkit.sheet.controls import CONTROLS
 
@@ -72,6 +74,11 @@ FORMS: dict[str, type[Form]] = {
 }
 
 
+def _symbol(name: str) -> Markup:
+    """A symbol of fieldkit.drawing, hidden from readers: a word stands beside each."""
+    return Markup(drawing.symbol(name))  # noqa: S704 - our own drawing, no data in it
+
+
 def controls_html() -> str:
     """The HTML of every control's template, in order. Raises jinja2.UndefinedError where a template asks for more."""
     environment = Environment(
@@ -81,6 +88,7 @@ def controls_html() -> str:
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    environment.globals["symbol"] = _symbol
     return "".join(
         environment.get_template(f"controls/{control}.html").render(form=FORMS[control]()) for control in CONTROLS
     )

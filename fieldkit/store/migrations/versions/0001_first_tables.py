@@ -127,10 +127,11 @@ def upgrade() -> None:
         sa.Column("run", sa.String(length=80), nullable=False),
         sa.Column("chain", sa.String(length=160), nullable=False),
         sa.Column("seq", sa.Integer(), nullable=False),
+        sa.Column("store", sa.String(length=64), nullable=False),
         sa.Column("head", sa.String(length=64), nullable=False),
         sa.Column("jws", sa.Text(), nullable=False),
         sa.Column("time", sa.String(length=32), nullable=False),
-        sa.PrimaryKeyConstraint("run", "chain", "seq"),
+        sa.PrimaryKeyConstraint("run", "chain", "seq", "store"),
     )
     op.create_table(
         "run_pictures",
@@ -201,7 +202,7 @@ def upgrade() -> None:
         "enrolments",
         sa.Column("id", sa.String(length=40), nullable=False),
         sa.Column("person", sa.String(length=32), nullable=False),
-        sa.Column("device", sa.String(length=64), nullable=False),
+        sa.Column("device", sa.String(length=64), nullable=True),
         sa.Column("person_jwk", sa.Text(), nullable=False),
         sa.Column("proof", sa.Text(), nullable=False),
         sa.Column("status", sa.String(length=16), nullable=False),
