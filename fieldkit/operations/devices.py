@@ -1,7 +1,7 @@
 """Tablets: challenges, signed requests, revoking. A tablet is known by its key; no cookie and no password is involved.
 
 A nonce is made of the time and the server's secret, so none is stored; it is good for ten minutes. Every call that
-changes something is idempotent, so one that is sent twice inside that time (browsers do) changes nothing the second time.
+changes something is idempotent, so one that is sent twice inside that time (browsers do) changes nothing again.
 Not here: how a tablet becomes known (enrol.py).
 """
 
@@ -82,7 +82,7 @@ def admit(tablet: Tablet) -> Tablet:
     """The tablet, if it may fetch and send. Raises Refusal waiting-device or revoked-device."""
     if tablet.status == "revoked":
         raise Refusal(
-            "revoked-device", "This tablet was put out of use. What it holds stays; hand it to an administrator."
+            "revoked-device", "This tablet was put out of use. What it holds stays; give it to an administrator."
         )
     if tablet.status == "waiting":
         raise Refusal("waiting-device", "This tablet waits for an administrator to issue its first certificate.")

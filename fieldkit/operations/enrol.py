@@ -78,7 +78,8 @@ def ask(
 ) -> tuple[str, str]:
     """A tablet asks for a person's certificate; gives (enrolment id, person id). Asking again gives the same.
 
-    Raises Refusal wrong-password, slow-down, bad-device, bad-key, revoked-device, no-signing-role, old-nonce, bad-signature.
+    Raises Refusal wrong-password, slow-down, bad-device, bad-key, revoked-device, no-signing-role, old-nonce, or
+    bad-signature.
     """
     actor = signin.check_password(login, password, where)
     device_id, name = str(device.get("id", "")), str(device.get("name", "")).strip()

@@ -1,7 +1,7 @@
 """The kit: all that a tablet takes to site, as a signed manifest of hashes and the bytes behind them.
 
 The registers' form stands in DEVELOPERS.md, "Registers". What is in a kit depends only on what is stored, so the same
-content has the same hash and is fetched once. Not here: the control templates, which are pages (fieldkit.web.step_form).
+content has the same hash and is fetched once. Not here: making the control templates (fieldkit.web.step_form).
 """
 
 from __future__ import annotations

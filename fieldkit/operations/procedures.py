@@ -1,6 +1,7 @@
 """Sheets and the YAML they came from: stored under their SHA-256, and which one is in use.
 
-Compiling is fieldkit.procedure's. An edition that is released is never changed: the same number with other bytes is refused.
+Compiling is fieldkit.procedure's. An edition that is released is never changed: the same number with other content is
+refused.
 """
 
 from __future__ import annotations

@@ -18,8 +18,8 @@ from sqlalchemy.orm import Session
 from fieldkit.errors import Refusal
 from fieldkit.operations import moment, notices, pictures, records, settings, signatures
 from fieldkit.operations.devices import Tablet
-from fieldkit.operations.station import Station
 from fieldkit.operations.signatures import Checked
+from fieldkit.operations.station import Station
 from fieldkit.run import events
 from fieldkit.run.events import Event
 from fieldkit.store.db import db, writing
@@ -168,7 +168,7 @@ def _take(work: _Work, arrived: list[Arrived]) -> None:
             continue
         if one.code:
             _keep(work, one, one.code, one.says)
-        elif one.seq in have or one.seq is not None and one.seq < work.next:
+        elif one.seq in have or (one.seq is not None and one.seq < work.next):
             says = (
                 f"Event {one.seq} of this run is here already with other content. Both are kept; tell an administrator."
             )
@@ -255,7 +255,7 @@ def _join(work: _Work, one: Arrived) -> bool:
 def _check_link(row: Chain, event: Event) -> Kept | None:
     if event.head.prev == row.head:
         return None
-    says = f"Event {event.head.seq} does not follow from the one before it: something was changed. It is kept; tell an administrator."
+    says = f"Event {event.head.seq} does not follow from the one before it: something was changed. It is kept and shown."
     return Kept(event.head.seq, "broken-chain", says)
 
 
@@ -371,7 +371,7 @@ def _settle_kept(work: _Work, one: Arrived) -> None:
 
 
 def receipt(station: Station, run: str, chain: str) -> str | None:
-    """The receipt for everything of a chain that is committed; None where that is nothing. The same for the same head."""
+    """The receipt for all of a chain that is committed, the same for the same head; None where that is nothing."""
     row = db.session.get(Chain, (run, chain))
     if row is None or row.seq < 0:
         return None

@@ -1,1 +1,1 @@
-"""The database: engine and transactions (db), every table on one page (tables), fences, migrations. No rules of the trade."""
+"""The database: engine and transactions (db), every table on one page (tables), fences, migrations."""

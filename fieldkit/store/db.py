@@ -92,7 +92,7 @@ def listen(engine: Engine) -> None:
     @event.listens_for(engine, "begin")
     def _begin(connection: Connection) -> None:
         write = connection.get_execution_options().get("fieldkit_write", False)
-        # a deferred transaction that turns writer fails at once under load, whatever the timeout: so writers say so first
+        # a reader that turns writer fails at once under load, whatever the timeout: so writers say so first
         connection.exec_driver_sql("BEGIN IMMEDIATE" if write else "BEGIN")
 
 
@@ -109,7 +109,7 @@ def start(app: Flask, url: str) -> None:
 def writing() -> Iterator[Session]:
     """One writing transaction: committed when the block ends, rolled back when it raises.
 
-    Ends a read that was open on this session, so that nothing read earlier is trusted. Nesting is a fault of the caller.
+    Ends a read that was open on this session, so that nothing read earlier is trusted. Nesting is the caller's fault.
     """
     session: Session = db.session()
     if session.info.get("writing"):

@@ -91,7 +91,7 @@ class Enrolment(Model):
 
 
 class PersonKey(Model):
-    """An issued certificate: `kid` is the SHA-256 of its DER. Kept after it is revoked, to judge what it signed before."""
+    """An issued certificate: `kid` is the SHA-256 of its DER. Kept when revoked, to judge what it signed before."""
 
     __tablename__ = "person_keys"
     kid: Mapped[str] = _sha()

@@ -1,6 +1,6 @@
 """The registers at the desk: sites, cabinets with their lock boards, tubes, instruments; and nameplates entered twice.
 
-Read only but for nameplates: the first entry with its photograph, the second by somebody else who does not see the first.
+Read only but for nameplates: a first entry with its photograph, a second by somebody else who does not see the first.
 """
 
 from __future__ import annotations

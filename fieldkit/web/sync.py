@@ -1,4 +1,4 @@
-"""The tablet's calls for its kit, its events and its pictures. Signed by the tablet's key; no cookie, no token, no redirect.
+"""The tablet's calls for its kit, its events and its pictures: signed by its key, no cookie, no token, no redirect.
 
 An answer that is not JSON with `X-Fieldkit: 1` is no answer of this server, whatever its status says.
 """
@@ -6,6 +6,7 @@ An answer that is not JSON with `X-Fieldkit: 1` is no answer of this server, wha
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping
 from dataclasses import asdict
 
 from flask import Blueprint, Response, request
@@ -88,7 +89,7 @@ def events(run: str) -> Response:
     return wire.answer(**content)
 
 
-def _refused(status: int, code: str, says: str, content: dict[str, object]) -> Response:
+def _refused(status: int, code: str, says: str, content: Mapping[str, object]) -> Response:
     response = wire.answer(refused={"code": code, "says": says}, **content)
     response.status_code = status
     return response
