@@ -56,13 +56,14 @@ async function reach(path, how) {
  */
 async function ours(reply) {
   const says = reply.headers.get("X-Fieldkit") === "1";
-  if (reply.status === 413) throw new Refused("too-large", SAYS.large);
+  if (reply.status === 413) throw new Refused("too-large", SAYS.large, { status: 413 });
   if (reply.status >= 500 && reply.status !== 511 && reply.status !== 599) throw new Refused("server-trouble", SAYS.trouble, { status: reply.status });
   if (!says) throw new Refused("not-our-server", SAYS.foreign, { status: reply.status });
   if (reply.status >= 200 && reply.status < 300) return reply;
-  const told = (await json(reply)).refused;
+  const answer = await json(reply);
+  const told = answer.refused;
   if (!told || typeof told.code !== "string") throw new Refused("not-our-server", SAYS.foreign, { status: reply.status });
-  throw new Refused(told.code, String(told.says), { status: reply.status, by: "server", ...("wait_s" in told ? { wait_s: told.wait_s } : {}) });
+  throw new Refused(told.code, String(told.says), { status: reply.status, by: "server", answer, ...("wait_s" in told ? { wait_s: told.wait_s } : {}) });
 }
 
 /** @param {Response} reply @returns {Promise<any>} */

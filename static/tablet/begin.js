@@ -32,7 +32,7 @@ function givens(sheet, site, cabinet, tube) {
   const out = {};
   for (const given of sheet.givens) {
     const value = from[/** @type {"site"|"cabinet"|"tube"} */ (given.origin)][given.name];
-    if (value) out[given.name] = value;
+    if (value) out[given.name] = { texts: value.texts, unit: value.unit ?? "", source: value.source };
     else missing.push(`${given.name.replaceAll("_", " ")} (${given.origin})`);
   }
   if (missing.length) throw new Refused("given-missing", `The registers do not have: ${missing.join(", ")}. Have them entered at the desk, then fetch the kit.`);

@@ -33,6 +33,6 @@ export async function check(token, pinned, expected, hashOf) {
  */
 export async function checkPicture(token, pinned, sha) {
   const { payload } = await verify(token, await publicKey(pinned), "fieldkit-receipt");
-  if (payload.sha256 !== sha) throw new Refused("bad-receipt", "The receipt is for another picture than the one that was sent.");
+  if (payload.picture !== sha) throw new Refused("bad-receipt", "The receipt is for another picture than the one that was sent.");
   return payload;
 }

@@ -27,7 +27,7 @@ const FRESH_S = 120;
 /** Event kind -> whose passphrase it needs, and what their signature then means. @type {Record<string, (body: any) => {person: string, meaning: string} | null>} */
 const SPEAKS_FOR = {
   released: (body) => ({ person: body.who, meaning: "released" }),
-  unlocked: (body) => ({ person: body.second ?? body.who, meaning: "unlocked" }),
+  unlocked: (body) => ({ person: body.who, meaning: "unlocked" }),
   "went-on": (body) => (body.authority ? { person: body.authority, meaning: "allowed" } : null),
 };
 

@@ -26,7 +26,13 @@ const SOON_MS = 2_000;
 export const LOCK = "fieldkit-sync";
 
 /** codes after which the same pass need not try anything else */
-const DOWN = ["unreachable", "not-our-server", "cut-reply", "server-trouble", "not-enrolled", "no-keys-here", "storage-dead"];
+const DOWN = [
+  "unreachable", "not-our-server", "cut-reply", "server-trouble", "not-enrolled", "no-keys-here", "storage-dead",
+  "unknown-device", "waiting-device", "revoked-device",
+];
+/** a batch that did not arrive in time is tried smaller in the next pass */
+let fits = BATCH_BYTES;
+const LEAST_BYTES = 4 * 1024;
 
 /** @param {string} run @param {string} chain */
 const rangeOf = (run, chain, from = 0) => IDBKeyRange.bound([run, chain, from], [run, chain, Infinity]);
@@ -73,7 +79,7 @@ async function sendRun(store, row, server) {
   }
   // Where the server has all but the receipt never came, the last event is sent once more: it costs nothing there.
   let from = Math.min(head.seq + 1, row.seq);
-  let limit = BATCH_BYTES;
+  let limit = fits;
   while (from <= row.seq) {
     const part = batch(kept.filter((k) => k.seq >= from), limit);
     if (part.length === 0) throw new Refused("run-broken", `Event ${from} of run ${row.run} is missing on this tablet.`);
@@ -81,7 +87,10 @@ async function sendRun(store, row, server) {
     try {
       answer = await api.call(store, "POST", `${path}/events`, { chain: row.chain, events: part.map((k) => text(k.bytes)) });
     } catch (bad) {
-      if (part.length === 1 || !smallerMayHelp(bad)) throw withSeq(bad, part[0].seq);
+      if (/** @type {any} */ (bad).late) fits = Math.max(LEAST_BYTES, Math.floor(fits / 2));
+      const keptThere = /** @type {any} */ (bad).answer?.kept;
+      if (keptThere?.length) await note(store, row.run, (r) => ({ kept: merged(r.kept, keptThere) }));
+      if (part.length === 1 || keptThere || !smallerMayHelp(bad)) throw withSeq(bad, part[0].seq);
       limit = Math.max(1, Math.floor(part.reduce((sum, k) => sum + k.bytes.byteLength, 0) / 2));
       continue;
     }
@@ -93,13 +102,14 @@ async function sendRun(store, row, server) {
       throw new Refused(first?.code ?? "not-accepted", `The server did not take event ${from} of run ${row.run}. It stays on this tablet. ${first?.says ?? ""}`.trim(), { seq: from });
     }
     from = have + 1;
+    fits = Math.min(BATCH_BYTES, Math.max(fits, limit * 2));
   }
 }
 
 /** @param {unknown} bad */
 function smallerMayHelp(bad) {
   if (!(bad instanceof Refused)) return false;
-  return bad.code === "too-large" || bad.code === "server-trouble" || "by" in bad;
+  return bad.code === "server-trouble" || [400, 409, 413, 422].includes(/** @type {any} */ (bad).status);
 }
 
 /** @param {unknown} bad @param {number} seq */
@@ -110,8 +120,8 @@ function withSeq(bad, seq) {
 
 /** @param {RunRow["kept"]} before @param {RunRow["kept"]} more */
 function merged(before, more) {
-  const seen = new Map([...before, ...more].map((k) => [k.seq, k]));
-  return [...seen.values()].sort((a, b) => a.seq - b.seq);
+  const seen = new Map([...before, ...more].map((k) => [`${k.seq} ${k.code}`, k]));
+  return [...seen.values()].sort((a, b) => (a.seq ?? -1) - (b.seq ?? -1));
 }
 
 /**
