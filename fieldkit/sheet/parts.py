@@ -33,9 +33,13 @@ SOURCE_STATES = ("off", "on", "standby", "cut-off", "locked", "proved", "earthed
 
 
 class Unit(Part):
-    """A unit as shown, and how to get to SI: si = shown * factor + offset (both decimal strings)."""
+    """A unit, and how to get to SI: si = written * factor + offset (both decimal strings).
+
+    `symbol` is plain ASCII as in the registers ("uA", "degC", "" for a plain number); `shown` is for people.
+    """
 
     symbol: str
+    shown: str = ""
     factor: str = "1"
     offset: str = "0"
 

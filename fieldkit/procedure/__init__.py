@@ -1,0 +1,1 @@
+"""Procedures: what a writer wrote, checked and compiled to a sheet."""
