@@ -96,7 +96,7 @@ def everything() -> list[Tablet]:
 def revoke(actor: Actor, device: str, why: str) -> None:
     """Put a tablet out of use with every key on it, from now on. Administrator.
 
-    What it sends later is kept and shown, and counts only when somebody accepts it. Raises Refusal not-found, no-reason.
+    What it sends later is kept and shown; nothing of it is accepted. Raises Refusal not-found, no-reason.
     """
     require(actor, "administrator")
     if not why.strip():

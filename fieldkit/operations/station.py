@@ -12,6 +12,8 @@ import secrets
 from dataclasses import dataclass, field
 from pathlib import Path
 
+import platformdirs
+
 from fieldkit.errors import Refusal
 from fieldkit.operations import moment, settings
 from fieldkit.operations.actor import Actor, require
@@ -58,9 +60,15 @@ class Station:
             return ""
 
 
+def data_folder(given: str | None = None) -> Path:
+    """Where the data is: `given`, else $FIELDKIT_DATA, else the platform's place for a user's data."""
+    chosen = given or os.environ.get("FIELDKIT_DATA")
+    return Path(chosen).expanduser().resolve() if chosen else platformdirs.user_data_path("fieldkit", appauthor=False)
+
+
 def open(folder: Path) -> Station:
     """The station in `folder`, its folder and unattended keys made at the first call. Raises Refusal weak-secret."""
-    folder.mkdir(parents=True, exist_ok=True)
+    folder.mkdir(mode=0o700, parents=True, exist_ok=True)
     (folder / "trust").mkdir(mode=0o700, exist_ok=True)
     return Station(folder, _secret(folder / "secret"), receipts.key(folder / "trust"))
 

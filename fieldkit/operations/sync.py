@@ -255,7 +255,7 @@ def _join(work: _Work, one: Arrived) -> bool:
 def _check_link(row: Chain, event: Event) -> Kept | None:
     if event.head.prev == row.head:
         return None
-    says = f"Event {event.head.seq} does not follow from the one before it: something was changed. It is kept and shown."
+    says = f"Event {event.head.seq} does not follow from the one before it: it was changed. It is kept and shown."
     return Kept(event.head.seq, "broken-chain", says)
 
 
