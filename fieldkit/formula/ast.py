@@ -32,7 +32,7 @@ class Name:
 @dataclass(frozen=True)
 class Call:
     function: str
-    of: tuple["Tree", ...]
+    of: tuple[Tree, ...]
 
 
 @dataclass(frozen=True)
@@ -43,7 +43,7 @@ class Series:
 @dataclass(frozen=True)
 class Table:
     name: str
-    of: "Tree"
+    of: Tree
     x: tuple[str, ...]
     y: tuple[str, ...]
 

@@ -78,7 +78,8 @@ def check(
     """Everything wrong with a formula, and the kind of its answer.
 
     `names` and `series` give the kind of each name and column; `known` gives, for a prefix such as "state" or "since",
-    the words that exist ("heater"), and where a prefix is left out any word is taken; `want` is what the answer must be.
+    the words that exist ("heater"), and where a prefix is left out any word is taken; `want` is what the answer must
+    be.
     """
     work = _Check(parsed, names, series or {}, library or {}, known or {})
     kind = work.kind(parsed.term)
@@ -137,8 +138,21 @@ class _Check:
                 return self.column(term)
             case "library":
                 return self.call(term)
+        if self.bare_word(term):
+            return "flag"
         of = [self.kind(t) for t in term.of]
         return _RULES[functions.FUNCTIONS[term.what].rule](self, term, of)
+
+    def bare_word(self, term: Term) -> bool:
+        """A text compared with a word that lacks its quotes: told as that, not as an unknown name."""
+        if term.what not in ("eq", "ne") or term.of[1].kind != "name" or term.of[1].what in self.names:
+            return False
+        left = term.of[0]
+        if left.kind != "name" or self.names.get(left.what) != "text":
+            return False
+        word = term.of[1].what
+        self.add(term.of[1], "word-without-quotes", f"{word} is a word here, not a value", f'write "{word}"')
+        return True
 
     def name(self, term: Term) -> Kind | None:
         if term.what in self.names:
@@ -182,7 +196,7 @@ class _Check:
         return formula.unit.dimension
 
     def numbers(self, term: Term, of: Sequence[Kind | None], *, differences: bool = False) -> list[Dimension] | None:
-        """The dimensions of all parts; None, with a problem, where one is no number (or is a temperature on a scale)."""
+        """The dimensions of all parts; None, with a problem, where one is no number (or a temperature on a scale)."""
         for part, kind in zip(term.of, of, strict=True):
             if isinstance(kind, str):
                 self.add(part, "not-a-number", f"{self.quote(part)} is {words(kind)}, not a number", "take it out")
