@@ -5,6 +5,7 @@ The key is made where it is used and never leaves there; here is its public half
 
 from __future__ import annotations
 
+import datetime as dt
 import json
 import re
 from collections.abc import Mapping
@@ -181,7 +182,9 @@ def waiting() -> list[Waiting]:
     ]
 
 
-def issue(actor: Actor, held: Station, enrolment: str, passphrase: str, note: str) -> str:
+def issue(
+    actor: Actor, held: Station, enrolment: str, passphrase: str, note: str, at: dt.datetime | None = None
+) -> str:
     """Open the signing authority and issue the certificate; gives its kid. Administrator.
 
     `note` says how the person was known to be who they are. Issuing again gives the same certificate.
@@ -191,7 +194,7 @@ def issue(actor: Actor, held: Station, enrolment: str, passphrase: str, note: st
     if not note.strip():
         raise Refusal("no-reason", "Say how you know that this person asked, for example: known in person.")
     opened = station.open_authority(held, passphrase)
-    at = moment.now()
+    at = at or moment.now()
     with writing() as session:
         row = _decidable(session, enrolment)
         if row.kid:
