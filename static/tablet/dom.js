@@ -37,17 +37,6 @@ export function put(node, ...kids) {
   return add(node, kids);
 }
 
-/** A mark of the page's own set, by id. @param {string} id @param {string} [kind] @returns {SVGElement} */
-export function mark(id, kind = "") {
-  const svg = document.createElementNS("http://www.w3.org/2000/svg", "svg");
-  svg.setAttribute("aria-hidden", "true");
-  if (kind) svg.setAttribute("class", kind);
-  const use = document.createElementNS("http://www.w3.org/2000/svg", "use");
-  use.setAttribute("href", `#${id}`);
-  svg.append(use);
-  return svg;
-}
-
 /** The element that carries `data-<name>`; a missing one is a fault of the template. @param {ParentNode} root @param {string} name @returns {any} */
 export function part(root, name) {
   const found = root.querySelector(`[data-${name}]`);

@@ -2,7 +2,8 @@
  * The tablet's own keypad: digits, point, comma, plus-minus, rub out, clear. It writes into the text field that was last
  * in focus, at the caret, as a keyboard would; it never changes what was typed by itself.
  */
-import { h, mark } from "./dom.js";
+import { h } from "./dom.js";
+import { icon } from "./icons.js";
 
 /** @type {[string, string, string][]} key, class, name for screen readers */
 const KEYS = [["7", "", ""], ["8", "", ""], ["9", "", ""], ["back", "fn", "Rub out"], ["4", "", ""], ["5", "", ""], ["6", "", ""], ["Clear", "fn", "Clear"],
@@ -28,6 +29,6 @@ export function keypad(target) {
       pointerdown: (/** @type {Event} */ e) => e.preventDefault(),
       click: () => { const input = target(); if (document.activeElement?.tagName !== "BUTTON") input.focus({ preventScroll: true }); press(input, text); },
     },
-  }, text === "back" ? mark("bs") : text);
+  }, text === "back" ? icon("backspace") : text);
   return h("div", { class: "pad", role: "group", "aria-label": "Keypad", "data-keypad": true }, KEYS.map(key));
 }

@@ -1,0 +1,60 @@
+/** The frame of a run: head over rails and work. It holds the places; what stands in them is given by screens/run.js. */
+import { h, put } from "./dom.js";
+import { icon } from "./icons.js";
+import { railHeads, setLanes } from "./rails.js";
+import { personName, time } from "./words.js";
+
+/** Height of a past or coming row, as tablet.css has it. */
+const ROW = 48;
+
+/** @param {any} sheet @param {{makeSafe: () => void, thisRun: () => void}} acts */
+export function frame(sheet, acts) {
+  const safe = h("button", { type: "button", class: "makesafe", "data-make-safe": true, "aria-label": "MAKE SAFE: open the list", on: { click: acts.makeSafe } }, icon("make-safe"), h("span", {}, "MAKE", h("br"), "SAFE"));
+  const title = h("b"), under = h("span"), who = h("b", { "data-recorder": true }), saved = h("span", { "data-saved": true });
+  const dl = h("div", { "data-live": true }), mini = h("div", { class: "mini", "aria-hidden": "true" });
+  const more = h("button", { type: "button", class: "thisrun", "data-this-run": true, on: { click: acts.thisRun } }, "This run");
+  const past = h("ol", { class: "rows", "aria-label": "Done so far", "data-past": true }), ahead = h("ol", { class: "rows", "aria-label": "Coming", "data-coming": true });
+  const now = h("section", { class: "step now", "data-open": true });
+  const strip = h("main", { class: "strip", "data-strip": true, tabindex: "-1" }, past, now, ahead);
+  const node = h("div", { class: "tab", "data-frame": true },
+    h("header", { class: "head" }, safe, h("div", { class: "title" }, h("div", {}, title, under), h("div", {}, who, saved))),
+    railHeads(sheet), h("div", { class: "live" }, dl, more), mini, strip);
+  setLanes(node, sheet.sources.length);
+  let isOver = false;
+
+  /** The open step fills what two past and two coming rows leave free. */
+  function settle() {
+    const phone = matchMedia("(max-width: 640px)").matches;
+    const shown = isOver || phone ? 0 : Math.min(2, past.children.length) + Math.min(2, ahead.children.length);
+    now.style.setProperty("--open-height", `${Math.max(0, strip.clientHeight - shown * ROW)}px`);
+    strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - (phone ? 0 : Math.min(2, past.children.length) * ROW));
+  }
+  const watch = new ResizeObserver(() => settle());
+  watch.observe(strip);
+
+  return {
+    node, settle,
+    /** @param {any} state @param {{called: boolean, readonly: string}} how */
+    head: (state, how) => {
+      const { started } = state;
+      put(title, sheet.title);
+      put(under, started ? [`edition ${sheet.edition}, cabinet ${started.cabinet}, tube `, h("span", { class: "id" }, started.tube)] : "");
+      put(who, `${personName(state, state.recorder)} records${started?.present.length === 1 ? ", alone" : ""}`);
+      safe.toggleAttribute("data-called", how.called);
+      if (how.readonly) put(who, how.readonly);
+    },
+    /** @param {string} words @param {string} [wall] */
+    saved: (words, wall) => { const text = wall ? `${words} ${time(wall)}` : words; if (saved.textContent !== text) put(saved, text); },
+    /** @param {HTMLElement} words @param {any} short */
+    live: (words, short) => { put(dl, words); put(mini, short); },
+    /** @param {HTMLElement} lanes @param {HTMLElement} page @param {boolean} over */
+    open: (lanes, page, over) => { isOver = over; past.hidden = ahead.hidden = over; now.classList.toggle("over", over); put(now, lanes, page); },
+    /** @param {HTMLElement[]} rows @param {HTMLElement[]} coming */
+    rows: (rows, coming) => {
+      const at = strip.scrollTop, before = past.offsetHeight;
+      put(past, rows);
+      put(ahead, coming);
+      if (!isOver) strip.scrollTop = at + past.offsetHeight - before;
+    },
+  };
+}

@@ -1,0 +1,40 @@
+/** The verdict on what is being typed, by the same judge that the record is made with; plus the meter it came from, in words. */
+import { judge } from "../core/judge.js";
+import { h, put } from "./dom.js";
+import { day, minus } from "./words.js";
+
+/** The instrument that a control's meter names in this run, or null. @param {any} state @param {any} meter */
+export function instrumentOf(state, meter) {
+  if (!meter || !state.started) return null;
+  const id = meter.instrument ?? state.started.meters?.[meter.role];
+  return state.started.instruments.find((/** @type {any} */ i) => i.id === id) ?? null;
+}
+
+/** "Deck meter DM-04, ±(0.3 % + 1 digit), calibrated to 30 Nov 2026", as parts. @param {any} instrument @param {any} meter @param {string} today */
+export function meterWords(instrument, meter, today) {
+  if (!instrument) return null;
+  const digits = Number(instrument.digits), percent = Number(instrument.percent);
+  const accuracy = [percent ? `${instrument.percent} %` : "", digits ? `${instrument.digits} digit${digits === 1 ? "" : "s"}` : ""].filter(Boolean).join(" + ");
+  const overdue = Boolean(instrument.calibrated_to && today && instrument.calibrated_to.slice(0, 10) < today.slice(0, 10));
+  return {
+    kind: meter?.hand_at ? `Hand meter at the ${meter.hand_at.replaceAll("-", " ")}` : "Meter", id: instrument.id, overdue,
+    rest: [accuracy ? `±(${accuracy})` : "", instrument.calibrated_to ? (overdue ? `calibration ran out on ${day(instrument.calibrated_to)}` : `calibrated to ${day(instrument.calibrated_to)}`) : ""]
+      .filter(Boolean).join(", "),
+  };
+}
+
+/**
+ * @param {{text: string, unit: string, limits: any, resolution?: string | null, instrument: any, protects?: boolean, day?: string}} reading
+ * @returns {any} what core/judge says: a verdict with its words, or {refused}
+ */
+export function judged(reading) {
+  const resolution = reading.resolution ?? reading.limits?.resolution ?? reading.instrument?.resolution ?? null;
+  return judge(reading.text, reading.unit, reading.limits ?? null, resolution, reading.instrument ?? null, reading.protects ?? false, (reading.day ?? "").slice(0, 10));
+}
+
+/** The judge's sentence with the value before the colon in bold; remarks on it are marked at the side. @param {HTMLElement} node @param {any} found */
+export function showSentence(node, found) {
+  const words = minus(found?.words ?? found?.refused?.says ?? ""), at = found?.words ? words.indexOf(": ") : -1;
+  node.classList.toggle("warned", Boolean(found?.near || found?.untypical || found?.overdue));
+  put(node, at > 0 ? [h("b", {}, words.slice(0, at + 1)), words.slice(at + 1)] : words);
+}
