@@ -31,6 +31,8 @@ import * as syncing from "./sync.js";
 
 /** @type {Store | null} */
 let store = null;
+/** @type {Promise<void> | null} the one start of this page; a second call waits for the first */
+let starting = null;
 /** @type {ReturnType<typeof syncing.loop> | null} */
 let loop = null;
 /** @type {Map<string, any>} */
@@ -58,8 +60,10 @@ const trouble = (what) => listeners.trouble.forEach((cb) => cb(what));
  */
 export async function open() {
   try {
-    if (!store) await start();
+    starting ??= start();
+    await starting;
   } catch (bad) {
+    starting = null;
     return { device: null, enrolled: false, people: [], kit: null, runs: [], health: await healthOf("damaged", [told(bad).says]) };
   }
   const here = ready();
