@@ -259,11 +259,17 @@ def inward(text: str, resolution: str | None, side: str) -> str:
 
 
 def to_shown(si: float, unit: Scaled) -> str:
-    """An SI value in `unit`, twelve significant digits: (si - offset) / factor, computed exactly and rounded once."""
-    top, bottom = _ratio(si)
+    """An SI value in `unit`, twelve significant digits: (si - offset) / factor, computed exactly and rounded once.
+
+    Where the unit has an offset, the SI value is rounded to twelve digits first: 273.15 K, which no double holds
+    exactly, is 0 degC and not a millionth of a millionth below it.
+    """
     offset, factor = dec(unit.offset), dec(unit.factor)
-    top = top * 10**offset.scale - offset.digits * bottom
-    bottom = bottom * 10**offset.scale
+    if offset.digits == 0:
+        top, bottom = _ratio(si)
+    else:
+        less = sub(dec(round12(si)), offset)
+        top, bottom = less.digits, 10**less.scale
     return _round_ratio(top * 10**factor.scale, bottom * factor.digits, 12)
 
 

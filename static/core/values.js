@@ -293,11 +293,13 @@ export function inward(text, resolution, side) {
 
 /** An SI value in `unit`, twelve significant digits. @param {number} si @param {Scaled} unit */
 export function to_shown(si, unit) {
-  let [top, bottom] = ratio(si);
   const offset = dec(unit.offset);
   const factor = dec(unit.factor);
-  top = top * ten(offset.scale) - offset.digits * bottom;
-  bottom *= ten(offset.scale);
+  let [top, bottom] = ratio(si);
+  if (offset.digits !== 0n) {
+    const less = sub(dec(round12(si)), offset);
+    [top, bottom] = [less.digits, ten(less.scale)];
+  }
   return round_ratio(top * ten(factor.scale), bottom * factor.digits, 12);
 }
 
