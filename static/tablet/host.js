@@ -44,7 +44,7 @@ let found = { storage: "ok", says: [] };
 let updateWaits = false;
 
 /** The version of this page, as the server wrote it there. */
-export const app = document.documentElement.dataset.app ?? "0.0.0";
+export const app = document.documentElement.dataset.version ?? "0.0.0";
 
 function ready() {
   if (!store) throw new Refused("not-open", "The storage of this tablet is not open. Reload the page.");

@@ -61,8 +61,8 @@ class Server:
     def start(self, **environment: str) -> None:
         command = [sys.executable, str(HERE / "small_station.py"), "serve", str(self.folder), str(self.port)]
         env = {**os.environ, "PYTHONPATH": str(ROOT), **environment}
-        log = (self.folder / "server.log").open("ab")
-        self.process = subprocess.Popen(command, env=env, stdout=log, stderr=log)
+        with (self.folder / "server.log").open("ab") as log:
+            self.process = subprocess.Popen(command, env=env, stdout=log, stderr=log)
         for _ in range(200):
             if not refuses(self.port):
                 return
@@ -236,6 +236,10 @@ class Tablet:
         if self.context:
             self.context.close()
         self.context = self.page = None
+
+    def reopen_page(self) -> None:
+        self.page.reload()
+        self.host("open")
 
     def reopen(self, *scripts: str) -> None:
         self.launch(*scripts)

@@ -67,7 +67,7 @@ def sheet():
     from fieldkit.sheet import controls as c
     from fieldkit.sheet.model import Declared, SafeStep, Sheet, Step
     from fieldkit.sheet.moves import Move
-    from fieldkit.sheet.parts import Effects, Given, Limits, Meter, Source, Unit
+    from fieldkit.sheet.parts import Given, Limits, Meter, Source, Unit
 
     volt = Unit(symbol="V")
 

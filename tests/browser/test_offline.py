@@ -31,7 +31,7 @@ def test_the_page_opens_with_the_server_stopped_and_the_browser_killed(tablet, s
     assert controlled(tablet.page)
     health = tablet.host("open")["health"]
     assert health["offline_ready"] is True
-    assert tablet.page.evaluate("() => document.documentElement.dataset.app")
+    assert tablet.page.evaluate("() => document.documentElement.dataset.version")
 
 
 def test_every_file_is_aboard_under_its_hash_and_the_page_breaks_no_policy(tablet, server):
