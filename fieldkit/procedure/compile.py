@@ -12,12 +12,12 @@ import hashlib
 from pathlib import Path
 from typing import Any
 
-from fieldkit.errors import Collector, Place, Problem
+from fieldkit.errors import Collector, Problem
+from fieldkit.formula.library import Library
 from fieldkit.procedure import head, items, link, lint
 from fieldkit.procedure.items import Item
 from fieldkit.procedure.model import Head
 from fieldkit.sheet.model import Sheet, Step
-from fieldkit.sheet.parts import Effects
 from fieldkit.steps import KINDS, conditions, words
 from fieldkit.steps.base import Kind, Piece
 from fieldkit.steps.expression import Named, used_formulas
@@ -25,13 +25,13 @@ from fieldkit.steps.scope import Scope
 from fieldkit.yaml_source import Mapping, Node, read
 
 
-def compile_file(path: Path, library: Any) -> tuple[Sheet | None, list[Problem]]:
+def compile_file(path: Path, library: Library) -> tuple[Sheet | None, list[Problem]]:
     """The sheet of the procedure in `path`, and everything wrong with it. Raises OSError where it cannot be read."""
     return compile_bytes(path.read_bytes(), str(path), library)
 
 
 def compile_bytes(
-    data: bytes, file: str, library: Any, kinds: dict[str, Kind] | None = None
+    data: bytes, file: str, library: Library, kinds: dict[str, Kind] | None = None
 ) -> tuple[Sheet | None, list[Problem]]:
     """As compile_file, from bytes; `kinds` is KINDS unless a test brings its own."""
     node, problems = read(data, file)
@@ -45,7 +45,7 @@ def _in_order(problems: list[Problem]) -> list[Problem]:
     return sorted(dict.fromkeys(problems), key=lambda p: (p.place.line, p.place.column, p.code, p.message))
 
 
-def _compile(node: Node, data: bytes, found: Collector, library: Any, kinds: dict[str, Kind]) -> Sheet | None:
+def _compile(node: Node, data: bytes, found: Collector, library: Library, kinds: dict[str, Kind]) -> Sheet | None:
     values = words.read_keys(Head, node, found, "a procedure")
     if not isinstance(node, Mapping):
         return None
@@ -57,7 +57,7 @@ def _compile(node: Node, data: bytes, found: Collector, library: Any, kinds: dic
     _name_steps(written, scope)
     scope.now = len(written) + 1
     scope.rules = head.rules(values.get("rules") or (), scope)
-    parts = {
+    parts: dict[str, Any] = {
         "givens": given,
         "sources": head.sources(energy),
         "start": head.start(energy, scope),
@@ -70,9 +70,9 @@ def _compile(node: Node, data: bytes, found: Collector, library: Any, kinds: dic
     if found.stops or not rows:
         lint.check_written(written, values, scope)
         return None
+    parts |= {f: values[f] for f in ("procedure", "edition", "title", "purpose", "tubes", "crew")}
+    parts |= {f: values.get(f) or "" for f in ("changes", "alone", "next_person")}
     sheet = Sheet(
-        **{f: values[f] for f in ("procedure", "edition", "title", "purpose", "tubes", "crew")},
-        **{f: values.get(f) or "" for f in ("changes", "alone", "next_person")},
         **parts,
         source_sha256=hashlib.sha256(data).hexdigest(),
         counters=dict(sorted(c for row in rows for c in row.piece.counters.items())),
@@ -141,6 +141,3 @@ def _number(piece: Piece, item: Item) -> None:
 
 def _numbered(step: Step, item: Item) -> Step:
     return step.model_copy(update={"number": item.number, "section": item.section})
-
-
-__all__ = ["Effects", "Place", "compile_bytes", "compile_file"]

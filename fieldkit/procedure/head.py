@@ -115,7 +115,7 @@ def start(energy: dict[str, Scalar], scope: Scope) -> dict[str, Declared]:
         least = None
         if match[2]:
             least = scope.tree(scalar, words.SECOND, scalar.text.rindex(match[2]), match[2])
-        out[source] = Declared(state=states[0], accepts=states[1:], least=least)  # type: ignore[arg-type]
+        out[source] = Declared(state=states[0], accepts=states[1:], least=least)
     return out
 
 

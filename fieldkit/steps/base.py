@@ -133,7 +133,7 @@ def make_step(
         why=written.why,
         level=level,
         control=control,
-        who=written.who,
+        who=written.who,  # type: ignore[arg-type]
         line=written.place.line,
     )
 

@@ -119,6 +119,9 @@ def read(scalar: Scalar, scope: Scope) -> Phrase:
     if re.search(r"[<>=]", written):
         return Phrase(written, (Condition(says=written, tree=scope.flag(scalar)),), place=scalar.place)
     known = [*scope.facts, *scope.options, *scope.sources]
+    first = scope.names.get(written.split(" ", 1)[0])
+    if first is not None and first.broken:
+        return Phrase(written, ())
     remedy = f"{words.near(written, known)}write one of: {'; '.join(FORMS)}"
     scope.found.add(scalar.place, "unknown-condition", f'"{written}" says no condition that is known', remedy)
     return Phrase(written, (), place=scalar.place)

@@ -6,14 +6,15 @@ Not here: the formula language itself (fieldkit.formula); which names there are 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Any, Literal, Union
+from typing import Literal, Union
 
 from fieldkit import units
 from fieldkit.errors import Collector
 from fieldkit.formula import ast, check, parse
+from fieldkit.formula.library import Library
 from fieldkit.formula.parse import Parsed, Term
 from fieldkit.formula.spots import Spot, Unreadable
-from fieldkit.sheet.model import Argument, FormulaUsed
+from fieldkit.sheet.model import FormulaUsed
 from fieldkit.sheet.parts import Tree, Unit
 from fieldkit.steps import words
 from fieldkit.yaml_source import Scalar
@@ -40,19 +41,24 @@ class Lowered:
 
 
 def lower(
-    scalar: Scalar, offset: int, text: str | None, want: Want, names: dict[str, Named], library: Any, found: Collector
+    scalar: Scalar,
+    offset: int,
+    text: str | None,
+    want: Want,
+    names: dict[str, Named],
+    library: Library,
+    found: Collector,
 ) -> Lowered | None:
     """The tree of the formula in `scalar` (its part `text` at `offset`); None after adding every problem of it."""
     written = scalar.text if text is None else text
     offset += len(written) - len(written.lstrip())
     written = written.strip()
-    signatures = {n: [a.name for a in f.arguments] for n, f in getattr(library, "formulas", {}).items()}
     try:
         parsed = parse.read(written)
         if _speaks_of_broken(parsed.term, names):
             return None
         spots = _check(parsed, want, names, library)
-        tree = parsed.tree(signatures) if not spots else None
+        tree = parsed.tree(library.signatures()) if not spots else None
     except Unreadable as exc:
         spots, tree = tuple(exc.spots), None
     if tree is None:
@@ -61,13 +67,12 @@ def lower(
     return Lowered(_substituted(ast.to_json(tree), names), frozenset(_library_calls(parsed.term)))
 
 
-def _check(parsed: Parsed, want: Want, names: dict[str, Named], library: Any) -> tuple[Spot, ...]:
+def _check(parsed: Parsed, want: Want, names: dict[str, Named], library: Library) -> tuple[Spot, ...]:
     """What is wrong with the names and units of a formula that reads well."""
     kinds = {n: v.dimension for n, v in names.items() if v.dimension is not None and not v.series}
     columns = {n: v.dimension for n, v in names.items() if v.dimension is not None and (v.series or v.order)}
-    formulas = getattr(library, "formulas", {})
     wanted = want if want is None or isinstance(want, str) else words.dimension(want)
-    return check.check(parsed, kinds, series=columns, library=formulas, want=wanted).spots
+    return check.check(parsed, kinds, series=columns, library=library.formulas, want=wanted).spots
 
 
 def _speaks_of_broken(term: Term, names: dict[str, Named]) -> bool:
@@ -105,8 +110,8 @@ def _substituted(tree: Tree, names: dict[str, Named]) -> Tree:
     return tree
 
 
-def used_formulas(names: set[str], library: Any) -> dict[str, FormulaUsed]:
-    return {}
-
-
-_ = (Argument, Parsed)
+def used_formulas(names: set[str], library: Library) -> dict[str, FormulaUsed]:
+    """The library's formulas that a sheet carries: those named and all that they use."""
+    if not names:
+        return {}
+    return {name: FormulaUsed.model_validate(used) for name, used in library.used(names).items()}

@@ -62,7 +62,7 @@ def states_asked(needs: tuple[Condition, ...], source: str) -> tuple[str, ...]:
     return ()
 
 
-def _states(tree: dict, name: str) -> list[str]:  # type: ignore[type-arg]
+def _states(tree: dict, name: str) -> list[str]:
     if tree.get("call") == "or":
         return [s for part in tree["of"] for s in _states(part, name)]
     if tree.get("call") == "eq" and tree["of"][0] == {"name": name} and "text" in tree["of"][1]:

@@ -297,7 +297,8 @@ def _falls(ladder: Ladder, id_: str, on: str, asked: tuple[Condition, ...], piec
     per_level = rule.most_at_one is not None and rule.most_at_one < rule.most
     for index in range(1, ladder.most_levels):
         own = f"{backs}_{index + 1}"
-        counts, gate = (one_less, Count(counter=backs, by=1)), (*asked, capped, ladder.at_level(index))
+        counts: tuple[Count, ...] = (one_less, Count(counter=backs, by=1))
+        gate = (*asked, capped, ladder.at_level(index))
         if per_level:
             assert rule.most_at_one is not None
             piece.counters[own] = (0, max(0, rule.most_at_one - 1))

@@ -10,9 +10,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, field
-from typing import Any
 
 from fieldkit.errors import Collector, Place
+from fieldkit.formula.library import Library
 from fieldkit.sheet.model import Rule
 from fieldkit.sheet.parts import Tree, Unit
 from fieldkit.steps import expression, words
@@ -27,7 +27,7 @@ class Scope:
     """Everything that a step may refer to. `order` is the place of a step in the file's order."""
 
     found: Collector
-    library: Any
+    library: Library
     names: dict[str, Named] = field(default_factory=dict)
     options: dict[str, tuple[str, ...]] = field(default_factory=dict)
     texts: set[str] = field(default_factory=set)
