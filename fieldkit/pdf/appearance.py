@@ -31,8 +31,6 @@ _CSS = """
 @page{size:%(width)spt %(height)spt;margin:0}
 *{margin:0;padding:0}
 html,body{font:400 7.8pt/1.42 "Plex Sans";color:#0D171C}
-div{padding:2mm 2.6mm 0}
-i{font-style:normal;display:block;font-size:7.2pt;color:#2F3C43}
 b{font-weight:600;font-size:11pt}
 .m{font-family:"Plex Mono";font-weight:500;font-size:6.4pt;white-space:nowrap}
 """
@@ -49,11 +47,15 @@ def stamp(time: dt.datetime) -> str:
     return f"{text[:19]} {text[19:]}"
 
 
+def words(block: Block) -> str:
+    """The block's text as drawn, line by line."""
+    return f"{block.name}\n“{block.meaning}”\n{stamp(block.time)}\nkey {grouped(block.key)}"
+
+
 def pdf(block: Block, width: float, height: float) -> bytes:
     """One untagged page of `width` by `height` points that says what the block says."""
     lines = (
-        "<div><i>Supervisor</i>",
-        f"<b>{escape(block.name)}</b><br>“{escape(block.meaning)}”<br>",
+        f"<div><b>{escape(block.name)}</b><br>“{escape(block.meaning)}”<br>",
         f'<span class="m">{stamp(block.time)}</span><br>key <span class="m">{grouped(block.key)}</span></div>',
     )
     html = f'<html lang="en"><head><title>Countersignature</title></head><body>{"".join(lines)}</body></html>'

@@ -105,7 +105,8 @@ def _add_fields(pdf: pikepdf.Pdf, fields: Sequence[Field]) -> None:
                 P=document,
                 Pg=page,
                 Alt=String(field.title),
-                K=Array([Dictionary(Type=Name.OBJR, Obj=widget, Pg=page)]),
+                # not in an array: the difference policy knows only this form
+                K=Dictionary(Type=Name.OBJR, Obj=widget, Pg=page),
             )
         )
         document.K.append(element)
