@@ -76,11 +76,33 @@ def _python(do: str, args: list[Any]) -> Any:
 ELEMENTARY = ("exp", "log", "pow", "sin", "cos", "atan", "erf")
 
 
+def plain(x: Any) -> Any:
+    """A value in wire form as vectors write it: codes without sentences, counts and doubles alike by their bits."""
+    if isinstance(x, int) and not isinstance(x, bool):
+        x = encode(float(x))
+    if isinstance(x, dict) and set(x) == {"double"}:
+        x = encode(float(x["double"]))
+    if isinstance(x, dict) and ("refused" in x or "fault" in x):
+        return {k: v for k, v in x.items() if k in ("refused", "fault")}
+    return x
+
+
 class Twins:
     """Asks both languages the same questions. Answers come in the wire form; {"threw": True} where it raised."""
 
     encode = staticmethod(encode)
     decode = staticmethod(decode)
+
+    def wrong(self, cases: list[dict[str, Any]]) -> list[Any]:
+        """The cases that do not answer as expected, in either language."""
+        requests = [(c["do"], decode(c["args"])) for c in cases]
+        found = []
+        for language in (self.python, self.javascript):
+            for case, answer in zip(cases, language(requests), strict=True):
+                got = answer if "threw" in answer else plain(answer["value"])
+                if got != plain(case["expect"]):
+                    found.append((language.__name__, case["name"], got, case["expect"]))
+        return found
 
     def python(self, requests: Iterable[tuple[str, list[Any]]]) -> list[Any]:
         answers = []
@@ -116,12 +138,19 @@ def twins() -> Twins:
 
 @pytest.fixture(scope="session")
 def vectors() -> Callable[[str], list[dict[str, Any]]]:
-    """All cases of a folder of tests/vectors, each with the file that it stands in."""
+    """All cases of a folder of tests/vectors, each with exactly one expectation: {name, do, args, expect}.
+
+    A file of formulas gives the names, series and formulas that its cases share once, at its top.
+    """
 
     def read(folder: str) -> list[dict[str, Any]]:
-        found = []
+        found: list[dict[str, Any]] = []
         for path in sorted((TESTS / "vectors" / folder).glob("*.json")):
-            found += [case | {"file": path.name} for case in json.loads(path.read_text(encoding="utf-8"))]
+            data = json.loads(path.read_text(encoding="utf-8"))
+            if isinstance(data, dict):
+                shared = [data["names"], data["series"], data["formulas"]]
+                data = [c | {"do": "evaluate", "args": [c["tree"], *shared]} for c in data["cases"]]
+            found += data
         return found
 
     return read
