@@ -9,6 +9,7 @@ Not here: what a gap does to facts, proofs and waits (fieldkit.run.state).
 
 from __future__ import annotations
 
+import math
 import re
 from typing import Any
 
@@ -150,6 +151,11 @@ def owe(clock: dict[str, Any], more: int | None) -> dict[str, Any]:
 def day(wall: Any) -> str:
     """The date on the wall, where the tablet is: what calibration dates are compared with."""
     return wall[:10] if isinstance(wall, str) else ""
+
+
+def ceil_ms(of: float) -> int:
+    """Seconds as whole milliseconds, rounded up."""
+    return math.ceil(of * 1000.0)
 
 
 def spoken(ms: int) -> str:

@@ -131,6 +131,11 @@ export function day(wall) {
   return typeof wall === "string" ? wall.slice(0, 10) : "";
 }
 
+/** Seconds as whole milliseconds, rounded up. @param {number} of */
+export function ceil_ms(of) {
+  return Math.ceil(of * 1000);
+}
+
 /** @param {number} ms */
 export function spoken(ms) {
   const whole = ms > 0 ? Math.ceil(ms / 1000) : 0;

@@ -1,0 +1,321 @@
+"""What may be done now, and why not what may not: everything a screen needs beside the state.
+
+`progress(sheet, state, now)` computes it afresh each time; nothing here is stored. Sentences are whole sentences;
+times left are seconds. Twin: static/core/progress.js. Not here: refusing (fieldkit.run.decide).
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+from fieldkit.run import answers, clock, judge, moves, names, rows
+from fieldkit.run.moves import State
+from fieldkit.run.names import LIVE, Context, Scope, context
+from fieldkit.sheet.model import Sheet
+from fieldkit.sheet.moves import END, SAFE
+
+Plain = dict[str, Any]
+
+LABELS = {
+    "plain": "Go on",
+    "again": "Take it again",
+    "deviation": "Accept as a deviation",
+    "stop": "Stop and make safe",
+}
+
+
+def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) -> Plain:
+    """Where the run stands at the moment `now` ({"wall", "mono", "boot"}); DEVELOPERS.md spells the answer."""
+    ctx = context(sheet)
+    where = names.scope(ctx, state, now)
+    step = ctx.steps.get(state["node"])
+    reasons = closed(ctx, state, where)
+    ways = offered(ctx, state, where)
+    path = ahead(ctx, state, where)
+    meter = _meter(state, step)
+    limits = _limits(ctx, where, step, meter)
+    return {
+        "node": state["node"],
+        "step": step,
+        "open": not reasons,
+        "reasons": reasons,
+        "moves": ways,
+        "next": _next(ways),
+        "limits": limits,
+        "points": _points(ctx, where, step, meter),
+        "instrument": meter,
+        "plate": _plate(ctx, where, step, meter),
+        "value": _value(ctx, where, step),
+        "level": rows.level_text(ctx, where, step) if step and step["level"] else "",
+        "judgeable": _judgeable(ctx, where, step, meter, limits, now),
+        "waits": waits(ctx, where, state, path),
+        "live": [name for name, source in state["sources"].items() if source["state"] in LIVE],
+        "next_change": _next_change(state, ctx, path),
+        "may": may(state, not reasons, ways),
+        "path": [step_id for step_id, _ in path[1:]],
+    }
+
+
+def closed(ctx: Context, state: State, where: Scope) -> list[Plain]:
+    """Why the step where the run stands may not be answered now; empty where it may."""
+    phase, node = state["phase"], state["node"]
+    if phase != "going":
+        return [{"says": _PHASES[phase], "left": None}]
+    step = ctx.steps.get(node)
+    if step is None:
+        return [{"says": "The last step is done. End the run and sign it.", "left": None}]
+    if state["pending"]:
+        return [{"says": "It is answered. Choose how to go on.", "left": None}]
+    found = _wait_reasons(ctx, where, step)
+    gates = [names.reasons(ctx, where, move["gate"], node) for move in _forward(ctx, node)]
+    if gates and all(gates):
+        found += [one for one in min(gates, key=len) if one not in found]
+    return found
+
+
+_PHASES = {
+    "new": "The run has not been started.",
+    "declare": "Confirm the energy states first.",
+    "confirm": "The work was interrupted. Confirm the energy states first.",
+    "stopped": "The run is stopped. Make safe and end it.",
+    "ended": "The run has ended.",
+    "voided": "The run was voided.",
+}
+
+
+def _forward(ctx: Context, node: str) -> list[Plain]:
+    """The moves that an answer of the step is for: not those that a fail offers, and no way round."""
+    leaving = ctx.leaving.get(node, [])
+    return [m for m in leaving if m["on"] != "fail" and m["manner"] == "plain" and not moves.is_around(m)]
+
+
+def _wait_reasons(ctx: Context, where: Scope, step: Plain) -> list[Plain]:
+    control = step["control"]
+    if control["control"] != "wait":
+        return []
+    elapsed = answers.waited(ctx, where, control)
+    if elapsed is None:
+        return [{"says": "The time has not begun to count.", "left": None}]
+    if elapsed["left"] > 0:
+        return [{"says": f"Opens in {clock.spoken(clock.ceil_ms(elapsed['left']))}.", "left": elapsed["left"]}]
+    return []
+
+
+def offered(ctx: Context, state: State, where: Scope) -> list[Plain]:
+    """Every move that leaves the step, with what keeps it closed: after an answer only those of its outcome."""
+    if state["phase"] != "going":
+        return []
+    pending, node = state["pending"], state["node"]
+    leaving = moves.leads(ctx, state, node, pending["outcome"]) if pending else ctx.leaving.get(node, [])
+    skip = None if pending else node
+    found = []
+    for move in leaving:
+        reasons = names.reasons(ctx, where, move["gate"], skip)
+        found.append(
+            {
+                "move": move["id"],
+                "to": move["to"],
+                "on": move["on"],
+                "choice": move["choice"],
+                "manner": move["manner"],
+                "label": label(ctx, state, move),
+                "button": moves.is_around(move) or pending is not None,
+                "open": not reasons,
+                "reasons": reasons,
+                "around": moves.is_around(move),
+                "tries": tries(ctx, state, move),
+            }
+        )
+    return found
+
+
+def label(ctx: Context, state: State, move: Plain) -> str:
+    """The words on a move's button; `{level}` is the rung that it leads to."""
+    text = move["label"] or LABELS[move["manner"]]
+    to = ctx.steps.get(move["to"])
+    if "{level}" not in text or to is None or to["level"] is None:
+        return str(text)
+    counters = dict(state["counters"])
+    for count in move["effects"]["counts"]:
+        low = ctx.sheet["counters"].get(count["counter"], [0, 0])[0]
+        before = counters.get(count["counter"], low)
+        counters[count["counter"]] = count["to"] if count["to"] is not None else before + (count["by"] or 0)
+    there = names.scope(ctx, {**state, "counters": counters})
+    return rows.with_level(text, rows.level_text(ctx, there, to))
+
+
+def tries(ctx: Context, state: State, move: Plain) -> Plain | None:
+    """How often a capped move was taken and still may be, from its counter's bounds; None where nothing caps it."""
+    for count in move["effects"]["counts"]:
+        bound = ctx.sheet["counters"].get(count["counter"])
+        if count["by"] == 1 and bound is not None and move["manner"] == "again":
+            used = state["counters"].get(count["counter"], bound[0]) - bound[0]
+            return {"used": used, "left": max(0, bound[1] - bound[0] - used)}
+    return None
+
+
+def _next(ways: list[Plain]) -> str | None:
+    """Where the one way on leads that an answer takes by itself."""
+    plain = [way for way in ways if way["manner"] == "plain" and way["on"] != "fail" and way["open"]]
+    plain = [way for way in plain if way["around"] is False]
+    return plain[0]["to"] if len(plain) == 1 else None
+
+
+def _is(step: Plain | None, *controls: str) -> bool:
+    return step is not None and step["control"]["control"] in controls
+
+
+def _meter(state: State, step: Plain | None) -> Plain | None:
+    """The instrument that the step is read with, as this run carries it."""
+    control = step["control"] if step else {}
+    return answers.instrument(state, answers.meter_of(state, control.get("meter") or control.get("tester")))
+
+
+def _limits(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> Plain | None:
+    if step is None or not _is(step, "number", "result"):
+        return None
+    return answers.bounds(ctx, where, step["control"], meter)
+
+
+def _points(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> list[Plain]:
+    """What a proof asks for, in order, each with its limits."""
+    if step is None or not _is(step, "prove"):
+        return []
+    return [
+        {"field": field, "title": title, "limits": answers.bounds(ctx, where, step["control"], meter, own)}
+        for field, title, own in answers.proof_fields(step["control"])
+    ]
+
+
+def _value(ctx: Context, where: Scope, step: Plain | None) -> str | None:
+    """A result in its unit; None where the step is none, or the formula has no value."""
+    if step is None or not _is(step, "result"):
+        return None
+    return answers.result_text(ctx, where, step["control"])[1] or None
+
+
+def _plate(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> str | None:
+    control = step["control"] if step else {}
+    if control.get("plate") is None:
+        return None
+    resolution = answers.resolution_of(control, meter)
+    return rows.shown(names.value(ctx, where, control["plate"]), control["unit"], resolution)
+
+
+def _judgeable(
+    ctx: Context, where: Scope, step: Plain | None, meter: Plain | None, limits: Plain | None, now: Plain
+) -> Plain:
+    """Whether a reading could be judged now, and what keeps it from being so."""
+    if step is None or not _is(step, "number", "prove", "result"):
+        return {"ok": True, "why": "", "overdue": False}
+    asked = step["control"].get("meter") or step["control"].get("tester")
+    why = ""
+    if asked and meter is None:
+        why = f"This run carries no instrument for {asked['role'] or asked['instrument']}."
+    elif _is(step, "result"):
+        why = answers.result_text(ctx, where, step["control"])[2]
+    if limits and not why:
+        why = limits["fault"] or limits["coarse"]
+    return {"ok": not why, "why": why, "overdue": judge.overdue(meter, now["wall"])}
+
+
+def ahead(ctx: Context, state: State, where: Scope) -> list[tuple[str, Plain | None]]:
+    """The steps that probably come, the open one first, each with the move that probably leaves it."""
+    node, seen, path = state["node"], set[str](), list[tuple[str, Plain | None]]()
+    while node in ctx.steps and node not in seen:
+        seen.add(node)
+        pending = state["pending"] if state["pending"] and state["pending"]["step"] == node else None
+        leaving = moves.leads(ctx, state, node, pending["outcome"]) if pending else _forward(ctx, node)
+        plain = [m for m in leaving if m["manner"] == "plain" and m["to"] not in seen and m["to"] != SAFE]
+        likely = [m for m in plain if not any(_decided_against(ctx, state, where, c) for c in m["gate"])]
+        move = likely[0] if likely else plain[0] if plain else None
+        path.append((node, move))
+        if move is None or move["to"] == END:
+            break
+        node = move["to"]
+    return path
+
+
+def _decided_against(ctx: Context, state: State, where: Scope, condition: Plain) -> bool:
+    """The condition speaks only of answered choices and of givens, and does not hold: it never will in this run."""
+    found = names.mentioned(condition["tree"])
+    given = {one["name"] for one in ctx.sheet["givens"]}
+    known = all(n in given or (n.startswith("choice:") and n[len("choice:") :] in state["choices"]) for n in found)
+    return bool(found) and known and names.value(ctx, where, condition["tree"]) is not True
+
+
+def waits(ctx: Context, where: Scope, state: State, path: list[tuple[str, Plain | None]]) -> list[Plain]:
+    """Waits that count now and gate the open step or one that comes."""
+    found: list[Plain] = []
+    known = set()
+    for step_id, move in path:
+        step = ctx.steps[step_id]
+        control = step["control"]
+        own = _is(step, "wait")
+        asked = [{"clock": control["clock"], "least": control["least"], "says": step["title"]}] if own else []
+        asked += [c for c in (move["gate"] if move else []) if c["clock"] and c["least"]]
+        for one in asked:
+            elapsed = answers.waited(ctx, where, one)
+            if elapsed is None or (elapsed["left"] <= 0 and not (own and step_id == state["node"])):
+                continue
+            key = (one["clock"], elapsed["texts"]["needed"])
+            if key in known:
+                continue
+            known.add(key)
+            head, _, rest = one["clock"].partition(":")
+            found.append(
+                {
+                    "step": step_id,
+                    "number": step["number"],
+                    "source": rest if head == "age" else None,
+                    "since": rest if head == "since" else None,
+                    "says": one["says"],
+                    "left": elapsed["left"],
+                    "least": elapsed["texts"]["needed"],
+                    "elapsed": elapsed["texts"]["least"],
+                    "greatest": elapsed["texts"]["greatest"],
+                }
+            )
+    return found
+
+
+def _next_change(state: State, ctx: Context, path: list[tuple[str, Plain | None]]) -> Plain | None:
+    """The next step that probably changes a source, and what it changes."""
+    for step_id, move in path:
+        sets = move["effects"]["sets"] if move else {}
+        changed = {n: to for n, to in sets.items() if state["sources"].get(n, {}).get("state") != to}
+        if changed:
+            return {"sources": changed, "step": step_id, "number": ctx.steps[step_id]["number"]}
+    return None
+
+
+_MAY = {
+    "new": [],
+    "declare": ["make-safe", "declare", "trip", "remark", "picture", "end", "void"],
+    "going": ["make-safe", "correct", "trip", "pause", "remark", "picture", "change-person", "end", "void"],
+    "confirm": ["make-safe", "confirm", "correct", "trip", "remark", "picture", "end", "void"],
+    "stopped": ["make-safe", "correct", "trip", "remark", "picture", "change-person", "end", "void"],
+    "voided": [],
+}
+
+
+def may(state: State, is_open: bool, ways: list[Plain]) -> list[str]:
+    """The things that may be done now, as words for buttons; `answer` and `go-on` where the step itself is open."""
+    phase = state["phase"]
+    if phase == "ended":
+        return ["sign", "correct", "remark", "picture", "void"] if unsigned_end(state) else ["void"]
+    found = list(_MAY[phase])
+    if phase == "going" and is_open:
+        found.append("answer")
+    if phase == "going" and any(way["open"] and way["button"] for way in ways):
+        found.append("go-on")
+    return found
+
+
+def unsigned_end(state: State) -> bool:
+    """The run has ended, and whoever performed it has not signed since, or it was returned and taken up again."""
+    if state["ended"] is None:
+        return False
+    last = state["ended"]["seq"]
+    signed = any(s["meaning"] == "performed" and s["seq"] > last for s in state["signatures"])
+    return state["reopened"] is not None or not signed
