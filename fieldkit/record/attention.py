@@ -114,7 +114,7 @@ def scale(r: Reading) -> Scale:
         olds=r.pointers,
         verdict=r.verdict,
         why=r.reason,
-        says=words.minus(r.words),
+        says=r.words,
     )
 
 

@@ -252,9 +252,8 @@ def _line(frame: Frame, e: Plain) -> str:
             old = "".join(f"(was {words.minus(o['text'])}) " for o in row["old"])
             return f"{old}{words.minus(row['text'])} {frame.unit(row['unit'])}, {row['verdict']}".strip()
         case "proved":
-            return (
-                f"{words.first_up(row['verdict'] or 'not judged')}: tester before, {len(body['points'])} points, after."
-            )
+            points = words.count(len(body["points"]), "point")
+            return f"{words.first_up(row['verdict'] or 'not judged')}: tester before, {points}, tester after."
         case "locked":
             return f"Lock {row['text']} on {body['point']}, held by {frame.name(body['holder'])}."
         case "unlocked":

@@ -8,6 +8,7 @@ from __future__ import annotations
 from decimal import ROUND_HALF_UP, Decimal, InvalidOperation
 from typing import Any
 
+from fieldkit import values
 from fieldkit.record import words
 from fieldkit.record.frame import Frame
 from fieldkit.record.lines import Deviation, FormulaLine, Limits, OldValue, Pointer, Reading, Retake
@@ -69,7 +70,7 @@ def _reading(frame: Frame, event: Plain, row: Plain, before: list[Reading], devi
     control = frame.index.steps[row["step"]]["control"]
     return Reading(
         **_common(frame, event, row),
-        **_judged(row, unit),
+        **_judged(row, row["unit"], unit),
         text=row["text"] or event["body"].get("value", ""),
         value=words.number(row["text"]),
         limits=_limits(row["limits"], unit),
@@ -96,7 +97,7 @@ def _proof(frame: Frame, event: Plain, row: Plain) -> list[Reading]:
         found.append(
             Reading(
                 **_common(frame, event, row),
-                **_judged(point, unit),
+                **_judged(point, row["unit"], unit),
                 part=part,
                 text=point["text"],
                 value=words.number(point["text"]),
@@ -112,7 +113,7 @@ def _proof(frame: Frame, event: Plain, row: Plain) -> list[Reading]:
     return found
 
 
-def _judged(row: Plain, unit: str) -> Plain:
+def _judged(row: Plain, symbol: str, unit: str) -> Plain:
     margin, u = row.get("margin"), row.get("u")
     return {
         "u": _short(u, row.get("limits"), row["text"]),
@@ -120,7 +121,7 @@ def _judged(row: Plain, unit: str) -> Plain:
         "margin_u": _in_units(margin, u),
         "verdict": row["verdict"] or "not judged",
         "reason": _why(row.get("limits")) if row["verdict"] == "not judged" else "",
-        "words": row.get("words", ""),
+        "words": words.printed(row.get("words", ""), symbol, unit),
     }
 
 
@@ -141,14 +142,13 @@ def _in_units(margin: str | None, u: str | None) -> str | None:
 
 
 def _short(u: str | None, limits: Plain | None, text: str) -> str | None:
-    """U as printed: two significant digits, halves up; the full one is recomputed from the instrument at any time."""
+    """U as printed: with the decimals of the meter's steps, never as zero; anybody recomputes the full one."""
     if u is None:
         return None
-    exact = Decimal(u)
-    if exact == 0:
-        return "0"
-    places = max(0, 1 - exact.adjusted())
-    return f"{exact.quantize(Decimal(1).scaleb(-places), ROUND_HALF_UP):f}"
+    like = (limits or {}).get("resolution") or words.number(text)
+    places = values.decimals(like)
+    shown = values.fixed(values.to_float(values.dec(u)), places)
+    return values.to_text(values.Dec(1, places)) if values.dec(shown).digits == 0 else shown
 
 
 def _limits(row: Plain | None, unit: str) -> Limits | None:
@@ -214,7 +214,7 @@ def deviations(frame: Frame) -> tuple[Deviation, ...]:
                 value=row["text"],
                 unit=unit,
                 limits=limits.says if limits else "",
-                says=row["words"],
+                says=words.printed(row["words"], row["unit"], unit),
                 reason=body["reason"],
                 under=body["under"],
                 authority=body["authority"] or "",

@@ -7,6 +7,7 @@ two clocks could be confused. Not here: the sentence of a reading (fieldkit.run.
 from __future__ import annotations
 
 import datetime as dt
+import re
 from collections.abc import Sequence
 
 MONTHS = (
@@ -122,9 +123,19 @@ def sentence(words: str) -> str:
     return first_up(words) + ("" if words[-1] in ".!?”" else ".")
 
 
+_MINUS = re.compile(r"(?<![\w-])-(?=[0-9])", re.ASCII)
+
+
 def minus(text: str) -> str:
-    """A number for a person: a true minus sign."""
-    return text.replace("-", "−")
+    """Text for a person: a true minus sign before numbers; hyphens in names and dates stay."""
+    return _MINUS.sub("−", text)
+
+
+def printed(text: str, symbol: str, shown: str) -> str:
+    """A sentence of the judgement as printed: true minus signs, curled apostrophes, the unit as people read it."""
+    if symbol and symbol != shown:
+        text = re.sub(rf"(?<=[0-9] ){re.escape(symbol)}(?![\w])", shown, text)
+    return minus(text).replace("'", "’")
 
 
 def number(text: str) -> str:
