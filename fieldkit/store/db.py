@@ -23,7 +23,7 @@ class Base(DeclarativeBase):
     pass
 
 
-db = SQLAlchemy(model_class=Base, session_options={"expire_on_commit": False})
+db = SQLAlchemy(model_class=Base)
 
 if TYPE_CHECKING:
     Model = Base
@@ -115,6 +115,8 @@ def writing() -> Iterator[Session]:
     if session.info.get("writing"):
         raise RuntimeError("an operation was called inside another one's transaction")
     session.rollback()
+    # a rollback forgets nothing where no transaction was open, and a check must not be made on an older copy
+    session.expire_all()
     session.info["writing"] = True
     try:
         connection = session.connection(execution_options={"fieldkit_write": True})

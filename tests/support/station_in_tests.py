@@ -92,9 +92,15 @@ def furnish(app: Flask) -> str:
 
 
 @pytest.fixture
-def bare(tmp_path: Path) -> Iterator[Flask]:
+def database_url() -> str | None:
+    """None is SQLite in the app's folder; a test module may say otherwise."""
+    return None
+
+
+@pytest.fixture
+def bare(tmp_path: Path, database_url: str | None) -> Iterator[Flask]:
     """An app over an empty folder."""
-    app = create_app(tmp_path / "data", plain_http=True, testing=True)
+    app = create_app(tmp_path / "data", plain_http=True, testing=True, database_url=database_url)
     yield app
     with app.app_context():
         db.session.remove()
