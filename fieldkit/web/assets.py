@@ -10,7 +10,7 @@ import mimetypes
 from dataclasses import dataclass
 from pathlib import Path
 
-from flask import Blueprint, Flask, Response, abort, current_app, send_file
+from flask import Blueprint, Flask, Response, abort, current_app, request
 
 from fieldkit import files
 from fieldkit.web.security import public
@@ -67,10 +67,10 @@ def static_file(digest: str, path: str) -> Response:
     if digest != assets.hash or path not in assets.sha256:
         abort(404)
     media = MEDIA.get(Path(path).suffix) or mimetypes.guess_type(path)[0] or "application/octet-stream"
-    response = send_file(assets.folder / path, mimetype=media, etag=assets.sha256[path], max_age=31536000)
-    response.headers["Content-Type"] = media
+    response = Response((assets.folder / path).read_bytes(), content_type=media)
+    response.set_etag(assets.sha256[path])
     response.headers["Cache-Control"] = "public, max-age=31536000, immutable"
-    return response
+    return response.make_conditional(request)
 
 
 def start(app: Flask) -> None:

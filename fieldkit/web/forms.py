@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from flask_wtf import FlaskForm
 from wtforms import HiddenField, PasswordField, SelectMultipleField, StringField, TextAreaField
+from wtforms.fields.choices import SelectChoice
 from wtforms.validators import InputRequired, Length
 from wtforms.widgets import CheckboxInput, ListWidget
 
@@ -43,11 +44,11 @@ class NewPerson(FlaskForm):
     login = StringField("Sign-in name", _needed("Give a sign-in name."))
     name = StringField("Name, as it is to stand on records", _needed("Give the name."))
     password = PasswordField("First password, at least 10 characters", _needed("Give a first password."))
-    roles = Roles("Roles", choices=[(role, ROLE_TITLES[role]) for role in ROLES])
+    roles = Roles("Roles", choices=[SelectChoice(role, ROLE_TITLES[role]) for role in ROLES])
 
 
 class ChangePerson(FlaskForm):
-    roles = Roles("Roles", choices=[(role, ROLE_TITLES[role]) for role in ROLES])
+    roles = Roles("Roles", choices=[SelectChoice(role, ROLE_TITLES[role]) for role in ROLES])
 
 
 class NewPassword(FlaskForm):

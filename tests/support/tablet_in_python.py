@@ -56,9 +56,10 @@ class TabletInPython:
             self.certificates[login] = pair
         return answer
 
-    def token(self, method: str, path: str, body: bytes = b"", nonce: str = "", **claims: Any) -> str:
+    def token(self, method: str, path: str, body: bytes = b"", changed: dict[str, Any] | None = None) -> str:
+        """The signed request; `changed` says what it claims otherwise."""
         digest = hashlib.sha256(body).hexdigest()
-        payload = {"method": method, "path": path, "body": digest, "nonce": nonce or self.nonce(), **claims}
+        payload = {"method": method, "path": path, "body": digest, "nonce": self.nonce(), **(changed or {})}
         return jws.sign(payload, self.key, "fieldkit-request", kid=self.device)
 
     def call(self, method: str, path: str, body: bytes = b"", media: str = "application/json") -> Any:
