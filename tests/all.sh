@@ -1,6 +1,6 @@
 #!/bin/sh
 # Makes a bare Debian machine (12 or 13, root, Python 3.11+) able to run every test, and runs them all.
-# Arguments go to pytest: sh tests/run -k chain
+# Arguments go to pytest: sh tests/all.sh -k chain
 set -eu
 cd "$(dirname "$0")/.."
 
