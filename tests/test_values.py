@@ -1,7 +1,7 @@
 """Numbers as typed, rounded and printed: every vector in both languages, and against outside arithmetic.
 
 Outside checks: Python's decimal module (an independent implementation of exact decimal arithmetic) for round12, fixed
-and conversions. The table of typed texts is field-failures.md section 7, "Number entry", and more of the kind.
+and conversions. The typed texts are those that people are known to enter, and more of the kind.
 """
 
 from __future__ import annotations

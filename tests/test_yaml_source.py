@@ -1,4 +1,4 @@
-"""Strict YAML: texts stay texts, and everything that is refused is refused with its place. Rows: field-failure L17."""
+"""Strict YAML: texts stay texts, and everything that is refused is refused with its place."""
 
 from __future__ import annotations
 
