@@ -14,13 +14,12 @@ import { countdown } from "./words.js";
 export function opensWords(reasons) {
   const left = reasons.filter((r) => r.left !== null && r.left !== undefined && Number(r.left) > 0);
   if (reasons.length && left.length === reasons.length) return `Opens in ${countdown(Math.max(...left.map((r) => Number(r.left))))}`;
-  const says = reasons.find((r) => !left.includes(r))?.says ?? "";
-  return says ? `Opens when ${says}` : "Not open yet";
+  return (reasons.find((r) => !left.includes(r))?.says ?? "Not open yet").replace(/\.$/, "");
 }
 
 /** The list of reasons, with the time that each still takes. @param {Reason[]} reasons */
 export function reasonList(reasons) {
-  return h("ul", { class: "reasons", "data-reason-list": true }, reasons.map((r) => h("li", {}, h("span", {}, `Opens when ${r.says}`),
+  return h("ul", { class: "reasons", "data-reason-list": true }, reasons.map((r) => h("li", {}, h("span", {}, r.says),
     h("span", { class: "num" }, r.left !== null && r.left !== undefined && Number(r.left) > 0 ? countdown(r.left) : ""))));
 }
 
@@ -35,7 +34,7 @@ export function acting(ctx, spec) {
   const sides = spec.side === false ? [] : [side("remark", "pen", "Remark"), side("picture", "camera", "Picture")];
   let shut = /** @type {Reason[]} */ ([]);
   const press = () => {
-    if (shut.length) alertUser(shut.map((r) => `Opens when ${r.says}.`).join(" "));
+    if (shut.length) alertUser(shut.map((r) => r.says).join(" "));
     else spec.run();
   };
   const held = spec.held ? holdButton({ label: h("span", { "data-held-label": true }), run: press }) : null;

@@ -1,7 +1,7 @@
 /** The frame of a run: head over rails and work. It holds the places; what stands in them is given by screens/run.js. */
 import { h, put } from "./dom.js";
 import { icon } from "./icons.js";
-import { railHeads, setLanes } from "./rails.js";
+import { lanesOf, railHeads, setLanes } from "./rails.js";
 import { personName, time } from "./words.js";
 
 /** Height of a past or coming row, as tablet.css has it. */
@@ -19,7 +19,7 @@ export function frame(sheet, acts) {
   const node = h("div", { class: "tab", "data-frame": true },
     h("header", { class: "head" }, safe, h("div", { class: "title" }, h("div", {}, title, under), h("div", {}, who, saved))),
     railHeads(sheet), h("div", { class: "live" }, dl, more), mini, strip);
-  setLanes(node, sheet.sources.length);
+  setLanes(node, lanesOf(sheet).length);
   let isOver = false;
 
   /** The open step fills what two past and two coming rows leave free. */

@@ -7,21 +7,23 @@ import { current } from "./timeline.js";
 function liveWords(sheet, state, progress) {
   const now = current(state.sources);
   const waiting = new Set((progress?.waits ?? []).filter((/** @type {any} */ w) => Number(w.left) > 0).map((/** @type {any} */ w) => w.source));
-  return sheet.sources.filter((/** @type {any} */ s) => LIVE.includes(now[s.name])).map((/** @type {any} */ s) => {
+  const counts = (/** @type {any} */ s) => LIVE.includes(now[s.name]) || (now[s.name] === "unknown" && s.isolable !== false);
+  return sheet.sources.filter(counts).map((/** @type {any} */ s) => {
     const level = progress?.level && s.name === "beam_supply" && now[s.name] === "on" ? ` at ${progress.level}` : "";
-    const manner = now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) ? " (waiting)" : "";
+    const manner = now[s.name] === "unknown" ? " (not known)" : now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) && s.name === "heater" ? " (warming)" : "";
     return `${sourceTitle(sheet, s.name)}${level}${manner}`;
   });
 }
 
-/** @param {any} sheet @param {any} state */
+/** Sources that are shut, those in one condition together. @param {any} sheet @param {any} state */
 function shutWords(sheet, state) {
-  const at = new Map((state.log ?? []).map((/** @type {any} */ row) => [row.seq, row.wall]));
-  return sheet.sources.filter((/** @type {any} */ s) => SHUT.includes(state.sources?.[s.name]?.state)).map((/** @type {any} */ s) => {
+  const at = new Map((state.log ?? []).map((/** @type {any} */ row) => [row.seq, row.wall])), groups = /** @type {Map<string, string[]>} */ (new Map());
+  for (const s of sheet.sources.filter((/** @type {any} */ s) => SHUT.includes(state.sources?.[s.name]?.state))) {
     const found = state.sources[s.name], when = at.get(found.seq);
-    const how = found.state === "locked" ? "not proved dead" : found.state === "proved" ? "proved dead" : "proved dead and earthed";
-    return { title: sourceTitle(sheet, s.name), how: `${how}${when && found.state !== "locked" ? ` ${minute(when)}` : ""}`, sure: found.state !== "locked" };
-  });
+    const how = found.state === "locked" ? "not proved dead" : `${found.state === "proved" ? "proved dead" : "proved dead and earthed"}${when ? ` ${minute(when)}` : ""}`;
+    groups.set(how, [...(groups.get(how) ?? []), sourceTitle(sheet, s.name)]);
+  }
+  return [...groups].map(([how, titles]) => ({ title: list(titles), how, sure: how !== "not proved dead" }));
 }
 
 /** @param {any} sheet @param {any} state @param {any} progress */
@@ -31,7 +33,7 @@ export function nextWords(sheet, state, progress) {
   const sets = Array.isArray(next.sources) ? Object.fromEntries(next.sources.map((/** @type {any} */ s) => (typeof s === "string" ? [s, null] : [s.name, s.state]))) : next.sources;
   const move = sheet.moves.filter((/** @type {any} */ m) => m.origin === next.step).map((/** @type {any} */ m) => m.effects?.sets ?? {}).find((/** @type {any} */ s) => Object.keys(sets).some((k) => k in s)) ?? {};
   const words = Object.keys(sets).map((s) => `${sourceTitle(sheet, s)} ${/** @type {any} */ (CHANGE_WORDS)[sets[s] ?? move[s]] ?? "changes"}`);
-  const wait = (progress.waits ?? []).map((/** @type {any} */ w) => Number(w.left)).filter((/** @type {number} */ n) => n > 0);
+  const wait = (progress.waits ?? []).filter((/** @type {any} */ w) => w.step === next.step).map((/** @type {any} */ w) => Number(w.left)).filter((/** @type {number} */ n) => n > 0);
   const where = next.step === progress.node ? "at this step" : `at step ${next.number}`;
   return `${list(words)}, ${where}${wait.length ? `, in ${countdown(Math.max(...wait))} at the earliest` : ""}`;
 }
@@ -41,6 +43,6 @@ export function liveList(sheet, state, progress) {
   const live = liveWords(sheet, state, progress), shut = shutWords(sheet, state);
   return h("dl", {},
     h("dt", {}, "Live now"), h("dd", {}, live.length ? live.join(", ") : "nothing"),
-    shut.length ? [h("dt", {}, "Locked"), h("dd", {}, shut.map((/** @type {any} */ s, /** @type {number} */ k) => [k ? ", " : "", `${s.title}, `, s.sure ? s.how : h("b", {}, s.how)]))] : null,
+    shut.length ? [h("dt", {}, "Locked"), h("dd", {}, shut.map((/** @type {any} */ s, /** @type {number} */ k) => [k ? "; " : "", `${s.title}, `, s.sure ? s.how : h("b", {}, s.how)]))] : null,
     h("dt", {}, "Next change"), h("dd", {}, nextWords(sheet, state, progress)));
 }

@@ -5,12 +5,15 @@ import { drawn } from "./dom.js";
 /** How wide a drawing may be here, in CSS px: text in it is drawn at its own size. */
 const room = () => (innerWidth <= 640 ? Math.max(260, innerWidth - 28) : innerWidth >= 1000 && innerHeight <= 1000 ? 540 : 572);
 
+/** The name under a limit; one that only says "nameplate" would be taken for the nameplate value itself. @param {string} name @param {string} plain */
+const named = (name, plain) => (name && name !== "nameplate" ? name : plain);
+
 /** @param {{limits: any, plate?: string | null, found?: any, text?: string | null, unit: string, old?: {text: string, name: string} | null}} spec */
 function model(spec) {
   const { limits, plate, found, text, unit, old } = spec;
   const { low, high, caution_low, caution_high, accept_low, accept_high, low_name, high_name } = limits;
   return {
-    unit, low, high, caution_low, caution_high, accept_low, accept_high, low_name: low_name || "lower limit", high_name: high_name || "upper limit",
+    unit, low, high, caution_low, caution_high, accept_low, accept_high, low_name: named(low_name, "lower limit"), high_name: named(high_name, "upper limit"),
     plate: plate ?? null, plate_name: "nameplate", value: text ? text.replace(",", ".").replace("−", "-").replace(/^\+/, "") : null, u: found?.u ?? null, margin: found?.margin ?? null,
     verdict: found?.verdict ?? null, olds: old ? [{ value: old.text, name: old.name }] : [],
   };

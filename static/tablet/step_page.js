@@ -34,11 +34,11 @@ const steps = (sheet) => new Set(sheet.steps.map((/** @type {any} */ s) => s.num
  * @param {any} sheet @param {any} step @param {{level?: string, note?: string}} extra
  */
 export function stepHead(sheet, step, extra = {}) {
-  const isCaution = step.control.control === "caution";
+  const isCaution = step.control.control === "caution", levelled = (/** @type {string} */ text) => text.replaceAll("{level}", extra.level ?? "");
   return [
     h("div", { class: "what" }, h("span", {}, "Step ", h("b", {}, step.number), ` of ${steps(sheet)}, `, h("b", {}, kindWord(step))), h("span", { "data-step-note": true }, extra.level || extra.note || step.section || "")),
-    h("h1", { class: isCaution ? "seen-by-reader" : null, tabindex: "-1", "data-step-title": true }, isCaution ? `${step.control.signal}: ${step.title}` : step.title),
-    step.text ? h("p", { class: "say" }, step.text) : null,
+    h("h1", { class: isCaution ? "seen-by-reader" : null, tabindex: "-1", "data-step-title": true }, isCaution ? `${step.control.signal}: ${step.title}` : levelled(step.title)),
+    step.text ? h("p", { class: "say" }, levelled(step.text)) : null,
     step.why ? h("p", { class: "why" }, step.why) : null,
     step.who === "second person" ? h("p", { class: "with" }, "The second person takes this one.") : null,
   ];

@@ -5,10 +5,10 @@
 import { h } from "./dom.js";
 import { verdictMark } from "./icons.js";
 import { rails } from "./rails.js";
-import { CHANGE_WORDS, CONTROL_WORDS, lower, minus, minute, sourceTitle } from "./words.js";
+import { CHANGE_WORDS, CONTROL_WORDS, minus, minute, sourceTitle } from "./words.js";
 
 /** Kinds that stand in the log but are no row of work. */
-const QUIET = ["signed"];
+const QUIET = ["signed", "corrected"];
 
 /** event kind -> what a row without a step says */
 const KIND_WORDS = {
@@ -22,7 +22,7 @@ const KIND_WORDS = {
 export function rowTitle(row) {
   const title = row.title || /** @type {any} */ (KIND_WORDS)[row.kind] || row.kind;
   if (row.kind === "remarked" && !row.step) return `Remark: ${row.note || row.text || ""}`;
-  return row.level ? `${title}, ${row.level}` : title;
+  return row.kind === "safe-step-done" ? `Make safe: ${title}` : title;
 }
 
 /** The value end of a past row: old values struck through, the value, its mark. @param {any} row @param {any} sheet @param {Record<string, string>} sets */
@@ -33,6 +33,8 @@ export function rowValue(row, sheet, sets = {}) {
     return [old, h("span", {}, h("span", { class: "num" }, minus(text)), ` ${row.unit}`), row.verdict ? [verdictMark(row.verdict), h("span", { class: "seen-by-reader" }, row.verdict)] : null];
   }
   const change = Object.entries(sets).map(([s, v]) => `${sourceTitle(sheet, s)} ${/** @type {any} */ ({ on: "on", off: "off" })[v] ?? v}`);
+  if (row.kind === "chosen") return [old, row.note || row.text];
+  if (row.kind === "locked" || row.kind === "unlocked") return [old, change.length ? `${change[0]}, ` : "", `lock ${row.text} ${row.kind === "locked" ? "on" : "off"}`];
   if (change.length) return [old, change.slice(0, 2).join(", ")];
   if (row.verdict) return [old, row.verdict, verdictMark(row.verdict)];
   return [old, row.kind === "waited" ? "waited" : row.manner === "again" ? "taken again" : row.manner === "deviation" ? "deviation" : ""];
@@ -66,8 +68,8 @@ export function comingRow(sheet, { step, before, after, sets }) {
   const signal = step.control.control === "caution" ? h("span", { class: "signal" }, `${step.control.signal} `) : null;
   return h("li", { class: "step next" }, rails(sheet, before, after, { planned: true }),
     h("div", { class: "row" }, h("span", { class: "t" }), h("span", { class: "n" }, step.number),
-      h("span", { class: "w" }, signal, signal ? lowerFirst(step.title) : step.title), h("span", { class: "v" }, comingWords(sheet, step, sets))));
+      h("span", { class: "w" }, signal, title(step.title)), h("span", { class: "v" }, comingWords(sheet, step, sets))));
 }
 
-/** The title of a caution stands after its signal word as it is. @param {string} title */
-const lowerFirst = (title) => title.replace(/^(DANGER|WARNING|CAUTION|NOTICE)[:,]?\s*/, "") || lower(title);
+/** A title without its signal word, which stands before it, and with its rung where that is not known yet. @param {string} text */
+const title = (text) => text.replace(/^(DANGER|WARNING|CAUTION|NOTICE)[:,]?\s*/, "").replaceAll("{level}", "the next level");

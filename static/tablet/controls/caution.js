@@ -1,7 +1,7 @@
 /** Caution: read aloud, then press and hold for a second. Says who heard it, and what the run already shows. */
-import { h, part, picks, put } from "../dom.js";
+import { h, part, put } from "../dom.js";
 import { acting } from "../acting.js";
-import { minute, minus, personName } from "../words.js";
+import { list, minute, minus, personName } from "../words.js";
 import { isShown, rowTitle } from "../strip.js";
 
 /** The last three rows of the log that did something. @param {any} state */
@@ -24,19 +24,11 @@ export function mount(ctx, el) {
   put(part(el.r, "shown"), rows);
   part(el.r, "known").hidden = rows.length === 0;
   const present = ctx.people();
-  const heard = present.length > 1
-    ? picks({ legend: "Who heard it", many: true, chosen: present.map((/** @type {any} */ p) => p.id), onchange: () => update(),
-      options: present.map((/** @type {any} */ p) => ({ value: p.id, label: p.name })) })
-    : null;
-  if (heard) put(part(el.r, "heard"), heard.node);
-  const who = () => heard?.values() ?? present.map((/** @type {any} */ p) => p.id);
-  const act = acting(ctx, { held: true, run: () => ctx.answer({ do: "acknowledged", heard: who() }) });
+  put(part(el.r, "heard"), present.length > 1 ? h("p", { class: "with" }, "It is read aloud to ", h("b", {}, list(present.map((/** @type {any} */ p) => p.name))), ".") : null);
+  const act = acting(ctx, { held: true, run: () => ctx.answer({ do: "acknowledged", heard: ctx.state.started.present }) });
   put(part(el.r, "act"), act.node);
-
   function update() {
-    const alone = present.length < 2;
-    act.show({ label: alone ? "I have read this, and I am alone here" : "I have read this to everyone here", reasons: ctx.shutReasons(), ready: who().length > 0,
-      small: who().length ? undefined : "Name at least one person who heard it" });
+    act.show({ label: present.length < 2 ? "I have read this, and I am alone here" : "I have read this to everyone here", reasons: ctx.shutReasons() });
   }
   update();
   return { update };

@@ -12,11 +12,11 @@ export function mount(ctx, el) {
   });
   put(part(el.r, "options"), rows.map((/** @type {any} */ r) => r.node));
   /** @param {any} option */
-  const moveOf = (option) => ctx.progress.moves?.find((/** @type {any} */ m) => m.choice === option.value || ctx.sheet.moves.find((/** @type {any} */ s) => s.id === m.move)?.choice === option.value);
+  const moveOf = (option) => ctx.progress.moves?.find((/** @type {any} */ m) => m.choice === option.value);
   /** @param {any} option */
   async function choose(option) {
     const move = moveOf(option);
-    if (move && !move.open) { alertUser(move.reasons.map((/** @type {any} */ r) => `Opens when ${r.says}.`).join(" ")); return; }
+    if (move && !move.open) { alertUser(move.reasons.map((/** @type {any} */ r) => r.says).join(" ")); return; }
     await ctx.answer({ do: "chosen", value: option.value });
   }
   function update() {
@@ -26,7 +26,7 @@ export function mount(ctx, el) {
       const move = moveOf(option), shut = move && !move.open;
       node.setAttribute("aria-disabled", String(Boolean(shut)));
       node.classList.toggle("shut", Boolean(shut));
-      put(part(node, "shut"), shut ? `Opens when ${move.reasons.map((/** @type {any} */ r) => r.says).join(", and ")}` : "");
+      put(part(node, "shut"), shut ? move.reasons.map((/** @type {any} */ r) => r.says).join(" ") : "");
     }
   }
   update();

@@ -23,9 +23,9 @@ export function mount(ctx, el) {
 
   async function release() {
     put(wrong);
-    const person = pass.person() ?? "", phrase = pass.phrase();
+    const person = pass.person() ?? "";
     if (!(await pass.check(ctx.host))) return;
-    const answer = await ctx.answer({ do: "released", who: person, statement }, { person, passphrase: phrase, meaning: "released", statement });
+    const answer = await ctx.answer({ do: "released", who: person }, statement);
     if (answer.refused) put(wrong, answer.refused.says);
     else pass.clear();
   }

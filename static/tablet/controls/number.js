@@ -44,7 +44,7 @@ export function mount(ctx, el) {
 
   function show() {
     const text = input.value.trim();
-    input.dataset.long = text.length > 12 ? "2" : text.length > 6 ? "1" : "0";
+    input.dataset.long = text.length > 6 ? "2" : text.length > 4 ? "1" : "0";
     put(part(el.l, "spoken"), spoken(text));
     const limits = ctx.progress.limits;
     const found = text ? judged({ text, unit, limits, resolution: control.resolution, instrument, protects: control.protects, day: ctx.run.now().wall }) : null;

@@ -1,7 +1,7 @@
 /** People: hands in at a place by name, or everyone out by name and counted. */
 import { h, part, picks, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
-import { list, personName } from "../words.js";
+import { list } from "../words.js";
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
@@ -9,9 +9,9 @@ export function mount(ctx, el) {
   const inside = ctx.state.hands?.[place] ?? [], out = way === "out";
   const present = ctx.people();
   put(part(el.l, "count"), inside.length
-    ? [h("b", {}, `${inside.length} signed in at the ${where}: `), list(inside.map((/** @type {string} */ n) => personName(ctx.state, n))), "."]
+    ? [h("b", {}, `${inside.length} signed in at the ${where}: `), list(inside), "."]
     : `Nobody is signed in at the ${where}.`);
-  const options = out ? inside.map((/** @type {string} */ n) => ({ value: n, label: personName(ctx.state, n) })) : present.map((/** @type {any} */ p) => ({ value: p.id, label: p.name }));
+  const options = out ? inside.map((/** @type {string} */ n) => ({ value: n, label: n })) : present.map((/** @type {any} */ p) => ({ value: p.name, label: p.name }));
   const names = options.length ? picks({ legend: out ? "Who is out, seen and counted" : "Whose hands go in", many: true, chosen: ctx.draft.names ?? [], options, onchange: () => { ctx.keep({ names: names?.values() }); update(); } }) : null;
   put(part(el.l, "names"), names?.node);
   const chosen = () => names?.values() ?? [];

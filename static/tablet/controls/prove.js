@@ -42,7 +42,7 @@ export function mount(ctx, el) {
     return { node, input, ask };
   }
   /** @param {any} ask limits of one row, as the engine shows them */
-  const limitsOf = (ask) => (ask.known ? ctx.progress.limits?.known : ctx.progress.limits?.points?.[ask.name]) ?? null;
+  const limitsOf = (ask) => ctx.progress.points?.find((/** @type {any} */ p) => p.field === (ask.known ? ask.name : `points.${ask.name}`))?.limits ?? null;
 
   function paint() {
     rows.forEach((r, k) => {

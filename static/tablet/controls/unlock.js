@@ -1,6 +1,6 @@
 /**
- * Unlock: a lock comes off by its holder's own passphrase; or, where the holder is away, by three checks written down and a
- * second person's passphrase.
+ * Unlock: a lock comes off by its holder's own passphrase; or, where the holder is away, by three checks written down, with
+ * the passphrases of whoever takes it off and of a second person.
  */
 import { h, part, picks, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
@@ -23,7 +23,7 @@ export function mount(ctx, el) {
   put(part(el.l, "way"), locks.length ? way.node : null);
   const inputs = Object.keys(CHECKS).map((name) => /** @type {HTMLInputElement} */ (el.l.querySelector(`[data-field="${name}"] input`)));
   for (const input of inputs) input.addEventListener("input", () => update());
-  let pass = /** @type {ReturnType<typeof passphrase> | null} */ (null);
+  let pass = /** @type {ReturnType<typeof passphrase> | null} */ (null), second = /** @type {ReturnType<typeof passphrase> | null} */ (null);
   const act = acting(ctx, { held: true, run: take });
   put(part(el.r, "act"), act.node);
   const byChecks = () => way.values()[0] === "checks";
@@ -31,28 +31,28 @@ export function mount(ctx, el) {
   function paint() {
     const found = lock();
     if (!found) { update(); return; }
-    const holder = ctx.everyone().filter((/** @type {any} */ p) => p.id === found.holder);
-    const seconds = ctx.people().filter((/** @type {any} */ p) => p.id !== ctx.state.recorder && p.id !== found.holder);
-    pass = passphrase({ people: byChecks() ? seconds : holder, legend: "Second person", onchange: () => update() });
-    part(el.l, "checks").hidden = !byChecks();
-    part(el.l, "second").hidden = !byChecks();
-    put(part(el.l, "second"), byChecks() ? pass.node : null);
-    put(part(el.l, "holder"), byChecks() ? null : [h("p", { class: "with" }, `Lock ${found.lock}, tag ${found.tag || "without a number"}, held by ${found.holder_name || found.holder}.`), pass.node]);
+    const taker = byChecks() ? ctx.state.recorder : found.holder;
+    pass = passphrase({ people: ctx.everyone().filter((/** @type {any} */ p) => p.id === taker), legend: "Who takes it off", onchange: () => update() });
+    second = byChecks() ? passphrase({ people: ctx.people().filter((/** @type {any} */ p) => p.id !== ctx.state.recorder && p.id !== found.holder), legend: "Second person", onchange: () => update() }) : null;
+    part(el.l, "checks").hidden = part(el.l, "second").hidden = !byChecks();
+    put(part(el.l, "second"), second?.node);
+    put(part(el.l, "holder"), h("p", { class: "with" }, `Lock ${found.lock}, tag ${found.tag || "without a number"}, held by ${found.holder_name || found.holder}.`), pass.node);
     update();
   }
   async function take() {
-    const found = lock(), phrase = pass?.phrase() ?? "", person = pass?.person() ?? "";
-    if (!pass || !(await pass.check(ctx.host))) return;
+    const found = lock();
+    if (!pass || !(await pass.check(ctx.host)) || (second && !(await second.check(ctx.host)))) return;
     const checks = byChecks() ? Object.values(CHECKS).map((name, k) => ({ name, how: inputs[k].value.trim() })) : [];
     const statement = byChecks() ? `Lock ${found.lock} on ${point} comes off; its holder is away and will be told before returning.` : `I take my lock ${found.lock} off ${point}.`;
-    const answer = await ctx.answer({ do: "unlocked", point, lock: found.lock, checks, second: byChecks() ? person : null }, { person, passphrase: phrase, meaning: "unlocked", statement });
+    const asked = { do: "unlocked", point, lock: found.lock, who: pass.person() };
+    const answer = await ctx.answer(second ? { ...asked, checks, second: second.person() } : asked, statement);
     if (answer.refused) put(wrong, answer.refused.says);
   }
   function update() {
     const reasons = ctx.shutReasons(), found = lock();
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    const ready = Boolean(found && pass?.ready() && (!byChecks() || inputs.every((i) => i.value.trim())));
-    act.show({ label: found ? `Lock ${found.lock} is off ${point}` : "No lock to take off", ready, reasons, small: ready ? undefined : byChecks() ? "Needs the three checks and the second person’s passphrase" : "Needs the holder’s passphrase" });
+    const ready = Boolean(found && pass?.ready() && (!second || (second.ready() && inputs.every((i) => i.value.trim()))));
+    act.show({ label: found ? `Lock ${found.lock} is off ${point}` : "No lock to take off", ready, reasons, small: ready ? undefined : byChecks() ? "Needs the three checks and both passphrases" : "Needs the holder’s passphrase" });
   }
   paint();
   return { update };

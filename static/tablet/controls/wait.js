@@ -41,7 +41,7 @@ export function mount(ctx, el) {
     if (wait) {
       const least = Number(wait.least), elapsed = Number(wait.elapsed);
       put(part(el.r, "scale"), timeScale({ elapsed, least }));
-      put(part(el.r, "sentence"), h("b", {}, passed(elapsed)), ` of at least ${countdown(least)} has passed by the running timer, which is what counts; the clock is only compared.`);
+      put(part(el.r, "sentence"), h("b", {}, passed(elapsed)), ` of at least ${countdown(least)} has passed by the running timer, which is what counts${wait.greatest && passed(wait.greatest) !== passed(elapsed) ? `; ${passed(wait.greatest)} by the clock, which is only compared` : ""}.`);
     }
     showDue();
     put(part(el.r, "reasons"), reasons.length > 1 || reasons.some((/** @type {any} */ r) => !(Number(r.left) > 0)) ? reasonList(reasons) : null);

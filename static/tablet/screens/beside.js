@@ -1,7 +1,7 @@
 /** The small pages beside a step: this run, remark, picture, trip or something odd, pause, site card, lock board, ending early. */
 import { field, h, picks, put } from "../dom.js";
 import { pictureBody, showPreview } from "../controls/picture.js";
-import { overHead, overWork } from "./overs.js";
+import { overHead, overWork } from "./over_parts.js";
 import { lookTools } from "./pages.js";
 import { cardBody } from "./card.js";
 import { siteOf } from "./make_safe.js";
@@ -14,16 +14,17 @@ const first = (label, run, name) => h("div", { class: "acts one" }, h("button", 
 
 /** What else can be done in this run. @param {any} ctx */
 export function thisRunPage(ctx) {
-  const may = ctx.progress.may ?? [], over = ["ended", "voided"].includes(ctx.state.phase), can = (/** @type {string} */ what) => !over && !ctx.run.readonly && (may.length === 0 || may.includes(what));
+  const may = ctx.progress.may ?? [], can = (/** @type {string} */ what) => !ctx.run.readonly && may.includes(what);
   const node = overWork([overHead(ctx, "This run", `Run ${ctx.state.run}`), h("div", { class: "menu" },
     can("trip") ? way("Trip, or something odd", "Which indicator, at what level, what was done", () => ctx.over("trip"), { "data-to": "trip" }) : null,
     way("Site card", "Emergency off, telephone, first aid", () => ctx.over("card", { back: "this_run" }), { "data-to": "card" }),
     way("Locks and earths", "On this cabinet now, with their holders", () => ctx.over("board"), { "data-to": "board" }),
     can("pause") ? way("Pause", "Everything is confirmed again afterwards", () => ctx.over("pause"), { "data-to": "pause" }) : null,
-    !over && !ctx.run.readonly ? way("Another person records", "The one who leaves signs", () => ctx.over("person"), { "data-to": "person" }) : null,
-    !over && !ctx.run.readonly ? way("Remark", "Beside this step", () => ctx.over("remark"), { "data-to": "remark" }) : null,
-    !over && !ctx.run.readonly ? way("Picture", "Beside this step", () => ctx.over("picture"), { "data-to": "picture" }) : null,
-    !over && !ctx.run.readonly ? way("End the run early", "With a reason; it stays in the record as stopped", () => ctx.over("end_early"), { "data-to": "end_early" }) : null,
+    can("change-person") ? way("Another person records", "The one who leaves signs", () => ctx.over("person"), { "data-to": "person" }) : null,
+    can("remark") ? way("Remark", "Beside this step", () => ctx.over("remark"), { "data-to": "remark" }) : null,
+    can("picture") ? way("Picture", "Beside this step", () => ctx.over("picture"), { "data-to": "picture" }) : null,
+    can("end") && ctx.state.node !== "@end" ? way("End the run early", "With a reason; it stays in the record as stopped", () => ctx.over("end_early"), { "data-to": "end_early" }) : null,
+    can("void") ? way("Void this run", "With a reason; it stays, marked as void", () => ctx.over("void_run"), { "data-to": "void_run" }) : null,
     way("To the start page", "The run stays open and waits go on", () => ctx.app.go("home"), { "data-to": "home" })),
   h("p", { class: "note" }, "To correct something: scroll up in the strip and touch its row."),
   h("div", { class: "buttons" }, lookTools("act"))]);
@@ -35,7 +36,7 @@ export function remarkPage(ctx) {
   const text = field({ label: "Remark", rows: true, attributes: { "data-remark": true } });
   const go = async () => {
     if (!text.input.value.trim()) { text.wrong("Nothing is written here."); return; }
-    const r = await ctx.send({ do: "remarked", step: ctx.step?.id ?? ctx.state.node, text: text.input.value.trim(), beside: true });
+    const r = await ctx.send({ do: "remarked", step: ctx.step?.id ?? ctx.state.node, text: text.input.value.trim() });
     if (r.refused) text.wrong(r.refused.says); else ctx.shut();
   };
   return { node: overWork([overHead(ctx, "Remark", "Beside this step"), h("div", { class: "fields" }, text.node)], [first("Record the remark", () => void go(), "record-remark")]), focus: text.input };
@@ -55,7 +56,7 @@ export function picturePage(ctx) {
     try { kept = await ctx.run.picture(taken); showPreview(preview, taken); act.disabled = false; } catch (problem) { file.wrong(/** @type {any} */ (problem).says ?? "This picture could not be kept. Take it again."); }
   });
   const go = async () => {
-    const r = await ctx.send({ do: "pictured", step: ctx.step?.id ?? ctx.state.node, ...pictureBody(kept), note: note.input.value.trim(), beside: true });
+    const r = await ctx.send({ do: "pictured", step: ctx.step?.id ?? ctx.state.node, ...pictureBody(kept), note: note.input.value.trim() });
     if (r.refused) note.wrong(r.refused.says); else ctx.shut();
   };
   return { node: overWork([overHead(ctx, "Picture", "Beside this step"), h("div", { class: "shot" }, file.node, preview, note.node)], [button]) };
@@ -74,7 +75,7 @@ export function tripPage(ctx) {
     put(refused, r.refused?.says ?? "");
     if (!r.refused) ctx.shut();
   };
-  return { node: overWork([overHead(ctx, "Trip, or something odd"), h("p", { class: "say" }, "If it can hurt: make safe first, write it afterwards. Recording it pauses the run; each source is then confirmed again."), h("div", { class: "fields" }, kind.node, indicator.node, level.node, done.node)], [refused, first("Record it", () => void go(), "record-trip")]) };
+  return { node: overWork([overHead(ctx, "Trip, or something odd"), h("p", { class: "say" }, "If it can hurt: make safe first, write it afterwards. A trip pauses the run: each source is then confirmed again. Something odd is only noted."), h("div", { class: "fields" }, kind.node, indicator.node, level.node, done.node)], [refused, first("Record it", () => void go(), "record-trip")]) };
 }
 
 /** @param {any} ctx */
@@ -99,12 +100,18 @@ export function boardPage(ctx) {
 }
 
 /** @param {any} ctx */
-export function endEarlyPage(ctx) {
-  const reason = field({ label: "Why the run ends here", rows: true, attributes: { "data-reason": true } });
+export const endEarlyPage = (ctx) => reasonPage(ctx, { title: "End the run early", says: "Make safe first where a source is live. The run stays in the record as stopped; nothing is removed.", label: "Why the run ends here", act: "End the run as stopped", name: "end-early", command: { do: "ended", outcome: "stopped" } });
+
+/** @param {any} ctx */
+export const voidPage = (ctx) => reasonPage(ctx, { title: "Void this run", says: "For a run that was begun by mistake. It stays, with everything in it, marked as void, and nothing can follow.", label: "Why it is void", act: "Void this run", name: "void-run", command: { do: "voided" } });
+
+/** A page that asks for a reason and sends one command with it. @param {any} ctx @param {{title: string, says: string, label: string, act: string, name: string, command: any}} spec */
+function reasonPage(ctx, spec) {
+  const reason = field({ label: spec.label, rows: true, attributes: { "data-reason": true } });
   const go = async () => {
     if (!reason.input.value.trim()) { reason.wrong("Give the reason; it stands in the record."); return; }
-    const r = await ctx.send({ do: "ended", outcome: "stopped", reason: reason.input.value.trim() });
+    const r = await ctx.send({ ...spec.command, reason: reason.input.value.trim() });
     if (r.refused) reason.wrong(r.refused.says); else ctx.shut();
   };
-  return { node: overWork([overHead(ctx, "End the run early"), h("p", { class: "say" }, "Make safe first where a source is live. The run stays in the record as stopped; nothing is removed."), boardList(ctx.state), h("div", { class: "fields" }, reason.node)], [first("End the run as stopped", () => void go(), "end-early")]) };
+  return { node: overWork([overHead(ctx, spec.title), h("p", { class: "say" }, spec.says), boardList(ctx.state), h("div", { class: "fields" }, reason.node)], [first(spec.act, () => void go(), spec.name)]) };
 }

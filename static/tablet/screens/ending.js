@@ -49,17 +49,11 @@ export function endPage(ctx) {
   return { node, refuse: (/** @type {string} */ says) => put(refused, says) };
 }
 
-/** Whether the recorder's signature covers the last event. @param {any} state */
-function signedWhole(state) {
-  const last = [...(state.signatures ?? [])].reverse().find((/** @type {any} */ s) => s.meaning === "performed");
-  return last ? last.seq === state.seq : false;
-}
-
 /** Ended: sign, or read; a returned run is taken up again here. @param {any} ctx */
 export function afterPage(ctx) {
   const { state } = ctx;
   if (state.phase === "voided") return readPage(ctx, "Voided", "This run is voided");
-  if (!signedWhole(state)) return signPage(ctx);
+  if ((ctx.progress.may ?? []).includes("sign") && !ctx.run.readonly) return signPage(ctx);
   const holder = h("div"), made = readPage(ctx, "Ended and signed", state.ended?.outcome === "stopped" ? "Ended as stopped, and signed" : "Ended and signed", holder);
   void Promise.resolve(ctx.host.inbox?.()).catch(() => []).then((rows) => {
     const back = (rows ?? []).find((/** @type {any} */ r) => r.run === state.run && Date.parse(r.time) > Date.parse(state.clock?.wall ?? 0));

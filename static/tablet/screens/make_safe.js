@@ -4,7 +4,7 @@
  */
 import { field, h, put } from "../dom.js";
 import { holdButton } from "../holding.js";
-import { overHead, overWork } from "./overs.js";
+import { overHead, overWork } from "./over_parts.js";
 import { STATE_WORDS, minute, sourceTitle } from "../words.js";
 
 /** The site of the run. @param {any} ctx */

@@ -9,14 +9,15 @@ import { waysPage } from "./ways.js";
 /** A control that answers the open step. @param {any} ctx */
 function controlPage(ctx) {
   const { control } = ctx.step.control, el = cloneControl(ctx.templates, control);
-  const refused = h("p", { class: "refused", "data-refused": true });
+  const refused = h("p", { class: "refused", "data-refused": true }), round = h("div", { class: "round", "data-ways-round": true });
   const { node, left, right } = work([stepHead(ctx.sheet, ctx.step, { level: ctx.progress.level, note: noteOf(ctx) })], []);
   left.append(...el.l.childNodes);
-  right.append(refused, ...el.r.childNodes);
+  right.append(refused, round, ...el.r.childNodes);
   const mounted = /** @type {any} */ (CONTROLS)[control].mount(ctx, { l: left, r: right });
+  waysRound(ctx, round);
   return {
     node, focus: mounted.focus && matchMedia("(min-width: 641px)").matches ? mounted.focus : null,
-    update: () => { mounted.update(); if (refused.textContent && !ctx.progress.reasons?.length) return; },
+    update: () => { mounted.update(); waysRound(ctx, round); },
     stop: () => mounted.stop?.(),
     /** Say a refusal here unless the control said it beside its field. @param {string} says */
     refuse: (says) => {
@@ -24,6 +25,15 @@ function controlPage(ctx) {
       put(refused, said ? "" : says);
     },
   };
+}
+
+/** Labelled ways round a step that cannot be done: taken without an answer. @param {any} ctx @param {HTMLElement} node */
+function waysRound(ctx, node) {
+  const ways = (ctx.progress.moves ?? []).filter((/** @type {any} */ m) => m.button && m.manner === "plain" && ["done", "pass"].includes(m.on) && m.open);
+  const key = ways.map((/** @type {any} */ m) => m.move + m.label).join("|");
+  if (node.dataset.shown === key) return;
+  node.dataset.shown = key;
+  put(node, ways.map((/** @type {any} */ m) => h("button", { type: "button", class: "way", "data-move": m.move, on: { click: () => void ctx.answer({ do: "went-on", move: m.move }) } }, h("b", {}, m.label), h("span", {}, "Goes round this step without an answer"))));
 }
 
 /** A short word on the right of the step's head. @param {any} ctx */

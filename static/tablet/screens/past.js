@@ -4,7 +4,7 @@ import { keypad } from "../keypad.js";
 import { limitScale } from "../scale.js";
 import { rowTitle } from "../strip.js";
 import { day, limitWords, minus, personName, time } from "../words.js";
-import { overHead, overWork } from "./overs.js";
+import { overHead, overWork } from "./over_parts.js";
 
 /** What of a row was typed and can be corrected: [field, name, text]. @param {any} row @param {any} body */
 function typedFields(row, body) {

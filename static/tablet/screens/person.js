@@ -2,7 +2,7 @@
 import { h, picks, put } from "../dom.js";
 import { passphrase } from "../passphrase.js";
 import { personName } from "../words.js";
-import { overHead, overWork } from "./overs.js";
+import { overHead, overWork } from "./over_parts.js";
 
 /** @param {any} ctx */
 export function personPage(ctx) {

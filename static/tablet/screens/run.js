@@ -47,7 +47,7 @@ export async function runScreen(app, args) {
   };
   ctx.lastReading = (/** @type {string} */ step) => {
     const row = [...(ctx.state.log ?? [])].reverse().find((/** @type {any} */ r) => r.step === step && r.kind === "read");
-    return row ? { text: row.text, name: "earlier" } : null;
+    return row ? { text: row.text, name: "last try" } : null;
   };
   /** Whether a person of the run can sign on this tablet. @param {any} person */
   function withKey(person) {
@@ -59,12 +59,12 @@ export async function runScreen(app, args) {
     ctx.draft = { ...ctx.draft, ...patch };
     if (ctx.step) void Promise.resolve(run.saveDraft(ctx.step.id, ctx.draft)).catch(() => undefined);
   }
-  /** Send a command; "saved" is said only once it is on disk. @param {any} command @param {any} [signer] */
-  async function send(command, signer) {
+  /** Send a command; "saved" is said only once it is on disk. @param {any} command @param {string} [statement] what the person who is spoken for signs */
+  async function send(command, statement) {
     if (busy) return { refused: { code: "busy", says: "" } };
     busy = true;
     view.saved("Saving");
-    const asked = signer ? { ...command, passphrase: signer.passphrase, statement: signer.statement } : command;
+    const asked = statement === undefined ? command : { ...command, statement };
     try {
       return await run.command(asked);
     } catch (problem) {
@@ -73,9 +73,9 @@ export async function runScreen(app, args) {
       busy = false;
     }
   }
-  /** Answer the open step. @param {any} command @param {any} [signer] */
-  async function answer(command, signer) {
-    const step = ctx.step?.id, result = await send(step ? { step, ...command } : command, signer);
+  /** Answer the open step. @param {any} command @param {string} [statement] */
+  async function answer(command, statement) {
+    const step = ctx.step?.id, result = await send(step ? { step, ...command } : command, statement);
     if (result.refused) {
       alertUser(result.refused.says);
       setTimeout(() => page?.refuse?.(result.refused.says), 0);

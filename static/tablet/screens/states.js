@@ -73,7 +73,7 @@ export function declarePage(ctx) {
 export function confirmPage(ctx) {
   const { sheet, state } = ctx, cause = state.paused?.cause ?? "pause";
   const gap = [...(state.log ?? [])].reverse().find((/** @type {any} */ r) => r.kind === "resumed" || r.kind === "paused" || r.kind === "trip-recorded");
-  const rows = sheet.sources.filter((/** @type {any} */ s) => s.isolable !== false).map((/** @type {any} */ source) => {
+  const rows = sheet.sources.filter((/** @type {any} */ s) => s.isolable !== false || sheet.start[s.name]).map((/** @type {any} */ source) => {
     const before = state.sources[source.name]?.state ?? "unknown";
     const other = picks({ legend: `${source.title}, as it is now`, options: sayable(source).filter((s) => s !== before).map((s) => ({ value: s, label: /** @type {any} */ (SHORT)[s] })), onchange: () => act() });
     const more = h("div", { class: "more", hidden: true }, other.node);

@@ -9,19 +9,12 @@ import { showVerdict } from "../verdict_box.js";
 import { personName, minus, time } from "../words.js";
 import { stepHead, work } from "../step_page.js";
 
-/** How many more times a step may be taken again. @param {any} ctx @param {any} move */
-function againLeft(ctx, move) {
-  const found = ctx.sheet.moves.find((/** @type {any} */ m) => m.id === move.move), name = found?.effects?.counts?.[0]?.counter ?? `again:${found?.origin}`;
-  const range = ctx.sheet.counters?.[name];
-  return range ? Math.max(0, Number(range[1]) - Number(ctx.state.counters?.[name] ?? range[0])) : null;
-}
-
 /** @param {any} ctx @param {any} move @returns {{title: string, small: string, order: number}} */
 function wordsOf(ctx, move) {
-  const shut = move.open ? "" : `Opens when ${(move.reasons ?? []).map((/** @type {any} */ r) => r.says).join(", and ")}.`;
+  const shut = move.open ? "" : (move.reasons ?? []).map((/** @type {any} */ r) => r.says).join(" ");
   if (move.manner === "stop") return { title: move.label || "Stop and make safe", small: `Opens the list of ${ctx.sheet.make_safe.length} steps. Nothing is switched from here.`, order: 0 };
   if (move.manner === "again") {
-    const left = againLeft(ctx, move);
+    const left = move.tries ? move.tries.left : null;
     return { title: move.label || "Take it again", small: left === 0 ? "No more tries are left." : `Needs a reason. Both readings are kept.${left === null ? "" : ` ${left} ${left === 1 ? "try is" : "tries are"} left.`}${shut && left ? ` ${shut}` : ""}`, order: 1 };
   }
   if (move.manner === "deviation") return { title: move.label || "Accept as a deviation", small: shut || "A supervisor gives a reason and their own passphrase here.", order: 2 };
@@ -61,8 +54,8 @@ export function waysPage(ctx) {
     put(form, move.manner === "again" ? againForm(move) : deviationForm(move));
     /** @type {HTMLElement | null} */ (form.querySelector("input, textarea"))?.focus();
   }
-  /** @param {any} body @param {any} [signer] */
-  const take = (body, signer) => ctx.answer({ do: "went-on", step: step.id, ...body }, signer);
+  /** @param {any} body @param {string} [statement] */
+  const take = (body, statement) => ctx.answer({ do: "went-on", ...body }, statement);
   const back = () => h("button", { type: "button", class: "act", on: { click: () => { open = ""; list.hidden = false; put(form); } } }, "Back to the ways on");
 
   /** @param {any} move */
@@ -75,13 +68,14 @@ export function waysPage(ctx) {
   function deviationForm(move) {
     const reason = field({ label: "Why this may stand", rows: true, attributes: { "data-reason": true } });
     const under = field({ label: "Under whose or which authority", help: "Maker’s letter, station’s rule.", attributes: { "data-under": true } });
-    const supervisors = ctx.everyone().filter((/** @type {any} */ p) => p.roles.includes("supervisor") && p.id !== ctx.state.recorder);
+    const supervisors = ctx.everyone().filter((/** @type {any} */ p) => p.roles.includes("supervisor") && !(ctx.state.recorders ?? [ctx.state.recorder]).includes(p.id));
     const pass = passphrase({ people: supervisors, legend: "Supervisor who allows it" });
     const go = async () => {
       if (!reason.input.value.trim()) { reason.wrong("Give the reason; it stands in the record and in the PDF."); return; }
-      const person = pass.person() ?? "", phrase = pass.phrase();
+      if (!under.input.value.trim()) { under.wrong("Say under whose authority: a letter, a rule of the station."); return; }
+      const person = pass.person() ?? "";
       if (!(await pass.check(ctx.host))) return;
-      const r = await take({ move: move.move, reason: reason.input.value.trim(), authority: person, under: under.input.value.trim() }, { person, passphrase: phrase, statement: `I allow this deviation: ${reason.input.value.trim()}` });
+      const r = await take({ move: move.move, reason: reason.input.value.trim(), authority: person, under: under.input.value.trim() }, `I allow this deviation: ${reason.input.value.trim()}`);
       if (r.refused) reason.wrong(r.refused.says);
     };
     return h("div", { class: "fields" }, reason.node, under.node, pass.node, h("div", { class: "acts pair" }, back(), h("button", { type: "button", class: "act first", "data-confirm-deviation": true, on: { click: () => void go() } }, "Accept as a deviation")));
