@@ -19,7 +19,7 @@ from fieldkit.procedure.items import Item
 from fieldkit.procedure.model import Head
 from fieldkit.sheet.model import Sheet, Step
 from fieldkit.steps import KINDS, conditions, words
-from fieldkit.steps.base import Kind, Piece
+from fieldkit.steps.base import Kind, Name, Piece
 from fieldkit.steps.expression import Named, used_formulas
 from fieldkit.steps.scope import Scope
 from fieldkit.yaml_source import Mapping, Node, read
@@ -93,15 +93,15 @@ def _name_steps(written: list[Item], scope: Scope) -> None:
         if item.written is None:
             scope.names.setdefault(item.id, Named(None, order, broken=True))
             continue
-        for inner in item.kind.inner(item.written, item.id):
-            scope.steps.setdefault(inner, (order, item.title))
+        for inner, title in item.kind.inner(item.written, item.id).items():
+            scope.steps.setdefault(inner, (order, title))
         for name in item.kind.names(item.written, item.id):
             _name(name, order, item, scope)
         for shown in getattr(item.written, "shows", ()):
             scope.facts.add(shown)
 
 
-def _name(name: Any, order: int, item: Item, scope: Scope) -> None:
+def _name(name: Name, order: int, item: Item, scope: Scope) -> None:
     taken = scope.names.get(name.name)
     if taken is not None:
         message = f'the name "{name.name}" is already {"a given" if taken.order == 0 else "that of another step"}'
@@ -109,12 +109,12 @@ def _name(name: Any, order: int, item: Item, scope: Scope) -> None:
             item.written.at("id") if item.written else item.place, "name-taken", message, "choose another id"
         )
         return
-    scope.steps.setdefault(name.name, (order, item.title))
+    scope.steps[name.name] = (order, name.title)
     if name.options:
         scope.options[name.name] = name.options
         return
     scope.names[name.name] = Named(words.dimension(name.unit or words.NO_UNIT), order)
-    scope.meanings.setdefault(name.name, words.plain(item.title))
+    scope.meanings.setdefault(name.name, words.plain(name.title))
 
 
 def _lower(written: list[Item], scope: Scope) -> tuple[list[link.Linked], link.Links]:

@@ -125,6 +125,7 @@ class Sheet(Part):
     start: dict[str, Declared]
     ends: dict[str, tuple[SourceState, ...]]
     rules: tuple[Rule, ...] = ()
+    #: name -> where it starts (it never goes below), and the most it can reach
     counters: dict[str, tuple[int, int]] = {}
     first: str
     steps: tuple[Step, ...]

@@ -99,6 +99,7 @@ class Name:
     """A name that a step gives to formulas: a value with a unit, or a choice with its options."""
 
     name: str
+    title: str
     unit: Unit | None = None
     options: tuple[str, ...] = ()
 
@@ -109,9 +110,9 @@ class Kind:
     model: type[StepWritten]
     lower: Callable[[Any, str, Scope], Piece]
     about: str
-    #: (written, id) -> the names it gives, and ids of further steps that it makes
+    #: (written, id) -> the names it gives; and the further steps that it makes, with their titles
     names: Callable[[Any, str], tuple[Name, ...]] = lambda written, id_: ()
-    inner: Callable[[Any, str], tuple[str, ...]] = lambda written, id_: ()
+    inner: Callable[[Any, str], dict[str, str]] = lambda written, id_: {}
 
 
 def make_step(

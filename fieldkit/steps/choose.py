@@ -58,7 +58,7 @@ def lower(written: Choose, id_: str, scope: Scope) -> Piece:
 
 
 def names(written: Choose, id_: str) -> tuple[Name, ...]:
-    return (Name(id_, options=tuple(written.options)),)
+    return (Name(id_, written.title, options=tuple(written.options)),)
 
 
 KIND = Kind("choose", Choose, lower, "a branch: one of several options", names)

@@ -90,13 +90,14 @@ def stop(id_: str, gate: tuple[Condition, ...] = (), on: str = "fail", name: str
     return Move(id=f"{id_}:{on}:safe{name}", origin=id_, to=SAFE, on=on, manner="stop", label=label, gate=gate)  # type: ignore[arg-type]
 
 
-def fewer(counter: str, most: int, says: str) -> Condition:
-    """The condition that caps a counter."""
+def fewer(counter: str, most: int, done: str) -> Condition:
+    """The condition that caps a counter at `most`; `done` says what is counted: "been taken again"."""
+    says = f"it has not {done} yet" if most == 1 else f"it has {done} fewer than {most} times"
     return Condition(says=says, tree=call("lt", named(f"count:{counter}"), number(most)))
 
 
 def _again(id_: str, counter: str, most: int, opens: tuple[Condition, ...]) -> Move:
-    cap = fewer(counter, most, f"it was taken again fewer than {most} times")
+    cap = fewer(counter, most, "been taken again")
     return Move(
         id=f"{id_}:again", origin=id_, to=id_, on="fail", manner="again", label="Take it again",
         gate=(*opens, cap), effects=Effects(counts=(Count(counter=counter, by=1),)),
@@ -116,7 +117,7 @@ def _back(id_: str, match: re.Match[str], scalar: Scalar, scope: Scope, out: Way
         return
     counter, most = f"back:{id_}", int(match[2])
     out.counters[counter] = (0, most)
-    cap = fewer(counter, most, f"it went back fewer than {most} times")
+    cap = fewer(counter, most, "gone back")
     label = f"Repaired: back to {scope.title_of(match[1])}"
     counts = Effects(counts=(Count(counter=counter, by=1),))
     out.exits.append(Exit(id_, "fail", (cap,), counts, label=label, goto=match[1]))

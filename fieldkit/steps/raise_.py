@@ -179,7 +179,7 @@ def _act(ladder: Ladder, name: str, title: str, to: str) -> tuple[Step, Move]:
     step = base.make_step(id_, "raise", title.rstrip("."), Confirm(button=written.button), written, ladder.shown)
     #: a fall lowers energy and is never gated
     gate = ladder.opens if name == "set" else ()
-    effects = base.effects(written)
+    effects = base.effects(written) if name == "set" else Effects()
     return step, Move(id=f"{id_}:done", origin=id_, to=to, on="done", gate=gate, effects=effects)
 
 
@@ -292,7 +292,7 @@ def _falls(ladder: Ladder, id_: str, on: str, asked: tuple[Condition, ...], piec
     """One move for each level that it can fall from, so that falls from one level are counted."""
     rule, backs = ladder.written.rule, f"{ladder.id}_backs"
     piece.counters[backs] = (0, max(0, rule.most - 1))
-    capped = judged.fewer(backs, rule.most - 1, f"it fell back fewer than {rule.most - 1} times")
+    capped = judged.fewer(backs, rule.most - 1, "fallen back")
     one_less = Count(counter=ladder.rung, by=-1)
     per_level = rule.most_at_one is not None and rule.most_at_one < rule.most
     for index in range(1, ladder.most_levels):
@@ -304,7 +304,7 @@ def _falls(ladder: Ladder, id_: str, on: str, asked: tuple[Condition, ...], piec
             piece.counters[own] = (0, max(0, rule.most_at_one - 1))
             counts = (*counts, Count(counter=own, by=1))
             times = rule.most_at_one - 1
-            gate = (*gate, judged.fewer(own, times, f"it fell back from this level fewer than {times + 1} times"))
+            gate = (*gate, judged.fewer(own, times, "fallen back from this level"))
         to = f"{ladder.id}_down"
         piece.moves.append(
             Move(id=f"{id_}:{on}:back{index + 1}", origin=id_, to=to, on=on, label="Back one level",  # type: ignore[arg-type]
@@ -322,7 +322,7 @@ def _fall_from_first(
     if match and scope.must_be_step(match[1], scalar.place, before=False):
         counter, most = f"{ladder.id}_first_backs", int(match[2])
         piece.counters[counter] = (0, most)
-        cap = judged.fewer(counter, most, f"it fell from the first level fewer than {most + 1} times")
+        cap = judged.fewer(counter, most, "fallen from the first level")
         counts = Effects(counts=(Count(counter=counter, by=1),))
         piece.exits.append(Exit(id_, on, (*gate, cap), counts, label="Back from the first level", goto=match[1]))
     elif not match and text != "make safe":
@@ -330,13 +330,14 @@ def _fall_from_first(
 
 
 def names(written: Raise, id_: str) -> tuple[Name, ...]:
-    reads = tuple(Name(r.id, r.unit) for r in written.reads if r.id)
+    reads = tuple(Name(r.id, r.title, r.unit) for r in written.reads if r.id)
     ruling = written.reads[-1]
-    return (*reads, Name(f"{ruling.id}_held", ruling.unit))
+    return (*reads, Name(f"{ruling.id}_held", f"{ruling.title}, held", ruling.unit))
 
 
-def inner(written: Raise, id_: str) -> tuple[str, ...]:
-    return tuple(f"{id_}_{n}" for n in ("first", "set", "settle", "down", "rest", "stay", "hold"))
+def inner(written: Raise, id_: str) -> dict[str, str]:
+    waits = {f"{id_}_{n}": f"{written.title}: {n}" for n in ("first", "settle", "rest", "stay", "hold")}
+    return {**waits, f"{id_}_set": written.set, f"{id_}_down": written.down}
 
 
 KIND = Kind("raise", Raise, lower, "up a ladder of levels, reading at each", names, inner)

@@ -77,7 +77,7 @@ def lower(written: Read, id_: str, scope: Scope, level: Level | None = None) -> 
 
 
 def names(written: Read, id_: str) -> tuple[Name, ...]:
-    return (Name(id_, written.unit),)
+    return (Name(id_, written.title, written.unit),)
 
 
 KIND = Kind("read", Read, lower, "one reading against its limits", names)

@@ -41,14 +41,17 @@ def lower(written: WorkOut, id_: str, scope: Scope) -> Piece:
         protects=written.protects,
     )
     ways = judged.ways(written, id_, scope, base.gate(written, scope, written.sets), base.effects(written))
-    title = written.title or id_.replace("_", " ").capitalize()
     text = written.text or f"{id_.replace('_', ' ')} = {' '.join(written.value.text.split())}"
-    step = base.make_step(id_, "work_out", title, control, written, text=text)
+    step = base.make_step(id_, "work_out", title_of(written, id_), control, written, text=text)
     return Piece(id_, [step], ways.exits, ways.moves, ways.counters)
 
 
+def title_of(written: WorkOut, id_: str) -> str:
+    return written.title or id_.replace("_", " ").capitalize()
+
+
 def names(written: WorkOut, id_: str) -> tuple[Name, ...]:
-    return (Name(id_, written.unit),)
+    return (Name(id_, title_of(written, id_), written.unit),)
 
 
 KIND = Kind("work_out", WorkOut, lower, "a value derived by a formula, with limits", names)

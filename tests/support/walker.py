@@ -27,7 +27,9 @@ STATION = Path(__file__).resolve().parents[2] / "fieldkit" / "demo" / "station.j
 
 def shipped(name: str) -> Sheet:
     """The sheet of a procedure that comes with fieldkit."""
-    sheet, problems = compile_file(folder("procedures") / f"{name}.yaml", library.load(folder("procedures") / "formulas"))
+    sheet, problems = compile_file(
+        folder("procedures") / f"{name}.yaml", library.load(folder("procedures") / "formulas")
+    )
     assert sheet is not None, problems
     return sheet
 
@@ -179,7 +181,7 @@ ANSWERS: dict[str, Callable[[Walk, dict[str, Any], dict[str, Any]], dict[str, An
     "confirm": lambda w, s, p: {"do": "confirmed"},
     "number": _number,
     "prove": _prove,
-    "lock": lambda w, s, p: {"do": "locked", "lock": "L-21", "tag": "T-88"},
+    "lock": lambda w, s, p: {"do": "locked", "lock": f"L-2{len(w.visited)}", "tag": "T-88"},
     "unlock": lambda w, s, p: {"do": "unlocked"},
     "earth": lambda w, s, p: {"do": "earthed"},
     "lift": lambda w, s, p: {"do": "lifted"},
