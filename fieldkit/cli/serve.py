@@ -50,7 +50,7 @@ class Place:
         return f"{'http' if self.plain else 'https'}://{_bracketed(self.names[0])}:{self.port}/"
 
 
-def add_arguments(parser: argparse.ArgumentParser) -> None:
+def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--data", metavar="DIR", help="data folder (else $FIELDKIT_DATA, else the platform's place for it)"
     )
@@ -265,7 +265,7 @@ def _serve(folder: Path, place: Place) -> None:
     """Serve until stopped: one process that writes, several threads."""
     from gunicorn.app.base import BaseApplication
 
-    class Server(BaseApplication):  # type: ignore[misc]
+    class Server(BaseApplication):  # type: ignore[misc, unused-ignore]
         def load_config(self) -> None:
             for name, value in _options(folder, place).items():
                 self.cfg.set(name, value)

@@ -60,7 +60,7 @@ class WrongPragma(RuntimeError):
 def set_pragmas(connection: sqlite3.Connection) -> None:
     """Set and read back what every connection needs. Raises WrongPragma naming the one that was not taken."""
     connection.isolation_level = None
-    mode, synchronous = journal(sqlite3.sqlite_version_info)  # type: ignore[arg-type]
+    mode, synchronous = journal(sqlite3.sqlite_version_info)
     connection.execute(f"PRAGMA busy_timeout = {BUSY_SECONDS * 1000}")
     connection.execute(f"PRAGMA journal_mode = {mode}")
     connection.execute(f"PRAGMA synchronous = {synchronous}")

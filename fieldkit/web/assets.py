@@ -70,7 +70,8 @@ def static_file(digest: str, path: str) -> Response:
     response = Response((assets.folder / path).read_bytes(), content_type=media)
     response.set_etag(assets.sha256[path])
     response.headers["Cache-Control"] = "public, max-age=31536000, immutable"
-    return response.make_conditional(request)
+    response.make_conditional(request)
+    return response
 
 
 def start(app: Flask) -> None:

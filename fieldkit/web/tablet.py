@@ -100,7 +100,8 @@ def _send(data: bytes | str, media: str) -> Response:
     response = Response(data, content_type=media)
     response.headers["Cache-Control"] = "no-cache"
     response.add_etag()
-    return response.make_conditional(request)
+    response.make_conditional(request)
+    return response
 
 
 @blueprint.get(PAGE)
