@@ -1,0 +1,418 @@
+/**
+ * What an answer to a step does to the state: one arm a control. Twin of fieldkit/run/answers.py.
+ * @module
+ */
+
+import * as clock from "./clock.js";
+import * as judge from "./judge.js";
+import * as moves from "./moves.js";
+import * as names from "./names.js";
+import * as rows from "./rows.js";
+import { Dec, Fault, add, dec, fixed, mul, round12, to_text, trim, typed } from "./values.js";
+
+/** @typedef {import("./names.js").Context} Context */
+/** @typedef {import("./names.js").State} State */
+/** @typedef {import("./names.js").Scope} Scope */
+/** @typedef {[string, Record<string, any>]} Said */
+
+const { disagree } = moves;
+
+/** Kind of the event -> control that it answers. @type {Record<string, string>} */
+export const CONTROLS = {
+  acknowledged: "caution",
+  confirmed: "confirm",
+  read: "number",
+  proved: "prove",
+  locked: "lock",
+  unlocked: "unlock",
+  earthed: "earth",
+  lifted: "lift",
+  chosen: "choice",
+  released: "hold",
+  pictured: "picture",
+  remarked: "remark",
+  "worked-out": "result",
+  waited: "wait",
+  "people-counted": "people",
+};
+/** Kinds whose texts can be corrected. */
+export const CORRECTABLE = Object.freeze(["read", "proved", "locked", "remarked"]);
+/** Outcomes that depend on what was answered. */
+export const JUDGED = Object.freeze(["pass", "fail"]);
+
+/** A picture or a remark can also stand beside a step; all other answers answer.
+ * @param {Context} ctx @param {State} state @param {any} event */
+export function is_answer(ctx, state, event) {
+  if (!["pictured", "remarked"].includes(event.kind) || event.body.move !== null) return true;
+  const step = ctx.steps[event.body.step];
+  const here = step && state.phase === "going" && state.node === step.id && !state.pending;
+  return Boolean(here) && step.control.control === CONTROLS[event.kind];
+}
+
+/** Record an answer with its row, and take its move.
+ * @param {Context} ctx @param {State} state @param {any} event @param {any[]} corrections */
+export function answer(ctx, state, event, corrections) {
+  const { seq } = event;
+  const step = ctx.steps[event.body.step] ?? null;
+  if (step === null || step.control.control !== CONTROLS[event.kind]) {
+    disagree(state, seq, "wrong-answer", `Event ${seq} (${event.kind}) answers no such step of the sheet.`);
+    rows.add(ctx, state, event, step);
+    return;
+  }
+  const going = state.phase === "going";
+  if (!going) disagree(state, seq, "not-going", `Event ${seq} answers a step while nothing is open.`);
+  else if (state.pending || state.node !== step.id) {
+    disagree(state, seq, "not-here", `Event ${seq} answers the step '${step.id}', which is not the open one.`);
+    state.node = step.id;
+    state.pending = null;
+  }
+  const [body, old] = corrected(event.body, corrections);
+  const before = names.scope(ctx, state);
+  const [outcome, said] = ARMS[step.control.control](ctx, state, before, { ...event, body, step });
+  rows.add(ctx, state, event, step, { ...said, outcome, old: [...(said.old ?? []), ...old] });
+  if (!going) return;
+  state.pending = { step: step.id, seq, outcome, verdict: said.verdict ?? null };
+  if (body.move !== null) {
+    const where = JUDGED.includes(outcome) ? names.scope(ctx, state) : before;
+    moves.take(ctx, state, body.move, where, event);
+  } else if (event.kind === "unlocked" && lock_on(state, body.point)) state.pending = null;
+}
+
+/** A body with its corrections applied, and every text that stood there before.
+ * @param {any} body @param {any[]} corrections @returns {[any, any[]]} */
+export function corrected(body, corrections) {
+  const old = [];
+  for (const one of corrections) {
+    const { field, text, reason } = one.body;
+    const before = field_text(body, field);
+    if (before === null) continue;
+    body = with_field(body, field, text);
+    old.push({ field, text: before, seq: one.seq, reason });
+  }
+  return [body, old];
+}
+
+/** The text of a correctable field; null where the event has no such field.
+ * @param {any} body @param {string} field @returns {string | null} */
+export function field_text(body, field) {
+  if (field.startsWith("points.")) {
+    const found = (body.points ?? []).find((/** @type {any} */ p) => p.name === field.slice(7));
+    return found ? found.text : null;
+  }
+  const text = ["text", "before", "after", "lock"].includes(field) ? body[field] : null;
+  return typeof text === "string" ? text : null;
+}
+
+/** @param {any} body @param {string} field @param {string} text */
+function with_field(body, field, text) {
+  if (!field.startsWith("points.")) return { ...body, [field]: text };
+  const name = field.slice(7);
+  return { ...body, points: body.points.map((/** @type {any} */ p) => (p.name === name ? { ...p, text } : p)) };
+}
+
+/** The instrument as the run's first event carries it. @param {State} state @param {string | null} name @returns {any} */
+export function instrument(state, name) {
+  if (!state.started || !name) return null;
+  return state.started.instruments.find((/** @type {any} */ one) => one.id === name) ?? null;
+}
+
+/** The instrument that a step's meter means in this run. @param {State} state @param {any} meter @returns {string | null} */
+export function meter_of(state, meter) {
+  if (!meter) return null;
+  if (meter.instrument) return meter.instrument;
+  const meters = state.started ? state.started.meters : {};
+  return Object.hasOwn(meters, meter.role) ? meters[meter.role] : null;
+}
+
+/** The step's own resolution, else the instrument's where it reads in the step's unit.
+ * @param {any} control @param {any} meter @returns {string | null} */
+export function resolution_of(control, meter) {
+  if (control.resolution !== null) return control.resolution;
+  return meter !== null && meter.unit === control.unit.symbol ? meter.resolution : null;
+}
+
+/** The limits of a number or result (or `limits`, of a point) as they are shown and applied now.
+ * @param {Context} ctx @param {Scope} where @param {any} control @param {any} meter @param {any} [limits] */
+export function bounds(ctx, where, control, meter, limits = null) {
+  const own = limits === null ? control.limits : limits;
+  const typical = limits === null ? control.typical ?? null : null;
+  const resolution = resolution_of(control, meter);
+  return judge.bounds(own, typical, control.unit, resolution, meter, (tree) => names.value(ctx, where, tree));
+}
+
+/** @param {State} state @param {string} name @returns {any} */
+export function person(state, name) {
+  return state.started ? state.started.people.find((/** @type {any} */ one) => one.id === name) ?? null : null;
+}
+
+/** @param {State} state @param {string} name @param {string} role */
+export function has_role(state, name, role) {
+  const found = person(state, name);
+  return found !== null && found.roles.includes(role);
+}
+
+/** @param {State} state @param {string} point */
+export function lock_on(state, point) {
+  return state.locks.some((/** @type {any} */ lock) => lock.point === point);
+}
+
+/** The exact SI value of a typed number, as decimal text. @param {string} text @param {any} unit */
+export function si_text(text, unit) {
+  const found = typed(text);
+  if (!(found instanceof Dec)) throw new RangeError(text);
+  return to_text(trim(add(mul(found, dec(unit.factor)), dec(unit.offset))));
+}
+
+/** A result now: its SI value (12 digits), its text in the unit, the sentence of a fault (then both are empty).
+ * @param {Context} ctx @param {Scope} where @param {any} control @returns {[string, string, string]} */
+export function result_text(ctx, where, control) {
+  const si = names.value(ctx, where, control.value);
+  if (si instanceof Fault) return ["", "", si.says];
+  const text = rows.shown(si, control.unit, control.resolution);
+  return text === null ? ["", "", "It is no number."] : [round12(si), text, ""];
+}
+
+/** What a proof asks for, in order: field of the event, title, limits.
+ * @param {any} control @returns {[string, string, any][]} */
+export function proof_fields(control) {
+  return [
+    ["before", control.known_source, control.known],
+    ...control.points.map((/** @type {any} */ p) => [`points.${p.name}`, p.title, p.limits]),
+    ["after", control.known_source, control.known],
+  ];
+}
+
+/** What a wait has counted: texts of least, greatest and needed seconds, and `left`; null before it has begun.
+ * @param {Context} ctx @param {Scope} where @param {{clock: string, least: any}} control */
+export function waited(ctx, where, control) {
+  const least = where.names[control.clock];
+  const cut = control.clock.indexOf(":");
+  const [head, rest] = cut < 0 ? [control.clock, ""] : [control.clock.slice(0, cut), control.clock.slice(cut + 1)];
+  const name = `${head === "age" ? "oldest" : "oldest-since"}:${rest}`;
+  const greatest = name in where.names ? where.names[name] : least;
+  const needed = names.value(ctx, where, control.least);
+  if (typeof least !== "number" || typeof needed !== "number" || typeof greatest !== "number") return null;
+  const texts = { least: fixed(least, 3), greatest: fixed(greatest, 3), needed: fixed(needed, 3) };
+  return { texts, left: Math.max(0, needed - least) };
+}
+
+/** @param {any} control @param {string} text @param {any} limits @param {any} meter @param {boolean} protects @param {any} event */
+function judged(control, text, limits, meter, protects, event) {
+  const day = clock.day(event.at.wall);
+  return judge.judge(text, control.unit.symbol, limits, resolution_of(control, meter), meter, protects, day);
+}
+
+/** @param {any} verdict */
+function of_verdict(verdict) {
+  const { verdict: word, margin, u, near, untypical, overdue, words } = verdict;
+  return { verdict: word, margin, u, near, untypical, overdue, words };
+}
+
+/** @param {State} state @param {string} step @param {string} text @param {string} unit @param {string | null} si @param {number} seq */
+function keep(state, step, text, unit, si, seq) {
+  state.values[step] = { text, unit, si, seq };
+  if (si !== null) state.series[step] = [...(Object.hasOwn(state.series, step) ? state.series[step] : []), si];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function number(ctx, state, where, event) {
+  const { body, seq, step } = event;
+  const { control } = step;
+  const meter = instrument(state, body.instrument);
+  const limits = bounds(ctx, where, control, meter);
+  if (body.unit !== control.unit.symbol) {
+    disagree(state, seq, "unit", `Event ${seq} is in '${body.unit}', the step in '${control.unit.symbol}'.`);
+  }
+  const verdict = judged(control, body.text, limits, meter, control.protects, event);
+  if (verdict.refused) {
+    disagree(state, seq, "no-number", `Event ${seq} holds no number: ${verdict.refused.says}`);
+    return ["fail", { text: body.text, unit: body.unit, verdict: "not judged", instrument: body.instrument }];
+  }
+  keep(state, step.id, body.text, control.unit.symbol, si_text(body.text, control.unit), seq);
+  const said = { text: body.text, unit: body.unit, limits, instrument: body.instrument, ...of_verdict(verdict) };
+  return [verdict.outcome, said];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function result(ctx, state, where, event) {
+  const { body, seq, step } = event;
+  const { control } = step;
+  const [si, text, fault] = result_text(ctx, where, control);
+  /** @type {any[]} */
+  let old = [];
+  if (si !== body.value) {
+    const changed = state.log.findLast((/** @type {any} */ row) => row.old.some((/** @type {any} */ one) => one.seq > seq));
+    if (changed === undefined) {
+      disagree(state, seq, "value", `Event ${seq} holds '${body.value || "no value"}', the sheet gives '${si || fault}'.`);
+    } else {
+      const last = Math.max(...changed.old.map((/** @type {any} */ one) => one.seq));
+      old = [{ field: "value", text: body.value, seq: last, reason: "worked out again after the correction" }];
+    }
+  }
+  const limits = bounds(ctx, where, control, null);
+  const unit = control.unit.symbol;
+  if (fault) {
+    keep(state, step.id, "", unit, null, seq);
+    return ["fail", { unit, verdict: "not judged", words: `No value: ${fault}`, value: "", limits, old }];
+  }
+  const verdict = judged(control, text, limits, null, control.protects, event);
+  keep(state, step.id, text, unit, si, seq);
+  return [verdict.outcome, { text, unit, value: si, limits, old, ...of_verdict(verdict) }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function prove(ctx, state, where, event) {
+  const { body, seq, step } = event;
+  const { control } = step;
+  const meter = instrument(state, body.instrument);
+  const named = body.points.map((/** @type {any} */ p) => p.name);
+  for (const point of control.points) {
+    if (!named.includes(point.name)) disagree(state, seq, "point-missing", `Event ${seq} leaves out the point '${point.name}'.`);
+  }
+  const points = [];
+  for (const [field, title, own] of proof_fields(control)) {
+    const text = field_text(body, field) || "";
+    const limits = bounds(ctx, where, control, meter, own);
+    const verdict = judged(control, text, limits, meter, true, event);
+    if (verdict.refused) {
+      disagree(state, seq, "no-number", `Event ${seq} holds no number at ${title}: ${verdict.refused.says}`);
+      points.push({ field, title, text, limits, verdict: "not judged", words: "" });
+      continue;
+    }
+    const { verdict: word, margin, u, words } = verdict;
+    points.push({ field, title, text, limits, verdict: word, margin, u, words });
+  }
+  const worst = judge.VERDICTS[Math.max(...points.map((p) => judge.VERDICTS.indexOf(p.verdict)))];
+  const said = {
+    verdict: worst,
+    unit: control.unit.symbol,
+    instrument: body.instrument,
+    overdue: judge.overdue(meter, event.at.wall),
+    points,
+  };
+  return [worst === "pass" ? "pass" : "fail", said];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function lock(ctx, state, where, event) {
+  const { body, step } = event;
+  const holder = person(state, body.holder);
+  state.locks.push({
+    point: body.point,
+    sources: [...step.control.sources],
+    lock: body.lock,
+    tag: body.tag,
+    holder: body.holder,
+    holder_name: holder ? holder.name : "",
+    run: state.run,
+    since: event.at.wall,
+  });
+  return ["done", { text: body.lock, note: body.tag, who: body.holder }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function unlock(ctx, state, where, event) {
+  const { body, seq } = event;
+  const at = state.locks.filter((/** @type {any} */ one) => one.point === body.point);
+  const found = at.find((/** @type {any} */ one) => one.lock === body.lock) ?? at[0] ?? null;
+  if (found === null) disagree(state, seq, "no-such-lock", `Event ${seq} takes a lock off ${body.point}, where none is on.`);
+  else {
+    state.locks.splice(state.locks.indexOf(found), 1);
+    if (found.holder !== body.who && (body.checks.length < 3 || body.second === null || body.second === body.who)) {
+      disagree(state, seq, "not-holder", `Event ${seq} takes off the lock of ${found.holder_name || found.holder}.`);
+    }
+  }
+  if (body.move !== null && lock_on(state, body.point)) {
+    disagree(state, seq, "locks-left", `Event ${seq} goes on while another lock is on ${body.point}.`);
+  }
+  state.unsigned = { seq, person: body.who, meaning: "unlocked" };
+  const checks = body.checks.map((/** @type {any} */ one) => one.name);
+  return ["done", { text: body.lock, who: body.who, names: checks, note: body.second }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function earth(ctx, state, where, event) {
+  const { body, seq, step } = event;
+  if (state.earths.some((/** @type {any} */ one) => one.stick === body.stick)) {
+    disagree(state, seq, "stick-on", `Stick ${body.stick} is on already.`);
+  }
+  const { stick, point } = body;
+  state.earths.push({ stick, point, source: step.control.source, run: state.run, since: event.at.wall });
+  return ["done", { text: stick, note: point }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function lift(ctx, state, where, event) {
+  const { body, seq } = event;
+  const found = state.earths.findIndex((/** @type {any} */ one) => one.stick === body.stick);
+  if (found < 0) disagree(state, seq, "no-such-earth", `Stick ${body.stick} is lifted, and was not on.`);
+  else {
+    const [gone] = state.earths.splice(found, 1);
+    moves.drop_proofs(state, seq, gone.source);
+  }
+  return ["done", { text: body.stick, note: body.point }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function choice(ctx, state, where, event) {
+  const { value } = event.body;
+  const option = event.step.control.options.find((/** @type {any} */ one) => one.value === value);
+  if (!option) disagree(state, event.seq, "unknown-option", `The step has no option '${value}'.`);
+  state.choices[event.step.id] = value;
+  return ["option", { text: value, note: option ? option.label : "" }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function hold(ctx, state, where, event) {
+  const { body, seq, step } = event;
+  if (body.who === state.recorder || person(state, body.who) === null) {
+    disagree(state, seq, "same-person", "A hold point is released by another person than the one who records.");
+  }
+  if (step.control.by === "supervisor" && !has_role(state, body.who, "supervisor")) {
+    disagree(state, seq, "not-supervisor", "This hold point is released by a supervisor.");
+  }
+  state.unsigned = { seq, person: body.who, meaning: "released" };
+  return ["done", { who: body.who, note: body.statement }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function wait(ctx, state, where, event) {
+  const elapsed = waited(ctx, where, event.step.control);
+  if (elapsed === null || elapsed.left > 0) {
+    disagree(state, event.seq, "too-early", `Event ${event.seq} ends a wait before its time.`);
+  }
+  return ["done", { elapsed: elapsed === null ? null : elapsed.texts }];
+}
+
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function people(ctx, state, where, event) {
+  const { place, way, names: named } = event.body;
+  /** @type {string[]} */
+  const inside = Object.hasOwn(state.hands, place) ? state.hands[place] : [];
+  if (way === "in") state.hands[place] = [...inside, ...named.filter((/** @type {string} */ n) => !inside.includes(n))];
+  else {
+    const left = inside.filter((n) => !named.includes(n));
+    if (left.length) disagree(state, event.seq, "people-left", `Not counted out of the ${place}: ${left.join(", ")}.`);
+    state.hands[place] = left;
+  }
+  return ["done", { names: [...named], note: `${way}: ${place}` }];
+}
+
+/** @type {Record<string, (ctx: Context, state: State, where: Scope, event: any) => Said>} */
+const ARMS = {
+  caution: (ctx, state, where, event) => ["done", { names: [...event.body.heard] }],
+  confirm: () => ["done", {}],
+  number,
+  prove,
+  lock,
+  unlock,
+  earth,
+  lift,
+  choice,
+  hold,
+  picture: (ctx, state, where, event) => ["done", { value: event.body.sha256, note: event.body.note }],
+  remark: (ctx, state, where, event) => ["done", { text: event.body.text }],
+  result,
+  wait,
+  people,
+};
