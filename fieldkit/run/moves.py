@@ -111,7 +111,7 @@ def _apply(ctx: Context, state: State, move: dict[str, Any], event: dict[str, An
     facts = set(state["facts"]) | set(effects["shows"])
     state["facts"] = sorted(facts - set(effects["clears"]))
     for count in effects["counts"]:
-        _count(ctx, state, count)
+        state["counters"][count["counter"]] = counted(ctx, state, count)
     for place, way in effects["hands"].items():
         _hands(state, place, way, event["by"])
     if move["manner"] == "again":
@@ -127,14 +127,14 @@ def _apply(ctx: Context, state: State, move: dict[str, Any], event: dict[str, An
     }
 
 
-def _count(ctx: Context, state: State, count: dict[str, Any]) -> None:
+def counted(ctx: Context, state: State, count: dict[str, Any]) -> int:
+    """What a counter is after a move counted on it, inside its bounds."""
     name = count["counter"]
     low, high = ctx.sheet["counters"].get(name, [0, None])
-    now = state["counters"].get(name, low)
-    to = count["to"] if count["to"] is not None else now + (count["by"] or 0)
+    to = count["to"] if count["to"] is not None else names.count(ctx, state, name) + (count["by"] or 0)
     if high is not None:
         to = min(to, high)
-    state["counters"][name] = max(to, low)
+    return int(max(to, low))
 
 
 def _hands(state: State, place: str, way: str, by: str) -> None:

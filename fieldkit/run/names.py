@@ -195,8 +195,7 @@ def _asked(ctx: Context, state: dict[str, Any], head: str, rest: str) -> Any:
     if head == "fact":
         return rest in state["facts"]
     if head == "count":
-        low = ctx.sheet["counters"].get(rest, [0, 0])[0]
-        return float(state["counters"].get(rest, low))
+        return float(count(ctx, state, rest))
     if head == "in":
         hands = state["hands"]
         return float(sum(len(names) for names in hands.values()) if rest == "anywhere" else len(hands.get(rest, [])))
@@ -205,6 +204,12 @@ def _asked(ctx: Context, state: dict[str, Any], head: str, rest: str) -> Any:
     if head == "safe":
         return safe(ctx, state, rest)
     return None
+
+
+def count(ctx: Context, state: dict[str, Any], name: str) -> int:
+    """A counter's value now; it begins at its lower bound, 0 where the sheet gives none."""
+    low = ctx.sheet["counters"].get(name, [0, 0])[0]
+    return int(state["counters"].get(name, low))
 
 
 def safe(ctx: Context, state: dict[str, Any], place: str) -> bool:

@@ -135,12 +135,10 @@ def label(ctx: Context, state: State, move: Plain) -> str:
     to = ctx.steps.get(move["to"])
     if "{level}" not in text or to is None or to["level"] is None:
         return str(text)
-    counters = dict(state["counters"])
+    after = {**state, "counters": dict(state["counters"])}
     for count in move["effects"]["counts"]:
-        low = ctx.sheet["counters"].get(count["counter"], [0, 0])[0]
-        before = counters.get(count["counter"], low)
-        counters[count["counter"]] = count["to"] if count["to"] is not None else before + (count["by"] or 0)
-    there = names.scope(ctx, {**state, "counters": counters})
+        after["counters"][count["counter"]] = moves.counted(ctx, after, count)
+    there = names.scope(ctx, after)
     return rows.with_level(text, rows.level_text(ctx, there, to))
 
 
@@ -149,7 +147,7 @@ def tries(ctx: Context, state: State, move: Plain) -> Plain | None:
     for count in move["effects"]["counts"]:
         bound = ctx.sheet["counters"].get(count["counter"])
         if count["by"] == 1 and bound is not None and move["manner"] == "again":
-            used = state["counters"].get(count["counter"], bound[0]) - bound[0]
+            used = names.count(ctx, state, count["counter"]) - bound[0]
             return {"used": used, "left": max(0, bound[1] - bound[0] - used)}
     return None
 

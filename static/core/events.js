@@ -164,6 +164,17 @@ export function read(text, sha256) {
   return { seq, kind, by, at, run, chain, prev, sha256, body };
 }
 
+/** A body as its kind has it, with defaults; or what is wrong with it.
+ * @param {string} kind @param {any} body @returns {{body: any} | {refused: string}} */
+export function read_body(kind, body) {
+  try {
+    return { body: read_object(BODIES[kind], body, "body") };
+  } catch (problem) {
+    if (problem instanceof Damage) return { refused: problem.message };
+    throw problem;
+  }
+}
+
 /** The envelope of the event that follows `state`, ready for `to_text`; the caller hashes and stores that text.
  * @param {{run: string, chain: string, seq: number, head: string}} state @param {string} kind @param {any} body
  * @param {string} by @param {import("./clock.js").At} at @param {string} app */

@@ -1,0 +1,295 @@
+/**
+ * What may be done now, and why not what may not. Twin of fieldkit/run/progress.py; DEVELOPERS.md spells the answer.
+ * @module
+ */
+
+import * as answers from "./answers.js";
+import * as clock from "./clock.js";
+import * as judge from "./judge.js";
+import * as moves from "./moves.js";
+import * as names from "./names.js";
+import * as rows from "./rows.js";
+
+/** @typedef {import("./names.js").Context} Context */
+/** @typedef {import("./names.js").State} State */
+/** @typedef {import("./names.js").Scope} Scope */
+/** @typedef {import("./names.js").Reason} Reason */
+/** @typedef {[string, any][]} Path */
+
+/** @type {Record<string, string>} */
+export const LABELS = { plain: "Go on", again: "Take it again", deviation: "Accept as a deviation", stop: "Stop and make safe" };
+
+/** Where the run stands at the moment `now`. @param {any} sheet @param {State} state @param {clock.At} now */
+export function progress(sheet, state, now) {
+  const ctx = names.context(sheet);
+  const where = names.scope(ctx, state, now);
+  const step = ctx.steps[state.node] ?? null;
+  const reasons = closed(ctx, state, where);
+  const ways = offered(ctx, state, where);
+  const path = ahead(ctx, state, where);
+  const meter = meter_of(state, step);
+  const limits = is(step, "number", "result") ? answers.bounds(ctx, where, step.control, meter) : null;
+  return {
+    node: state.node,
+    step,
+    open: reasons.length === 0,
+    reasons,
+    moves: ways,
+    next: next(ways),
+    limits,
+    points: points(ctx, where, step, meter),
+    instrument: meter,
+    plate: plate(ctx, where, step, meter),
+    value: is(step, "result") ? answers.result_text(ctx, where, step.control)[1] || null : null,
+    level: step && step.level ? rows.level_text(ctx, where, step) : "",
+    judgeable: judgeable(ctx, where, step, meter, limits, now),
+    waits: waits(ctx, where, state, path),
+    live: Object.keys(state.sources).filter((name) => names.LIVE.includes(state.sources[name].state)),
+    next_change: next_change(state, ctx, path),
+    may: may(state, reasons.length === 0, ways),
+    path: path.slice(1).map(([step_id]) => step_id),
+  };
+}
+
+/** Why the step where the run stands may not be answered now; empty where it may.
+ * @param {Context} ctx @param {State} state @param {Scope} where @returns {Reason[]} */
+export function closed(ctx, state, where) {
+  const { phase, node } = state;
+  if (phase !== "going") return [{ says: PHASES[phase], left: null }];
+  const step = ctx.steps[node];
+  if (!step) return [{ says: "The last step is done. End the run and sign it.", left: null }];
+  if (state.pending) return [{ says: "It is answered. Choose how to go on.", left: null }];
+  const found = wait_reasons(ctx, where, step);
+  const gates = forward(ctx, node).map((move) => names.reasons(ctx, where, move.gate, node));
+  if (gates.length && gates.every((gate) => gate.length)) {
+    const least = gates.reduce((a, b) => (b.length < a.length ? b : a));
+    found.push(...least.filter((one) => !found.some((f) => f.says === one.says && f.left === one.left)));
+  }
+  return found;
+}
+
+/** @type {Record<string, string>} */
+const PHASES = {
+  new: "The run has not been started.",
+  declare: "Confirm the energy states first.",
+  confirm: "The work was interrupted. Confirm the energy states first.",
+  stopped: "The run is stopped. Make safe and end it.",
+  ended: "The run has ended.",
+  voided: "The run was voided.",
+};
+
+/** The moves that an answer of the step is for: not those that a fail offers, and no way round.
+ * @param {Context} ctx @param {string} node */
+function forward(ctx, node) {
+  return (ctx.leaving[node] ?? []).filter((m) => m.on !== "fail" && m.manner === "plain" && !moves.is_around(m));
+}
+
+/** @param {Context} ctx @param {Scope} where @param {any} step @returns {Reason[]} */
+function wait_reasons(ctx, where, step) {
+  if (step.control.control !== "wait") return [];
+  const elapsed = answers.waited(ctx, where, step.control);
+  if (elapsed === null) return [{ says: "The time has not begun to count.", left: null }];
+  if (elapsed.left > 0) return [{ says: `Opens in ${clock.spoken(clock.ceil_ms(elapsed.left))}.`, left: elapsed.left }];
+  return [];
+}
+
+/** Every move that leaves the step, with what keeps it closed: after an answer only those of its outcome.
+ * @param {Context} ctx @param {State} state @param {Scope} where */
+export function offered(ctx, state, where) {
+  if (state.phase !== "going") return [];
+  const { pending, node } = state;
+  const leaving = pending ? moves.leads(ctx, state, node, pending.outcome) : ctx.leaving[node] ?? [];
+  return leaving.map((move) => {
+    const reasons = names.reasons(ctx, where, move.gate, pending ? null : node);
+    const around = moves.is_around(move);
+    return {
+      move: move.id,
+      to: move.to,
+      on: move.on,
+      choice: move.choice,
+      manner: move.manner,
+      label: label(ctx, state, move),
+      button: around || pending !== null,
+      open: reasons.length === 0,
+      reasons,
+      around,
+      tries: tries(ctx, state, move),
+    };
+  });
+}
+
+/** The words on a move's button; `{level}` is the rung that it leads to.
+ * @param {Context} ctx @param {State} state @param {any} move @returns {string} */
+export function label(ctx, state, move) {
+  const text = move.label || LABELS[move.manner];
+  const to = ctx.steps[move.to];
+  if (!text.includes("{level}") || !to || to.level === null) return text;
+  const after = { ...state, counters: { ...state.counters } };
+  for (const count of move.effects.counts) after.counters[count.counter] = moves.counted(ctx, after, count);
+  return rows.with_level(text, rows.level_text(ctx, names.scope(ctx, after), to));
+}
+
+/** How often a capped retake was taken and still may be; null where nothing caps it.
+ * @param {Context} ctx @param {State} state @param {any} move @returns {{used: number, left: number} | null} */
+export function tries(ctx, state, move) {
+  for (const count of move.effects.counts) {
+    const bound = Object.hasOwn(ctx.sheet.counters, count.counter) ? ctx.sheet.counters[count.counter] : null;
+    if (count.by === 1 && bound !== null && move.manner === "again") {
+      const used = names.count(ctx, state, count.counter) - bound[0];
+      return { used, left: Math.max(0, bound[1] - bound[0] - used) };
+    }
+  }
+  return null;
+}
+
+/** @param {any[]} ways @returns {string | null} */
+function next(ways) {
+  const plain = ways.filter((way) => way.manner === "plain" && way.on !== "fail" && way.open && !way.around);
+  return plain.length === 1 ? plain[0].to : null;
+}
+
+/** @param {any} step @param {...string} controls */
+function is(step, ...controls) {
+  return step !== null && controls.includes(step.control.control);
+}
+
+/** The instrument that the step is read with, as this run carries it. @param {State} state @param {any} step */
+function meter_of(state, step) {
+  const control = step ? step.control : {};
+  return answers.instrument(state, answers.meter_of(state, control.meter ?? control.tester ?? null));
+}
+
+/** What a proof asks for, in order, each with its limits.
+ * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter */
+function points(ctx, where, step, meter) {
+  if (!is(step, "prove")) return [];
+  return answers.proof_fields(step.control).map(([field, title, own]) => ({
+    field,
+    title,
+    limits: answers.bounds(ctx, where, step.control, meter, own),
+  }));
+}
+
+/** @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter @returns {string | null} */
+function plate(ctx, where, step, meter) {
+  const control = step ? step.control : {};
+  if (!control.plate) return null;
+  return rows.shown(names.value(ctx, where, control.plate), control.unit, answers.resolution_of(control, meter));
+}
+
+/** Whether a reading could be judged now, and what keeps it from being so.
+ * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter @param {any} limits @param {clock.At} now */
+function judgeable(ctx, where, step, meter, limits, now) {
+  if (!is(step, "number", "prove", "result")) return { ok: true, why: "", overdue: false };
+  const asked = step.control.meter ?? step.control.tester ?? null;
+  let why = "";
+  if (asked && meter === null) why = `This run carries no instrument for ${asked.role || asked.instrument}.`;
+  else if (is(step, "result")) why = answers.result_text(ctx, where, step.control)[2];
+  if (limits && !why) why = limits.fault || limits.coarse;
+  return { ok: !why, why, overdue: judge.overdue(meter, now.wall) };
+}
+
+/** The steps that probably come, the open one first, each with the move that probably leaves it.
+ * @param {Context} ctx @param {State} state @param {Scope} where @returns {Path} */
+export function ahead(ctx, state, where) {
+  /** @type {Path} */
+  const path = [];
+  const seen = new Set();
+  let { node } = state;
+  while (node in ctx.steps && !seen.has(node)) {
+    seen.add(node);
+    const pending = state.pending && state.pending.step === node ? state.pending : null;
+    const leaving = pending ? moves.leads(ctx, state, node, pending.outcome) : forward(ctx, node);
+    const plain = leaving.filter((m) => m.manner === "plain" && !seen.has(m.to) && m.to !== moves.SAFE);
+    const likely = plain.filter((m) => !m.gate.some((/** @type {any} */ c) => decided_against(ctx, state, where, c)));
+    const move = likely[0] ?? plain[0] ?? null;
+    path.push([node, move]);
+    if (move === null || move.to === moves.END) break;
+    node = move.to;
+  }
+  return path;
+}
+
+/** The condition speaks only of answered choices and of givens, and does not hold: it never will in this run.
+ * @param {Context} ctx @param {State} state @param {Scope} where @param {any} condition */
+function decided_against(ctx, state, where, condition) {
+  const found = [...names.mentioned(condition.tree)];
+  const given = (/** @type {string} */ name) => ctx.sheet.givens.some((/** @type {any} */ one) => one.name === name);
+  const chosen = (/** @type {string} */ name) => name.startsWith("choice:") && Object.hasOwn(state.choices, name.slice(7));
+  const known = found.every((name) => given(name) || chosen(name));
+  return found.length > 0 && known && names.value(ctx, where, condition.tree) !== true;
+}
+
+/** Waits that count now and gate the open step or one that comes.
+ * @param {Context} ctx @param {Scope} where @param {State} state @param {Path} path */
+export function waits(ctx, where, state, path) {
+  const found = [];
+  const known = new Set();
+  for (const [step_id, move] of path) {
+    const step = ctx.steps[step_id];
+    const { control } = step;
+    const own = is(step, "wait");
+    const asked = own ? [{ clock: control.clock, least: control.least, says: step.title }] : [];
+    if (move) asked.push(...move.gate.filter((/** @type {any} */ c) => c.clock && c.least));
+    for (const one of asked) {
+      const elapsed = answers.waited(ctx, where, one);
+      if (elapsed === null || (elapsed.left <= 0 && !(own && step_id === state.node))) continue;
+      const key = `${one.clock} ${elapsed.texts.needed}`;
+      if (known.has(key)) continue;
+      known.add(key);
+      const cut = one.clock.indexOf(":");
+      const [head, rest] = [one.clock.slice(0, cut), one.clock.slice(cut + 1)];
+      found.push({
+        step: step_id,
+        number: step.number,
+        source: head === "age" ? rest : null,
+        since: head === "since" ? rest : null,
+        says: one.says,
+        left: elapsed.left,
+        least: elapsed.texts.needed,
+        elapsed: elapsed.texts.least,
+        greatest: elapsed.texts.greatest,
+      });
+    }
+  }
+  return found;
+}
+
+/** @param {State} state @param {Context} ctx @param {Path} path */
+function next_change(state, ctx, path) {
+  for (const [step_id, move] of path) {
+    const sets = Object.entries(move ? move.effects.sets : {});
+    const changed = sets.filter(([name, to]) => moves.source_state(state, name) !== to);
+    if (changed.length) return { sources: Object.fromEntries(changed), step: step_id, number: ctx.steps[step_id].number };
+  }
+  return null;
+}
+
+/** @type {Record<string, string[]>} */
+const MAY = {
+  new: [],
+  declare: ["make-safe", "declare", "trip", "remark", "picture", "end", "void"],
+  going: ["make-safe", "correct", "trip", "pause", "remark", "picture", "change-person", "end", "void"],
+  confirm: ["make-safe", "confirm", "correct", "trip", "remark", "picture", "end", "void"],
+  stopped: ["make-safe", "correct", "trip", "remark", "picture", "change-person", "end", "void"],
+  voided: [],
+};
+
+/** The things that may be done now, as words for buttons. @param {State} state @param {boolean} is_open @param {any[]} ways */
+export function may(state, is_open, ways) {
+  const { phase } = state;
+  if (phase === "ended") return unsigned_end(state) ? ["sign", "correct", "remark", "picture", "void"] : ["void"];
+  const found = [...MAY[phase]];
+  if (phase === "going" && is_open) found.push("answer");
+  if (phase === "going" && ways.some((way) => way.open && way.button)) found.push("go-on");
+  return found;
+}
+
+/** The run has ended, and whoever performed it has not signed since, or it was returned and taken up again.
+ * @param {State} state */
+export function unsigned_end(state) {
+  if (state.ended === null) return false;
+  const last = state.ended.seq;
+  const done = state.signatures.some((/** @type {any} */ s) => s.meaning === "performed" && s.seq > last);
+  return state.reopened !== null || !done;
+}
