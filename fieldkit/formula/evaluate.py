@@ -12,6 +12,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
+from sys import float_info
 from typing import Any
 
 from fieldkit import values
@@ -80,8 +81,9 @@ class _Work:
         found = self.names[name]
         if isinstance(found, bool | str | Fault):
             return found
-        if isinstance(found, int | float) and math.isfinite(found):
-            return float(found)
+        number = _column([found])
+        if number is not None:
+            return number[0]
         return Fault("wrong-type", f"{name} is no number, text or flag.")
 
     def _call(self, function: Any, of: list[Any], depth: int) -> Value:
@@ -123,8 +125,8 @@ class _Work:
             return Fault("wrong-type", "One number stands where a column of numbers belongs.")
         if name not in self.series:
             return Fault("unknown-name", f"There is no column of numbers named {name}.")
-        column = tuple(float(v) for v in self.series[name])
-        if not all(math.isfinite(v) for v in column):
+        column = _column(self.series[name])
+        if column is None:
             return Fault("wrong-type", f"{name} holds something that is no number.")
         given: list[Value] = []
         for part in of[1:]:
@@ -140,7 +142,7 @@ class _Work:
             return Fault("unknown-function", f"There is no formula named {function}.")
         formula = self.formulas[function]
         arguments = _part(formula, "arguments")
-        if len(arguments) != len(of):
+        if not isinstance(arguments, list | tuple) or len(arguments) != len(of):
             return Fault("bad-tree", f"{function} was given {len(of)} values.")
         given: dict[str, Any] = {}
         for argument, part in zip(arguments, of, strict=True):
@@ -190,9 +192,11 @@ def _outside(function: str, argument: Any, value: Value) -> Fault | None:
     name, low, high = _part(argument, "name"), _part(argument, "low"), _part(argument, "high")
     if type(value) is not float:
         return Fault("wrong-type", f"{function}: {name} is no number.")
-    least = values.number(low) if low is not None else None
-    most = values.number(high) if high is not None else None
+    least, most = _end(low), _end(high)
+    factor, offset = _end(_part(argument, "factor")), _end(_part(argument, "offset"))
     if isinstance(least, Fault) or isinstance(most, Fault):
+        return _bad_tree()
+    if not isinstance(factor, float) or not isinstance(offset, float) or factor <= 0.0:
         return _bad_tree()
     if (least is None or value >= least) and (most is None or value <= most):
         return None
@@ -204,10 +208,29 @@ def _outside(function: str, argument: Any, value: Value) -> Fault | None:
     return Fault("out-of-range", says)
 
 
+def _end(text: Any) -> float | Fault | None:
+    """A decimal text as a number, None as none; a Fault for anything else."""
+    if text is None:
+        return None
+    return values.number(text) if isinstance(text, str) else _bad_tree()
+
+
 class _Scale:
     def __init__(self, factor: str, offset: str) -> None:
         self.factor = factor
         self.offset = offset
+
+
+def _column(given: Any) -> tuple[float, ...] | None:
+    """Doubles, where every one is a finite number; None where one is not."""
+    if not isinstance(given, list | tuple):
+        return None
+    if not all(isinstance(v, int | float) and not isinstance(v, bool) and abs(v) <= _LARGEST for v in given):
+        return None
+    return tuple(float(v) for v in given)
+
+
+_LARGEST = float_info.max
 
 
 def _numbers(texts: list[Any]) -> list[float] | None:

@@ -121,7 +121,7 @@ class Work {
     }
     if (!has(this.series, name)) return new Fault("unknown-name", `There is no column of numbers named ${name}.`);
     const column = this.series[name];
-    if (!column.every((v) => Number.isFinite(v))) {
+    if (!Array.isArray(column) || !column.every((v) => Number.isFinite(v))) {
       return new Fault("wrong-type", `${name} holds something that is no number.`);
     }
     const given = this.all(of.slice(1), depth);
@@ -134,15 +134,18 @@ class Work {
       return new Fault("unknown-function", `There is no formula named ${name}.`);
     }
     const formula = this.formulas[name];
-    if (formula.arguments.length !== of.length) return new Fault("bad-tree", `${name} was given ${of.length} values.`);
+    const wanted = formula.arguments;
+    if (!Array.isArray(wanted) || wanted.length !== of.length) {
+      return new Fault("bad-tree", `${name} was given ${of.length} values.`);
+    }
     /** @type {Record<string, any>} */
-    const given = {};
+    const given = Object.create(null);
     for (let k = 0; k < of.length; k += 1) {
       const value = this.value(of[k], depth + 1);
       if (value instanceof Fault) return value;
-      const outside = out_of_range(name, formula.arguments[k], value);
+      const outside = out_of_range(name, wanted[k], value);
       if (outside !== null) return outside;
-      given[formula.arguments[k].name] = value;
+      given[wanted[k].name] = value;
     }
     const [caller, columns] = [this.names, this.series];
     this.names = given;
@@ -184,15 +187,22 @@ function interpolate(name, at, xs, ys) {
 /** @param {string} name @param {Argument} argument @param {Value} value @returns {Fault | null} */
 function out_of_range(name, argument, value) {
   if (typeof value !== "number") return new Fault("wrong-type", `${name}: ${argument.name} is no number.`);
-  const least = argument.low !== null ? number(argument.low) : null;
-  const most = argument.high !== null ? number(argument.high) : null;
+  const [least, most] = [end_of(argument.low), end_of(argument.high)];
+  const [factor, offset] = [end_of(argument.factor), end_of(argument.offset)];
   if (least instanceof Fault || most instanceof Fault) return bad_tree();
+  if (typeof factor !== "number" || typeof offset !== "number" || factor <= 0) return bad_tree();
   if ((least === null || value >= least) && (most === null || value <= most)) return null;
   /** @type {[string, number | null][]} */
   const ends = [["from", least], ["to", most]];
   const span = ends.flatMap(([word, end]) => (end === null ? [] : [`${word} ${to_shown(end, argument)}`])).join(" ");
   const says = `${name}: ${argument.name} is ${to_shown(value, argument)} ${argument.unit}; the formula holds ${span} ${argument.unit}.`;
   return new Fault("out-of-range", says);
+}
+
+/** A decimal text as a number, null as none; a Fault for anything else. @param {any} text @returns {number | null | Fault} */
+function end_of(text) {
+  if (text === null) return null;
+  return typeof text === "string" ? number(text) : bad_tree();
 }
 
 /** @param {any[]} texts @returns {number[] | null} */

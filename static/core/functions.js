@@ -10,7 +10,7 @@ import * as elementary from "./elementary.js";
 import { Fault } from "./values.js";
 
 /** @typedef {number | boolean | string | Fault} Value */
-/** @typedef {{least: number, most: number | null, column: boolean, apply: ((...of: any[]) => Value) | null}} Function */
+/** @typedef {{least: number, most: number | null, column: boolean, apply: ((...of: any[]) => Value) | null}} Entry */
 
 /** @param {string} what */
 export function wrong_type(what) {
@@ -91,22 +91,22 @@ function at(values, index) {
   return values[index];
 }
 
-/** @param {string} name @param {number} few @param {number | null} many @param {(...of: number[]) => Value} apply @returns {Function} */
+/** @param {string} name @param {number} few @param {number | null} many @param {(...of: number[]) => Value} apply @returns {Entry} */
 function numeric(name, few, many, apply) {
   return { least: few, most: many, column: false, apply: numbers(name, apply) };
 }
 
-/** @param {number} few @param {number | null} many @param {((...of: any[]) => Value) | null} apply @returns {Function} */
+/** @param {number} few @param {number | null} many @param {((...of: any[]) => Value) | null} apply @returns {Entry} */
 function general(few, many, apply) {
   return { least: few, most: many, column: false, apply };
 }
 
-/** @param {number} count @param {(...of: any[]) => Value} apply @returns {Function} */
+/** @param {number} count @param {(...of: any[]) => Value} apply @returns {Entry} */
 function on_column(count, apply) {
   return { least: count, most: count, column: true, apply };
 }
 
-/** @type {ReadonlyMap<string, Function>} */
+/** @type {ReadonlyMap<string, Entry>} */
 export const FUNCTIONS = new Map([
   ["add", numeric("add", 2, 2, (a, b) => a + b)],
   ["sub", numeric("sub", 2, 2, (a, b) => a - b)],

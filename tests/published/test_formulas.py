@@ -66,8 +66,9 @@ def test_poissons_equation_at_the_child_langmuir_density_returns_the_voltage(vol
 
 
 # Copper. Source: published multipliers for copper wire, 25 degC = 1 (75, 100 and 200 degC as printed; 130 degC is
-# printed 1.404, truncated from 1.4046; publications seen when the check values were gathered); IEC 60028 alpha = 0.00393 per K at 20 degC; and the factor
-# 1 + 0.00323 (t - 75) from 75 degC that wiring tables use (National Electrical Code chapter 9, from memory).
+# printed 1.404, truncated from 1.4046; publications seen when the check values were gathered); IEC 60028
+# alpha = 0.00393 per K at 20 degC; and the factor 1 + 0.00323 (t - 75) from 75 degC that wiring tables use (National
+# Electrical Code chapter 9, from memory).
 
 
 @pytest.mark.parametrize(("celsius", "printed"), [(75, 1.193), (100, 1.289), (200, 1.674), (130, 1.404)])
