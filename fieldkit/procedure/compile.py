@@ -82,7 +82,7 @@ def _compile(node: Node, data: bytes, found: Collector, library: Library, kinds:
         formulas=used_formulas(scope.formulas_used, library),
     )
     lint.check_written(written, values, scope)
-    lint.check_sheet(sheet, scope)
+    lint.check_sheet(sheet, written, scope)
     return sheet
 
 

@@ -47,6 +47,7 @@ def givens(written: dict[str, GivenWritten], node: Node | None, scope: Scope) ->
 
 def _name_given(name: str, one: GivenWritten, unit: Unit, scope: Scope) -> None:
     scope.origins[name] = one.origin
+    scope.given_places[name] = one.place
     scope.meanings[name] = one.meaning or name.replace("_", " ")
     if one.text:
         scope.texts.add(name)

@@ -2,20 +2,18 @@
 
 `check_written` sees the steps as written and works even where other problems stand; `check_sheet` sees the finished
 sheet. A warning is shown and does not stop. To add a rule: a function, a line in WRITTEN or SHEET, and a pair of
-files in tests/lint/err. Not here: the safety proof.
+files in tests/lint/err. Not here: the safety proof; rules about one step alone (its kind checks those).
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from decimal import Decimal
+from collections.abc import Callable, Iterator
 from typing import Any
 
 from fieldkit.errors import Place
 from fieldkit.procedure.items import Item
 from fieldkit.sheet.model import Sheet
 from fieldkit.sheet.moves import END, SAFE
-from fieldkit.sheet.parts import Limits
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.sources import SOURCES
 
@@ -26,30 +24,78 @@ def check_written(items: list[Item], head: dict[str, Any], scope: Scope) -> None
         rule(items, head, scope)
 
 
-def check_sheet(sheet: Sheet, scope: Scope) -> None:
+def check_sheet(sheet: Sheet, items: list[Item], scope: Scope) -> None:
     """Adds the problems of every rule that speaks of the compiled sheet."""
+    places = {item.place.line: item.place for item in items}
     for rule in SHEET:
-        rule(sheet, scope)
+        rule(sheet, places, scope)
 
 
 def _second_person_alone(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
     for item in items:
         if scope.crew < 2 and item.written is not None and item.written.who == "second person":
-            place = item.written.at("who")
+            message = "a second person does this, and the crew is 1"
+            scope.found.add(item.written.at("who"), "nobody-else", message, "write crew: 2, or delete who:")
+
+
+def _end_not_said(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
+    ends = head.get("ends")
+    for source, scalar in (head.get("energy") or {}).items():
+        if ends is not None and source not in ends and SOURCES[source].isolable:
+            message = f'nothing under ends: speaks of "{source}"'
+            remedy = f"write {source}: under ends:, with the states it may have then"
+            scope.found.add(scalar.place, "end-not-said", message, remedy)
+
+
+def _make_safe_leaves_it_on(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
+    lines = head.get("make_safe") or ()
+    switched_off = {s for line in lines for s, state in (line.sets or {}).items() if state == "off"}
+    on = {s for s, scalar in (head.get("energy") or {}).items() if scalar.text.split()[0] == "on"}
+    on |= {s for item in items for s, state in (getattr(item.written, "sets", None) or {}).items() if state == "on"}
+    for source in ("beam_supply", "rf_drive"):
+        if lines and source in on and source not in switched_off:
+            message = f"make safe never switches the {SOURCES[source].title} off"
+            remedy = f"write a line with sets: {{{source}: off}}"
+            scope.found.add(lines[0].place, "make-safe-leaves", message, remedy, "warning")
+
+
+def _fact_without_way_back(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
+    """A pause clears facts; a step that needs one must then lead back to where it is shown."""
+    for item in items:
+        if item.written is None or item.written.or_else is not None:
+            continue
+        for scalar in item.written.needs:
+            if " ".join(scalar.text.split()) in scope.facts:
+                message = f'a pause clears "{scalar.text}", and nothing leads back to where it is shown'
+                remedy = "write or_else: with the step that shows it"
+                scope.found.add(scalar.place, "no-way-back", message, remedy, "warning")
+
+
+def _given_unused(sheet: Sheet, places: dict[int, Place], scope: Scope) -> None:
+    used = set(_names(sheet.model_dump(mode="json", exclude={"givens"})))
+    for given in sheet.givens:
+        if given.name not in used:
+            message = f'the given "{given.name}" is used nowhere'
+            place = scope.given_places.get(given.name, Place(1, 1))
             scope.found.add(
-                place, "nobody-else", "a second person does this, and the crew is 1", "write crew: 2, or delete who:"
+                place, "given-unused", message, "delete it; every given must be in the registers", "warning"
             )
 
 
-def _a_live_source_at_the_end(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
-    for source in head.get("energy") or {}:
-        if head.get("ends") is not None and source not in head["ends"]:
-            place = head["ends"][next(iter(head["ends"]))].place if head["ends"] else Place(1, 1)
-            message = f'ends: says nothing of "{source}"'
-            scope.found.add(place, "end-not-said", message, f"write {source}: with the states it may have at the end")
+def _names(part: Any) -> Iterator[str]:
+    """Every name and column in the trees of a sheet."""
+    if isinstance(part, dict):
+        for key in ("name", "series"):
+            if set(part) == {key} and isinstance(part[key], str):
+                yield part[key]
+        for value in part.values():
+            yield from _names(value)
+    elif isinstance(part, list):
+        for value in part:
+            yield from _names(value)
 
 
-def _unreachable(sheet: Sheet, scope: Scope) -> None:
+def _unreachable(sheet: Sheet, places: dict[int, Place], scope: Scope) -> None:
     reached, todo = {sheet.first}, [sheet.first]
     ways: dict[str, list[str]] = {}
     for move in sheet.moves:
@@ -59,66 +105,34 @@ def _unreachable(sheet: Sheet, scope: Scope) -> None:
             if to not in reached:
                 reached.add(to)
                 todo.append(to)
-    lines = set()
-    for step in sheet.steps:
-        if step.id not in reached and step.line not in lines:
-            lines.add(step.line)
-            remedy = "correct the conditions before it, or delete it"
-            scope.found.add(Place(step.line, 3), "unreachable", f'nothing leads to the step "{step.id}"', remedy)
+    some = {step.line for step in sheet.steps if step.id in reached}
+    for line in sorted({step.line for step in sheet.steps} - some):
+        step = next(s for s in sheet.steps if s.line == line)
+        remedy = "correct the conditions or the go to before it, or delete it"
+        scope.found.add(places[line], "unreachable", f'nothing leads to the step "{step.id}"', remedy)
     if END not in reached:
-        scope.found.add(
-            Place(sheet.steps[-1].line, 3), "no-end", "the end can never be reached", "let a step lead on to the end"
-        )
+        place = places[sheet.steps[-1].line]
+        scope.found.add(place, "no-end", "the end of the procedure can never be reached", "let a step lead on to it")
 
 
-def _limits_that_nothing_meets(sheet: Sheet, scope: Scope) -> None:
-    for step in sheet.steps:
-        found = getattr(step.control, "limits", None)
-        if found is not None and _empty(found):
-            message = f'no value can meet the limits of "{step.id}"'
-            scope.found.add(
-                Place(step.line, 3), "empty-limits", message, "write the lower limit first, and a higher one after it"
-            )
-
-
-def _empty(limits: Limits) -> bool:
-    """Whether the lower constant is above the higher one; limits that are formulas are judged when they are known."""
-    low, high = limits.low, limits.high
-    if low is None or high is None or "number" not in low or "number" not in high:
-        return False
-    return Decimal(low["number"]) > Decimal(high["number"])
-
-
-def _make_safe_leaves_beam(sheet: Sheet, scope: Scope) -> None:
-    switched_on = {s for m in sheet.moves for s, state in m.effects.sets.items() if state == "on"}
-    sources = switched_on | {s for s, found in sheet.start.items() if found.state == "on"}
-    switched = {s for line in sheet.make_safe for s, state in line.sets.items() if state == "off"}
-    for source in ("beam_supply", "rf_drive"):
-        if source in sources and source not in switched:
-            message = f"make safe never switches the {SOURCES[source].title} off"
-            scope.found.add(
-                Place(1, 1), "make-safe-leaves", message, f"write a line with sets: {{{source}: off}}", "warning"
-            )
-
-
-def _judged_without_ways(sheet: Sheet, scope: Scope) -> None:
-    """Held by the lowering of every kind; a kind that forgets it is found here."""
+def _judged_without_stop(sheet: Sheet, places: dict[int, Place], scope: Scope) -> None:
+    """Held by the lowering of every kind that judges; a new kind that forgets it is found here."""
     for step in sheet.steps:
         if step.control.control in ("number", "prove", "result"):
             ways = {m.to for m in sheet.moves if m.origin == step.id and m.on == "fail"}
             if SAFE not in ways:
-                scope.found.add(
-                    Place(step.line, 3), "fail-leads-nowhere", f'a fail of "{step.id}" cannot stop', "add a stop move"
-                )
+                message = f'a fail of "{step.id}" cannot stop and make safe'
+                scope.found.add(places[step.line], "fail-cannot-stop", message, "give the kind judged.stop(id)")
 
 
 WRITTEN: tuple[Callable[[list[Item], dict[str, Any], Scope], None], ...] = (
     _second_person_alone,
-    _a_live_source_at_the_end,
+    _end_not_said,
+    _make_safe_leaves_it_on,
+    _fact_without_way_back,
 )
-SHEET: tuple[Callable[[Sheet, Scope], None], ...] = (
+SHEET: tuple[Callable[[Sheet, dict[int, Place], Scope], None], ...] = (
+    _given_unused,
     _unreachable,
-    _limits_that_nothing_meets,
-    _make_safe_leaves_beam,
-    _judged_without_ways,
+    _judged_without_stop,
 )

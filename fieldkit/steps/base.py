@@ -158,18 +158,33 @@ def simple(kind: str, title: str, control: Control, written: StepWritten, id_: s
     """A piece of one step with one way on: what most kinds are."""
     what = effects(written) if isinstance(written, Acting) else Effects()
     opens = gate(written, scope, dict(what.sets))
+    return one_step(kind, title, control, written, id_, opens, what, scope)
+
+
+def one_step(
+    kind: str,
+    title: str,
+    control: Control,
+    written: StepWritten,
+    id_: str,
+    opens: tuple[Condition, ...],
+    what: Effects,
+    scope: Scope,
+) -> Piece:
+    """A piece of one step that is answered with `done`: gated by `opens`, with the effects `what`."""
     exits = [Exit(id_, "done", opens, what), *other_way(written, id_, "done", opens, scope)]
     return Piece(id_, [make_step(id_, kind, title, control, written)], exits)
 
 
 def other_way(written: StepWritten, id_: str, on: str, opens: tuple[Condition, ...], scope: Scope) -> list[Exit]:
-    """The way back that `or_else` gives while the step's own conditions do not hold."""
+    """The way back that `or_else` gives while conditions do not hold that time alone does not open."""
     if written.or_else is None:
         return []
     scope.must_be_step(written.or_else, written.at("or_else"))
-    if not opens:
+    lasting = [c for c in opens if c.clock is None]
+    if not lasting:
         remedy = "write needs: with the conditions, or delete or_else"
         scope.found.add(written.at("or_else"), "no-needs", "or_else stands here without needs", remedy)
         return []
     label = f"Too late or not so: back to {scope.title_of(written.or_else)}"
-    return [Exit(id_, on, (conditions.negate(opens),), label=label, goto=written.or_else)]
+    return [Exit(id_, on, (conditions.negate(lasting),), label=label, goto=written.or_else)]

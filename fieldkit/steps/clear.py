@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import People
 from fieldkit.sheet.parts import Effects
 from fieldkit.steps import base, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.words import key
 
@@ -20,9 +20,8 @@ class Clear(StepWritten):
 
 def lower(written: Clear, id_: str, scope: Scope) -> Piece:
     title = written.title or f"Everyone out of the {written.where}: count by name"
-    step = base.make_step(id_, "clear", title, People(place=written.where, way="out"), written)
-    exits = [Exit(id_, "done", base.gate(written, scope), Effects(hands={written.where: "out"}))]
-    return Piece(id_, [step], exits)
+    control, effects = People(place=written.where, way="out"), Effects(hands={written.where: "out"})
+    return base.one_step("clear", title, control, written, id_, base.gate(written, scope), effects, scope)
 
 
 KIND = Kind("clear", Clear, lower, "everyone out of a place, counted by name")

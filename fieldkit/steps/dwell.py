@@ -14,9 +14,9 @@ from dataclasses import dataclass
 from typing import Any
 
 from fieldkit.sheet.controls import Wait
-from fieldkit.sheet.parts import SOURCE_STATES, Condition
+from fieldkit.sheet.parts import SOURCE_STATES, Condition, Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.sources import SOURCES
 from fieldkit.steps.words import key
@@ -48,8 +48,7 @@ def lower(written: Dwell, id_: str, scope: Scope) -> Piece:
     says = f"{scope.says(' '.join(written.least.text.split()))} have passed since {since}"
     opens = conditions.distinct((*base.gate(written, scope), *extra, conditions.at_least(clock, least, says)))
     control = Wait(clock=clock, least=least, depends=depends, why=written.why)
-    exits = [Exit(id_, "done", opens), *base.other_way(written, id_, "done", opens, scope)]
-    return Piece(id_, [base.make_step(id_, "dwell", written.title, control, written)], exits)
+    return base.one_step("dwell", written.title, control, written, id_, opens, Effects(), scope)
 
 
 def _clock(written: Dwell, scope: Scope) -> tuple[str, tuple[Condition, ...], str | None, str]:

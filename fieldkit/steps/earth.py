@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import Earth
 from fieldkit.sheet.parts import Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.sources import SOURCES
 from fieldkit.steps.words import key
@@ -28,7 +28,7 @@ def lower(written: EarthStep, id_: str, scope: Scope) -> Piece:
     control = Earth(stick=written.stick, point=written.point, source=written.source)
     title = written.title or f"Earth: stick {written.stick} on the {written.point}"
     effects = Effects(sets={written.source: "earthed"})
-    return Piece(id_, [base.make_step(id_, "earth", title, control, written)], [Exit(id_, "done", opens, effects)])
+    return base.one_step("earth", title, control, written, id_, opens, effects, scope)
 
 
 KIND = Kind("earth", EarthStep, lower, "a numbered earthing stick put on")

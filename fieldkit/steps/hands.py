@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import People
 from fieldkit.sheet.parts import Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.words import key
 
@@ -21,8 +21,8 @@ class Hands(StepWritten):
 def lower(written: Hands, id_: str, scope: Scope) -> Piece:
     opens = conditions.distinct((*base.gate(written, scope), conditions.place_safe(written.where)))
     title = written.title or f"Hands in at the {written.where}: sign in by name"
-    step = base.make_step(id_, "hands", title, People(place=written.where, way="in"), written)
-    return Piece(id_, [step], [Exit(id_, "done", opens, Effects(hands={written.where: "in"}))])
+    control, effects = People(place=written.where, way="in"), Effects(hands={written.where: "in"})
+    return base.one_step("hands", title, control, written, id_, opens, effects, scope)
 
 
 KIND = Kind("hands", Hands, lower, "hands in at a place, by name")

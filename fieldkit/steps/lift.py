@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import Lift
 from fieldkit.sheet.parts import Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.sources import SOURCES
 from fieldkit.steps.words import key
@@ -28,7 +28,7 @@ def lower(written: LiftStep, id_: str, scope: Scope) -> Piece:
     title = written.title or f"Lift stick {written.stick} from the {written.point}"
     #: proved dead ends with the first stick that is lifted
     effects = Effects(sets={written.source: "locked"})
-    return Piece(id_, [base.make_step(id_, "lift", title, control, written)], [Exit(id_, "done", opens, effects)])
+    return base.one_step("lift", title, control, written, id_, opens, effects, scope)
 
 
 KIND = Kind("lift", LiftStep, lower, "an earthing stick taken off, counted")

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
+from decimal import Decimal
 from typing import Any
 
 from fieldkit.sheet.parts import Limits, Tree, Typical, Unit
@@ -94,6 +95,9 @@ def limits(written: Any, unit: Unit, scope: Scope) -> Limits | None:
                 )
         return None
     sides = read_range(written.limits, unit, scope)
+    if _empty(sides):
+        remedy = "write the lower limit first, and a higher one after it"
+        scope.found.add(written.limits.place, "empty-limits", "no value can meet these limits", remedy)
     band = (
         read_range(written.caution_band, unit, scope) if written.caution_band is not None else Range(NO_SIDE, NO_SIDE)
     )
@@ -107,6 +111,14 @@ def limits(written: Any, unit: Unit, scope: Scope) -> Limits | None:
         caution_high=band.high.tree,
         guarded=bool(written.guarded),
     )
+
+
+def _empty(sides: Range) -> bool:
+    """Whether the lower constant is above the higher one; limits that are formulas are judged when they are known."""
+    low, high = sides.low.tree, sides.high.tree
+    if low is None or high is None or "number" not in low or "number" not in high:
+        return False
+    return Decimal(low["number"]) > Decimal(high["number"])
 
 
 def typical(written: Any, unit: Unit, scope: Scope) -> Typical | None:

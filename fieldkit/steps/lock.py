@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import Lock
 from fieldkit.sheet.parts import Condition, Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.sources import SOURCES
 from fieldkit.steps.words import key
@@ -26,14 +26,9 @@ def lower(written: LockStep, id_: str, scope: Scope) -> Piece:
     live = [c for s in written.sources if s in scope.sources for c in (not_live(s),)]
     opens = conditions.distinct((*base.gate(written, scope), *live))
     effects = Effects(sets={s: "locked" for s in written.sources})
-    step = base.make_step(
-        id_,
-        "lock",
-        written.title or f"Lock {written.point}",
-        Lock(point=written.point, sources=written.sources, ask=written.ask),
-        written,
-    )
-    return Piece(id_, [step], [Exit(id_, "done", opens, effects)])
+    control = Lock(point=written.point, sources=written.sources, ask=written.ask)
+    title = written.title or f"Lock {written.point}"
+    return base.one_step("lock", title, control, written, id_, opens, effects, scope)
 
 
 def not_live(source: str) -> Condition:

@@ -194,6 +194,7 @@ def _waits_and_acts(ladder: Ladder, first_read: str, piece: Piece, scope: Scope)
             _wait(ladder, "first", f"{written.title}: settle", written.start, written.settle, first_read, scope, start)
         )
     rows.append(_act(ladder, "set", written.set, f"{id_}_settle"))
+    piece.exits += base.other_way(written, f"{id_}_set", "done", ladder.opens, scope)
     rows.append(_wait(ladder, "settle", f"{written.title}: settle", f"{id_}_set", written.settle, first_read, scope))
     rows.append(_act(ladder, "down", written.down, f"{id_}_rest"))
     rows.append(

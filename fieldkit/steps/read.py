@@ -33,6 +33,9 @@ def control(written: Read, scope: Scope) -> Number:
         scope.found.add(
             written.at("protects"), "no-limits", "protects stands here without limits", "write limits: as well"
         )
+    if written.guarded and written.meter is None:
+        remedy = "write meter: as well; a limit is guarded by the meter's uncertainty"
+        scope.found.add(written.at("guarded"), "guarded-no-meter", "guarded limits stand here without a meter", remedy)
     return Number(
         unit=unit,
         meter=written.meter,

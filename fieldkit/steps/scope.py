@@ -34,6 +34,7 @@ class Scope:
     levels: dict[str, Unit] = field(default_factory=dict)
     meanings: dict[str, str] = field(default_factory=dict)
     origins: dict[str, str] = field(default_factory=dict)
+    given_places: dict[str, Place] = field(default_factory=dict)
     steps: dict[str, tuple[int, str]] = field(default_factory=dict)
     sources: tuple[str, ...] = ()
     facts: set[str] = field(default_factory=set)

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fieldkit.sheet.controls import Unlock
 from fieldkit.sheet.parts import Condition, Effects
 from fieldkit.steps import base, conditions, words
-from fieldkit.steps.base import Exit, Kind, Piece, StepWritten
+from fieldkit.steps.base import Kind, Piece, StepWritten
 from fieldkit.steps.scope import Scope
 from fieldkit.steps.words import key
 
@@ -25,9 +25,8 @@ def lower(written: UnlockStep, id_: str, scope: Scope) -> Piece:
     opens = conditions.distinct((*base.gate(written, scope), on, conditions.NOBODY_IN, conditions.EARTHS_LIFTED))
     effects = Effects(sets={s: "off" for s in written.sources})
     title = written.title or f"Unlock {written.point}"
-    step = base.make_step(id_, "unlock", title, Unlock(point=written.point, sources=written.sources), written)
-    exits = [Exit(id_, "done", opens, effects), *base.other_way(written, id_, "done", opens, scope)]
-    return Piece(id_, [step], exits)
+    control = Unlock(point=written.point, sources=written.sources)
+    return base.one_step("unlock", title, control, written, id_, opens, effects, scope)
 
 
 KIND = Kind("unlock", UnlockStep, lower, "taking a lock off, by its holder")
