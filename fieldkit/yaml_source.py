@@ -223,6 +223,7 @@ class _Builder:
             self._put(Scalar("", "plain", _place(event)), event)
         elif isinstance(event, yaml.ScalarEvent):
             self._plain(event)
+            self._escapes(event)
             self._put(Scalar(event.value, _STYLES[event.style], _place(event)), event)
         elif isinstance(event, (yaml.MappingStartEvent, yaml.SequenceStartEvent)):
             self._plain(event)
@@ -255,6 +256,13 @@ class _Builder:
             self.found.add(
                 _place(event), "tag", f"the tag {event.tag} stands here", "delete it; every value is read as text"
             )
+
+    def _escapes(self, event: Any) -> None:
+        """Characters that an escape in double quotes has brought in: "\\0", "\\uD800"."""
+        hidden = next((c for c in event.value if c != "\n" and not _belongs(c)), None)
+        if hidden is not None:
+            message = f"an escape makes the character U+{ord(hidden):04X}"
+            self.found.add(_place(event), "control-character", message, "take the escape out")
 
     def _put(self, node: Node, event: Any) -> None:
         if not self.stack:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import random
+
 import pytest
 
 from fieldkit import yaml_source
@@ -53,6 +55,8 @@ REFUSED = [
     ("a: 1 # x\ty\n", [("tab", 1, 9)]),
     ("a: x\x07y\n", [("control-character", 1, 5)]),
     ("a: x\u202ey\n", [("control-character", 1, 5)]),
+    ('a: "x\\0y"\n', [("control-character", 1, 4)]),
+    ('a: "\\uD800"\n', [("control-character", 1, 4)]),
     ("\ufeffa: 1\n", [("byte-order-mark", 1, 1)]),
     ("a: 1\r\nb: 2\r\n", [("line-ends", 1, 1)]),
     ("? [a, b]\n: 1\n", [("key-not-plain", 1, 3)]),
@@ -90,6 +94,38 @@ def test_deep_and_big_files_are_refused_without_an_exception() -> None:
 def test_an_alias_bomb_is_refused_line_by_line() -> None:
     text = "a: &a [x, x]\nb: &b [*a, *a]\nc: [*b, *b]\n"
     assert [c for c, _, _ in _codes(text)] == ["anchor", "anchor", "alias", "alias", "alias", "alias"]
+
+
+def test_no_bytes_at_all_make_it_raise() -> None:
+    """Random bytes, and a good file with random pieces of grammar thrown in, from a fixed seed."""
+    rnd = random.Random(20260803)
+    good = b"steps:\n  - read: Heater volts\n    id: v\n    limits: {low: 6.1 V, high: '6.5 V'}\n  - [a, b]\n"
+    pieces = [b"&a ", b"*a", b"!!x ", b"{", b"}", b"[", b"]", b": ", b"- ", b"? ", b"|", b">", b"%", b"---\n", b"...\n"]
+    pieces += [
+        b"\t",
+        b"\r\n",
+        b"\x00",
+        b"\xff",
+        b"\xef\xbb\xbf",
+        b'"',
+        b"'",
+        b"\\",
+        b"#",
+        b"@",
+        b"`",
+        b"<<: ",
+        b"\xe2\x80\xa8",
+    ]
+    refused = 0
+    for _ in range(1500):
+        data = bytearray(good)
+        for _ in range(rnd.randint(1, 5)):
+            at = rnd.randint(0, len(data))
+            data[at : at + rnd.randint(0, 3)] = rnd.choice(pieces) if rnd.random() < 0.8 else rnd.randbytes(3)
+        node, problems = read(bytes(data), "x.yaml")
+        assert node is not None or problems
+        refused += bool(problems)
+    assert refused > 700
 
 
 def test_every_problem_says_what_to_do() -> None:
