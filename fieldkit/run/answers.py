@@ -1,8 +1,8 @@
 """What an answer to a step does to the state: one arm a control. Twin: static/core/answers.js.
 
 An arm gives the outcome and what the row says; it changes the working copy that fieldkit.run.state made. Limits are
-read with the names from before the answer; the gates of a judged step's moves with those after it, all others with
-those from before. Not here: events that answer no step (fieldkit.run.state), refusals (fieldkit.run.decide).
+read with the names from before the answer; the gates of a reading's or a choice's moves with the answer in, those of
+an act before it (a lock that comes off is still on). Not here: events that answer no step (fieldkit.run.state), refusals (fieldkit.run.decide).
 """
 
 from __future__ import annotations
@@ -39,8 +39,8 @@ CONTROLS = {
 }
 #: kinds whose texts can be corrected
 CORRECTABLE = ("read", "proved", "locked", "remarked")
-#: outcomes that depend on what was answered
-JUDGED = ("pass", "fail")
+#: outcomes whose gates are read with the answer in: the value just read, the option just chosen
+WITH_ANSWER = ("pass", "fail", "option")
 
 
 def is_answer(ctx: Context, state: State, event: Plain) -> bool:
@@ -73,7 +73,7 @@ def answer(ctx: Context, state: State, event: Plain, corrections: list[Plain]) -
         return
     state["pending"] = {"step": step["id"], "seq": seq, "outcome": outcome, "verdict": said.get("verdict")}
     if body["move"] is not None:
-        where = names.scope(ctx, state) if outcome in JUDGED else before
+        where = names.scope(ctx, state) if outcome in WITH_ANSWER else before
         moves.take(ctx, state, body["move"], where, event)
     elif event["kind"] == "unlocked" and lock_on(state, body["point"]):
         state["pending"] = None

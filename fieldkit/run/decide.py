@@ -147,8 +147,8 @@ def _move(given: Given, body: Plain) -> str | None:
     pending = after["pending"]
     if pending is None or pending["outcome"] == "fail":
         return None
-    judged = pending["outcome"] in answers.JUDGED
-    where = names.scope(ctx, after) if judged else names.scope(ctx, given.state, given.now)
+    with_answer = pending["outcome"] in answers.WITH_ANSWER
+    where = names.scope(ctx, after) if with_answer else names.scope(ctx, given.state, given.now)
     leaving = [m for m in moves.leads(ctx, after, pending["step"], pending["outcome"]) if m["manner"] == "plain"]
     free = [m for m in leaving if not names.reasons(ctx, where, m["gate"])]
     picked = given.asked.get("move")

@@ -131,6 +131,8 @@ class StatesDeclared(Body):
     #: seconds for which a source has been in its state, as the person states it (decimal string)
     ages: dict[str, str] = {}
     board_seen: bool
+    #: locks found on the cabinet that the board did not show, named with their holders
+    locks: tuple[LockOnBoard, ...] = ()
 
 
 class Answer(Body):

@@ -109,14 +109,33 @@ def _within_ms(text: str) -> int:
 
 def declared(given: Given) -> Plain:
     """The energy states as found: against the sheet, and against the lock board. Nothing opens where they differ."""
-    body = checked(given.kind, {"ages": {}, **given.asked})
+    body = checked(given.kind, {"ages": {}, **given.asked, "locks": _found(given)})
     if not body["board_seen"]:
         raise Refusal("board-not-seen", "Look at the lock board first.")
     _complete(given, body["states"])
     for name in body["states"]:
         _expected(given, name, body)
-        _board(given, name, body["states"][name])
+        _board(given, name, body)
     return body
+
+
+def _found(given: Given) -> list[Plain]:
+    """Locks that are on the cabinet and not on the board, as named now: point, sources, lock, holder."""
+    asked, people = given.asked.get("locks"), given.state["started"]["people"]
+    found: list[Plain] = []
+    for one in asked if isinstance(asked, list | tuple) else []:
+        if not isinstance(one, dict):
+            raise Refusal("bad-command", "A lock is named by its point, sources, number and holder.")
+        lock = {key: one.get(key) for key in ("point", "sources", "lock", "tag", "holder", "holder_name")}
+        lock["tag"] = lock["tag"] or ""
+        known = next((person["name"] for person in people if person["id"] == lock["holder"]), lock["holder_name"])
+        if not all(isinstance(lock[key], str) and lock[key].strip() for key in ("point", "lock")) or not known:
+            raise Refusal("lock-unnamed", "Name the point, the number and the holder of every lock that is on.")
+        if any(lock["lock"] == other["lock"] for other in [*given.state["locks"], *found]):
+            raise Refusal("lock-in-use", f"Lock {lock['lock']} is on the board already. Read its number again.")
+        holder = {"holder": lock["holder"] or "", "holder_name": known}
+        found.append({**lock, **holder, "run": given.state["run"], "since": given.now["wall"]})
+    return found
 
 
 def _complete(given: Given, states: Plain) -> None:
@@ -146,10 +165,10 @@ def _expected(given: Given, name: str, body: Plain) -> None:
         raise Refusal("age-too-short", f"{title} must have been {expected['state']} for {need}.")
 
 
-def _board(given: Given, name: str, state: str) -> None:
-    """The lock board and what is declared say the same."""
-    title = given.ctx.sources[name]["title"]
-    locks = [lock for lock in given.state["locks"] if name in lock["sources"]]
+def _board(given: Given, name: str, body: Plain) -> None:
+    """The lock board, with the locks that were found, and what is declared say the same."""
+    title, state = given.ctx.sources[name]["title"], body["states"][name]
+    locks = [lock for lock in [*given.state["locks"], *body["locks"]] if name in lock["sources"]]
     earths = [earth for earth in given.state["earths"] if earth["source"] == name]
     if locks and state not in ISOLATED:
         told = "; ".join(
@@ -159,7 +178,7 @@ def _board(given: Given, name: str, state: str) -> None:
     if not locks and state in ISOLATED:
         raise Refusal(
             "no-lock-on-board",
-            f"{title} is declared {state}, and the board shows no lock for it. Name its holder there first.",
+            f"{title} is declared {state}, and the board shows no lock for it. Name the lock and its holder.",
         )
     if earths and state != "earthed":
         sticks = ", ".join(one["stick"] for one in earths)

@@ -263,6 +263,8 @@ def _states_declared(ctx: Context, state: State, event: Plain, more: Plain) -> N
         back = max(0, clock.millis(body["ages"].get(name, "0")) or 0)
         made = {"state": to, **moves.mark(state), "seq": seq, "flag": "declared"}
         state["sources"][name] = _earlier(made, back, back)
+    state["locks"].extend(body["locks"])
+    rows.change(state, seq, names=[f"{lock['lock']} on {lock['point']}" for lock in body["locks"]])
     state["phase"] = "going"
 
 

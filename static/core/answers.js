@@ -37,8 +37,8 @@ export const CONTROLS = {
 };
 /** Kinds whose texts can be corrected. */
 export const CORRECTABLE = Object.freeze(["read", "proved", "locked", "remarked"]);
-/** Outcomes that depend on what was answered. */
-export const JUDGED = Object.freeze(["pass", "fail"]);
+/** Outcomes whose gates are read with the answer in: the value just read, the option just chosen. */
+export const WITH_ANSWER = Object.freeze(["pass", "fail", "option"]);
 
 /** A picture or a remark can also stand beside a step; all other answers answer.
  * @param {Context} ctx @param {State} state @param {any} event */
@@ -73,7 +73,7 @@ export function answer(ctx, state, event, corrections) {
   if (!going) return;
   state.pending = { step: step.id, seq, outcome, verdict: said.verdict ?? null };
   if (body.move !== null) {
-    const where = JUDGED.includes(outcome) ? names.scope(ctx, state) : before;
+    const where = WITH_ANSWER.includes(outcome) ? names.scope(ctx, state) : before;
     moves.take(ctx, state, body.move, where, event);
   } else if (event.kind === "unlocked" && lock_on(state, body.point)) state.pending = null;
 }

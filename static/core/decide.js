@@ -129,8 +129,8 @@ function move_of(given, body) {
   const after = trial(given, body);
   const { pending } = after;
   if (pending === null || pending.outcome === "fail") return null;
-  const judged = answers.JUDGED.includes(pending.outcome);
-  const where = judged ? names.scope(ctx, after) : names.scope(ctx, given.state, given.now);
+  const with_answer = answers.WITH_ANSWER.includes(pending.outcome);
+  const where = with_answer ? names.scope(ctx, after) : names.scope(ctx, given.state, given.now);
   const leaving = moves.leads(ctx, after, pending.step, pending.outcome).filter((m) => m.manner === "plain");
   const free = leaving.filter((m) => names.reasons(ctx, where, m.gate).length === 0);
   const picked = given.asked.move ?? null;

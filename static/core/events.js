@@ -42,7 +42,7 @@ export const BODIES = {
     locks: maybe([LOCK], []), earths: maybe([EARTH], []), earlier: maybe([EARLIER], []), tablet: TABLET, kit: "text",
     rehearsal: maybe("flag", false),
   },
-  "states-declared": { states: STATES, ages: maybe("map", {}), board_seen: "flag" },
+  "states-declared": { states: STATES, ages: maybe("map", {}), board_seen: "flag", locks: maybe([LOCK], []) },
   acknowledged: { step: "text", move: MOVE, heard: "texts" },
   confirmed: { step: "text", move: MOVE },
   read: { step: "text", move: MOVE, text: "text", unit: "text", instrument: maybe("text", null) },

@@ -101,14 +101,39 @@ function after(asked, body, wall) {
 
 /** The energy states as found: against the sheet, and against the lock board. @param {Given} given */
 export function declared(given) {
-  const body = checked(given.kind, { ages: {}, ...given.asked });
+  const body = checked(given.kind, { ages: {}, ...given.asked, locks: found_locks(given) });
   if (!body.board_seen) throw new Refused("board-not-seen", "Look at the lock board first.");
   complete(given, body.states);
   for (const name of Object.keys(body.states)) {
     expected(given, name, body);
-    board(given, name, body.states[name]);
+    board(given, name, body);
   }
   return body;
+}
+
+/** Locks that are on the cabinet and not on the board, as named now: point, sources, lock, holder. @param {Given} given */
+function found_locks(given) {
+  const asked = Array.isArray(given.asked.locks) ? given.asked.locks : [];
+  const { people } = given.state.started;
+  /** @type {any[]} */
+  const found = [];
+  for (const one of asked) {
+    if (typeof one !== "object" || one === null || Array.isArray(one)) {
+      throw new Refused("bad-command", "A lock is named by its point, sources, number and holder.");
+    }
+    const { point, sources, lock, tag, holder, holder_name } = one;
+    const person = people.find((/** @type {any} */ p) => p.id === holder);
+    const known = person ? person.name : holder_name;
+    if (![point, lock].every((text) => typeof text === "string" && text.trim()) || !known) {
+      throw new Refused("lock-unnamed", "Name the point, the number and the holder of every lock that is on.");
+    }
+    if ([...given.state.locks, ...found].some((other) => other.lock === lock)) {
+      throw new Refused("lock-in-use", `Lock ${lock} is on the board already. Read its number again.`);
+    }
+    const whose = { holder: holder || "", holder_name: known, run: given.state.run, since: given.now.wall };
+    found.push({ point, sources: sources ?? null, lock, tag: tag || "", ...whose });
+  }
+  return found;
 }
 
 /** @param {Given} given @param {Record<string, string>} states */
@@ -143,10 +168,12 @@ function expected(given, name, body) {
   }
 }
 
-/** The lock board and what is declared say the same. @param {Given} given @param {string} name @param {string} state */
-function board(given, name, state) {
+/** The lock board, with the locks that were found, and what is declared say the same.
+ * @param {Given} given @param {string} name @param {any} body */
+function board(given, name, body) {
   const { title } = given.ctx.sources[name];
-  const locks = given.state.locks.filter((/** @type {any} */ lock) => lock.sources.includes(name));
+  const state = body.states[name];
+  const locks = [...given.state.locks, ...body.locks].filter((/** @type {any} */ lock) => lock.sources.includes(name));
   const earths = given.state.earths.filter((/** @type {any} */ earth) => earth.source === name);
   if (locks.length && !ISOLATED.includes(state)) {
     const told = locks.map(
@@ -155,7 +182,7 @@ function board(given, name, state) {
     throw new Refused("locked-on-board", `${title} is declared ${state}, and the board shows ${told.join("; ")}.`);
   }
   if (!locks.length && ISOLATED.includes(state)) {
-    const says = `${title} is declared ${state}, and the board shows no lock for it. Name its holder there first.`;
+    const says = `${title} is declared ${state}, and the board shows no lock for it. Name the lock and its holder.`;
     throw new Refused("no-lock-on-board", says);
   }
   if (earths.length && state !== "earthed") {

@@ -244,6 +244,8 @@ function states_declared(ctx, state, event) {
     const back = Math.max(0, clock.millis(age) ?? 0);
     state.sources[name] = earlier({ state: to, ...moves.mark(state), seq, flag: "declared" }, back, back);
   }
+  state.locks.push(...body.locks);
+  rows.change(state, seq, { names: body.locks.map((/** @type {any} */ lock) => `${lock.lock} on ${lock.point}`) });
   state.phase = "going";
 }
 
