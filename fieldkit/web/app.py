@@ -7,7 +7,6 @@ the bar at the top; one line in GROUPS.
 from __future__ import annotations
 
 import importlib
-import importlib.util
 from pathlib import Path
 from typing import Any
 
@@ -78,8 +77,6 @@ def here() -> Station:
 def _join(app: Flask) -> None:
     nav: list[tuple[str, str, tuple[str, ...]]] = []
     for name in GROUPS:
-        if importlib.util.find_spec(f"fieldkit.web.{name}") is None:
-            continue
         module = importlib.import_module(f"fieldkit.web.{name}")
         app.register_blueprint(module.blueprint)
         if getattr(module, "TABLET_CALLS", False):

@@ -1,0 +1,5 @@
+"""The small station's cheap passwords, for tests that make one in this process."""
+
+from station_in_tests import cheap_passwords
+
+__all__ = ["cheap_passwords"]
