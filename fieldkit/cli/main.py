@@ -31,6 +31,7 @@ COMMANDS: tuple[Command, ...] = (
     ),
     Command("verify", "fieldkit.cli.verify", "say whether a record's PDF can be relied on, question by question"),
     Command("sheet", "fieldkit.cli.sheet", "show a compiled procedure as a tablet works from it"),
+    Command("demo", "fieldkit.cli.demo", "make and serve the invented station, or play one record without a browser"),
     Command("serve", "fieldkit.cli.serve", "serve a station: the desk, the tablets' app, and what they send"),
 )
 

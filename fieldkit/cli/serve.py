@@ -105,11 +105,11 @@ def _place(args: argparse.Namespace) -> Place:
             "Without TLS it serves this machine only, because a tablet's app works offline only over TLS. "
             "Leave --plain-http out, or give --host 127.0.0.1.",
         )
-    names = tuple(args.name) or _own_names(args.host)
+    names = tuple(args.name) or own_names(args.host)
     return Place(args.host, args.port, names, args.plain_http)
 
 
-def _own_names(host: str) -> tuple[str, ...]:
+def own_names(host: str) -> tuple[str, ...]:
     """The names and addresses that this machine is likely reached by, best first."""
     if host in LOOPBACK:
         return ("localhost", "127.0.0.1")
@@ -259,6 +259,12 @@ def _say(folder: Path, place: Place, held: station.Station) -> None:
         "  next         sign in, add people, enrol them on a tablet, issue their certificates\n  stop         Ctrl-C",
         flush=True,
     )
+
+
+def start(folder: Path, place: Place) -> None:
+    """Serve a folder that is set up, alone, until stopped. Raises Refusal already-served."""
+    with _alone(folder):
+        _serve(folder, place)
 
 
 def _serve(folder: Path, place: Place) -> None:
