@@ -2,7 +2,8 @@
 
 An arm gives the outcome and what the row says; it changes the working copy that fieldkit.run.state made. Limits are
 read with the names from before the answer; the gates of a reading's or a choice's moves with the answer in, those of
-an act before it (a lock that comes off is still on). Not here: events that answer no step (fieldkit.run.state), refusals (fieldkit.run.decide).
+an act before it (a lock that comes off is still on). Not here: events that answer no step (fieldkit.run.state),
+refusals (fieldkit.run.decide).
 """
 
 from __future__ import annotations

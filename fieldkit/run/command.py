@@ -43,8 +43,6 @@ class Given:
 def checked(kind: str, body: Plain) -> Plain:
     """The body as the event's model has it, with defaults. Raises Refusal bad-command."""
     try:
-        return dict(events.EVENTS[kind].model_validate(body).model_dump(mode="json"))
-    except ValidationError as exc:
-        first = exc.errors()[0]
-        where = ".".join(str(p) for p in first["loc"])
-        raise Refusal("bad-command", f"The command {kind} is damaged at {where}: {first['msg']}.") from exc
+        return events.read_body(kind, body).model_dump(mode="json")
+    except (ValidationError, TypeError) as exc:
+        raise Refusal("bad-command", f"The command {kind} is damaged.") from exc

@@ -61,7 +61,7 @@ def decide(sheet: Sheet | Plain | Context, state: State, command: Plain, now: di
 def _decided(ctx: Context, state: State, command: Plain, now: Plain) -> list[Plain]:
     kind = command.get("do")
     if kind not in _HANDLERS:
-        raise Refusal("unknown-command", f"There is no command '{kind}'.")
+        raise Refusal("unknown-command", "There is no such command.")
     allowed, code, says = PHASES[state["phase"]]
     if kind not in allowed:
         raise Refusal(code, says)

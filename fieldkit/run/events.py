@@ -469,6 +469,11 @@ def digest(raw: bytes) -> str:
     return hashlib.sha256(raw).hexdigest()
 
 
+def read_body(kind: str, body: dict[str, Any]) -> Body:
+    """A body as its model has it. Strict: "1" is no number and 1 no flag, as on the tablet. Raises ValidationError."""
+    return EVENTS[kind].model_validate_json(json.dumps(body), strict=True)
+
+
 def _no_constant(name: str) -> Any:
     raise ValueError(f"{name} is not JSON")
 
@@ -484,7 +489,7 @@ def parse(raw: bytes) -> Event:
     """The event in `raw`. Raises Refusal damaged-event or unknown-version; the caller keeps the bytes either way."""
     try:
         data = json.loads(raw.decode("utf-8", "strict"), parse_constant=_no_constant, object_pairs_hook=_no_duplicates)
-        head = Envelope.model_validate(data)
+        head = Envelope.model_validate_json(json.dumps(data), strict=True)
     except (ValueError, RecursionError) as exc:
         raise Refusal("damaged-event", f"This is not an event: {str(exc).splitlines()[0]}.") from exc
     body, v = head.body, head.v
@@ -496,7 +501,7 @@ def parse(raw: bytes) -> Event:
             f"Event {head.seq} is {head.kind!r} version {head.v}, which is not known here. Update fieldkit.",
         )
     try:
-        return Event(head=head, body=EVENTS[head.kind].model_validate(body), sha256=digest(raw), raw=raw)
+        return Event(head=head, body=read_body(head.kind, body), sha256=digest(raw), raw=raw)
     except ValidationError as exc:
         first = exc.errors()[0]
         where = ".".join(str(p) for p in first["loc"])

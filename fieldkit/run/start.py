@@ -129,7 +129,7 @@ def _found(given: Given) -> list[Plain]:
         lock = {key: one.get(key) for key in ("point", "sources", "lock", "tag", "holder", "holder_name")}
         lock["tag"] = lock["tag"] or ""
         known = next((person["name"] for person in people if person["id"] == lock["holder"]), lock["holder_name"])
-        if not all(isinstance(lock[key], str) and lock[key].strip() for key in ("point", "lock")) or not known:
+        if not all(_written(lock[key]) for key in ("point", "lock")) or not known:
             raise Refusal("lock-unnamed", "Name the point, the number and the holder of every lock that is on.")
         if any(lock["lock"] == other["lock"] for other in [*given.state["locks"], *found]):
             raise Refusal("lock-in-use", f"Lock {lock['lock']} is on the board already. Read its number again.")
@@ -163,6 +163,10 @@ def _expected(given: Given, name: str, body: Plain) -> None:
     if age is None or isinstance(least, bool) or not isinstance(least, float) or age / 1000.0 < least:
         need = clock.spoken(clock.ceil_ms(least)) if isinstance(least, float) else "longer"
         raise Refusal("age-too-short", f"{title} must have been {expected['state']} for {need}.")
+
+
+def _written(text: Any) -> bool:
+    return isinstance(text, str) and bool(text.strip())
 
 
 def _board(given: Given, name: str, body: Plain) -> None:

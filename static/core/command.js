@@ -49,6 +49,6 @@ export class Given {
 /** The body with its defaults. Throws Refused bad-command. @param {string} kind @param {any} body @returns {any} */
 export function checked(kind, body) {
   const found = read_body(kind, body);
-  if ("refused" in found) throw new Refused("bad-command", `The command ${kind} is damaged: ${found.refused}.`);
+  if ("refused" in found) throw new Refused("bad-command", `The command ${kind} is damaged.`);
   return found.body;
 }

@@ -57,7 +57,7 @@ export function decide(sheet, state, command, now) {
 function decided(ctx, state, command, now) {
   const { do: kind, by, facts, ...asked } = command;
   if (typeof kind !== "string" || !Object.hasOwn(HANDLERS, kind)) {
-    throw new Refused("unknown-command", `There is no command '${kind}'.`);
+    throw new Refused("unknown-command", "There is no such command.");
   }
   const [allowed, code, says] = PHASES[state.phase];
   if (!allowed.includes(kind)) throw new Refused(code, says);

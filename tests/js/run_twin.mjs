@@ -1,0 +1,79 @@
+/**
+ * The run engine of the tablet, asked by tests: one process, one JSON request a line, one JSON answer a line.
+ *
+ *   {"sheet": name, "body": sheet}                                  keeps a sheet
+ *   {"walk": name, "run", "chain", "sha256", "steps": [...]}        plays a walk; a step is one of
+ *       {"text": event text, "digest": of the state after}          {"now": at, "digest": of progress}
+ *       {"command": {...}, "now": at, "digest": of the decision}
+ *   {"fold": name, "texts": [...]}                                  the whole state
+ *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events
+ *
+ * A walk answers {"ok": n} or the first step that differs with what was got. Digests are SHA-256 of `canonical`.
+ */
+import { createHash } from "node:crypto";
+import { createInterface } from "node:readline";
+import * as clock from "../../static/core/clock.js";
+import { decide } from "../../static/core/decide.js";
+import * as events from "../../static/core/events.js";
+import * as judge from "../../static/core/judge.js";
+import { progress } from "../../static/core/progress.js";
+import * as state from "../../static/core/state.js";
+
+const sheets = new Map();
+const MODULES = { clock, judge, events };
+const sha256 = (text) => createHash("sha256").update(text).digest("hex");
+
+/** JSON that both languages write alike: keys sorted, whole numbers plain, others as seconds with three decimals. */
+function canonical(part) {
+  if (Array.isArray(part)) return `[${part.map(canonical).join(",")}]`;
+  if (typeof part === "object" && part !== null) {
+    const keys = Object.keys(part).sort();
+    return `{${keys.map((key) => `${JSON.stringify(key)}:${canonical(part[key])}`).join(",")}}`;
+  }
+  if (typeof part === "number" && !Number.isInteger(part)) return JSON.stringify(clock.seconds(Math.round(part * 1000)));
+  return JSON.stringify(part);
+}
+
+/** A state twice over: the fold of frozen copies must leave every earlier state as it was. */
+function deep_freeze(part) {
+  if (typeof part === "object" && part !== null && !Object.isFrozen(part)) {
+    Object.freeze(part);
+    Object.values(part).forEach(deep_freeze);
+  }
+  return part;
+}
+
+function walk(request) {
+  const sheet = sheets.get(request.walk);
+  let run = state.begin(sheet);
+  let now = state.make(sheet, request.run, request.chain, request.sha256);
+  for (const [i, step] of request.steps.entries()) {
+    let got;
+    if ("text" in step) {
+      run = state.apply(run, events.read(step.text, sha256(step.text)));
+      now = deep_freeze(run.state);
+      got = now;
+    } else got = "command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now);
+    if (step.digest && sha256(canonical(got)) !== step.digest) return { step: i, got };
+  }
+  return { ok: request.steps.length };
+}
+
+function answer(request) {
+  if ("sheet" in request) return { kept: Boolean(sheets.set(request.sheet, request.body)) };
+  if ("walk" in request) return walk(request);
+  if ("fold" in request) return state.fold(sheets.get(request.fold), request.texts.map((t) => events.read(t, sha256(t))));
+  const [module, name] = request.call.split(".");
+  const found = MODULES[module][name];
+  return { value: typeof found === "function" ? found(...request.args) : found };
+}
+
+for await (const line of createInterface({ input: process.stdin })) {
+  let reply;
+  try {
+    reply = answer(JSON.parse(line));
+  } catch (problem) {
+    reply = { failed: String(problem.stack ?? problem) };
+  }
+  process.stdout.write(`${JSON.stringify(reply)}\n`);
+}
