@@ -29,7 +29,7 @@ LIVE = ("on", "standby", "cut-off", "unknown")
 
 @dataclass
 class Context:
-    """A sheet and its indexes. Made by `context`; nothing in it changes."""
+    """A sheet and its indexes. Made by `context`; nothing in it changes but what is kept to save work."""
 
     sheet: dict[str, Any]
     steps: dict[str, dict[str, Any]]
@@ -44,6 +44,8 @@ class Context:
     depends: dict[str, set[str]]
     #: what a name of the sheet is worth before it has a value
     missing: dict[str, Fault]
+    #: values of the givens of the run that was asked about last
+    givens: tuple[dict[str, Any] | None, Scope] | None = None
 
 
 @dataclass(frozen=True)
@@ -129,9 +131,9 @@ def scope(ctx: Context, state: dict[str, Any], at: dict[str, Any] | None = None)
         least, greatest = (clock.millis(total["least"]) or 0, clock.millis(total["greatest"]) or 0) if total else (0, 0)
     else:
         least, greatest = clock.now(state["clock"], at)
-    names: dict[str, Any] = dict(ctx.missing)
-    series: dict[str, list[float]] = {}
-    _givens(ctx, state, names, series)
+    fixed = _givens(ctx, state["started"])
+    names: dict[str, Any] = {**ctx.missing, **fixed.names}
+    series: dict[str, list[float]] = dict(fixed.series)
     for name in ctx.mentioned:
         head, _, rest = name.partition(":")
         if rest:
@@ -164,8 +166,13 @@ def _age(total: int, mark: str) -> float:
     return (total - (clock.millis(mark) or 0)) / 1000.0
 
 
-def _givens(ctx: Context, state: dict[str, Any], names: dict[str, Any], series: dict[str, list[float]]) -> None:
-    found = state["started"]["givens"] if state["started"] else {}
+def _givens(ctx: Context, started: dict[str, Any] | None) -> Scope:
+    """Names and series of the givens; they never change in a run, so the last run's are kept."""
+    if ctx.givens and ctx.givens[0] is started:
+        return ctx.givens[1]
+    names: dict[str, Any] = {}
+    series: dict[str, list[float]] = {}
+    found = started["givens"] if started else {}
     for given in ctx.sheet["givens"]:
         kept = found.get(given["name"])
         if kept is None or not kept["texts"]:
@@ -178,6 +185,8 @@ def _givens(ctx: Context, state: dict[str, Any], names: dict[str, Any], series: 
             series[given["name"]] = numbers
         elif numbers:
             names[given["name"]] = numbers[0]
+    ctx.givens = (started, Scope(names, series))
+    return ctx.givens[1]
 
 
 def number(text: str, unit: dict[str, Any] | None) -> float | None:

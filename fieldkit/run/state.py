@@ -136,9 +136,8 @@ def _stopped_by(before: State, after: State) -> str:
 
 def _copy(state: State) -> State:
     """A working copy: every container that an arm changes is new, what it holds is replaced and never changed."""
-    return {
-        key: (dict(v) if isinstance(v, dict) else list(v) if isinstance(v, list) else v) for key, v in state.items()
-    }
+    made = {key: dict(v) if isinstance(v, dict) else list(v) if isinstance(v, list) else v for key, v in state.items()}
+    return {**made, "started": state["started"]}
 
 
 #: allowed once the run has ended, been voided or before it began

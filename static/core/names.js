@@ -89,10 +89,9 @@ export function scope(ctx, state, at = null) {
   const total = state.clock;
   const [least, greatest] =
     at !== null ? clock.now(total, at) : total ? [clock.millis(total.least) ?? 0, clock.millis(total.greatest) ?? 0] : [0, 0];
-  const names = Object.assign(bare(), ctx.missing);
-  /** @type {Record<string, number[]>} */
-  const series = bare();
-  givens(ctx, state, names, series);
+  const fixed = givens(ctx, state.started);
+  const names = Object.assign(bare(), ctx.missing, fixed.names);
+  const series = Object.assign(bare(), fixed.series);
   for (const name of ctx.mentioned) {
     const cut = name.indexOf(":");
     if (cut < 0 || cut === name.length - 1) continue;
@@ -125,9 +124,17 @@ function age(total, mark) {
   return (total - (clock.millis(mark) ?? 0)) / 1000;
 }
 
-/** @param {Context} ctx @param {State} state @param {Record<string, any>} names @param {Record<string, number[]>} series */
-function givens(ctx, state, names, series) {
-  const found = state.started ? state.started.givens : {};
+/** @type {WeakMap<Context, {started: any, where: Scope}>} */
+const GIVENS = new WeakMap();
+
+/** Names and series of the givens; they never change in a run, so the last run's are kept.
+ * @param {Context} ctx @param {any} started @returns {Scope} */
+function givens(ctx, started) {
+  const last = GIVENS.get(ctx);
+  if (last && last.started === started) return last.where;
+  const names = bare();
+  const series = bare();
+  const found = started ? started.givens : {};
   for (const given of ctx.sheet.givens) {
     const kept = Object.hasOwn(found, given.name) ? found[given.name] : null;
     if (kept === null || kept.texts.length === 0) continue;
@@ -140,6 +147,8 @@ function givens(ctx, state, names, series) {
     if (given.kind === "levels") series[given.name] = numbers;
     else if (numbers.length) names[given.name] = numbers[0];
   }
+  GIVENS.set(ctx, { started, where: { names, series } });
+  return { names, series };
 }
 
 /** The SI value of a given as the register wrote it; null where it is no number.

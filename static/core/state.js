@@ -119,9 +119,11 @@ function stopped_by(before, after) {
 
 /** @param {State} state @returns {State} */
 function copy(state) {
-  return Object.fromEntries(
-    Object.entries(state).map(([name, v]) => [name, Array.isArray(v) ? [...v] : typeof v === "object" && v !== null ? { ...v } : v]),
-  );
+  /** @type {State} */
+  const made = {};
+  for (const [name, v] of Object.entries(state)) made[name] = Array.isArray(v) ? [...v] : typeof v === "object" && v ? { ...v } : v;
+  made.started = state.started;
+  return made;
 }
 
 const AFTER_END = Object.freeze([

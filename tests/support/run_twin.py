@@ -41,8 +41,9 @@ class Twin:
             self.kept.add(name)
 
     def close(self) -> None:
-        assert self.process.stdin
+        assert self.process.stdin and self.process.stdout
         self.process.stdin.close()
+        self.process.stdout.close()
         self.process.wait(10)
 
 
