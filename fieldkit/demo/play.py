@@ -143,7 +143,7 @@ _ANSWERS: dict[str, Callable[[Walk, Plain, Plain], Plain]] = {
     "confirm": lambda w, s, p: {"do": "confirmed"},
     "number": lambda w, s, p: {"do": "read", "text": w.value(s, inside(s, p))},
     "prove": _prove,
-    "lock": lambda w, s, p: {"do": "locked", "lock": str(50 + len(w.visits)), "tag": "T-88"},
+    "lock": lambda w, s, p: {"do": "locked", "lock": str(43 + len(w.run.state["locks"])), "tag": "T-88"},
     "unlock": lambda w, s, p: {"do": "unlocked"},
     "earth": lambda w, s, p: {"do": "earthed"},
     "lift": lambda w, s, p: {"do": "lifted"},
