@@ -146,7 +146,7 @@ def gate(written: StepWritten, scope: Scope, sets: dict[str, str] | None = None)
         found += conditions.read(scalar, scope).conditions
     if written.not_before is not None:
         found += conditions.read_after(written.not_before, scope).conditions
-    found += built_in(sets or {}, scope, written.place)
+    found += built_in(sets or {}, scope, written.at("sets"))
     return conditions.distinct(found)
 
 

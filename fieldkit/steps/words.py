@@ -12,6 +12,7 @@ from __future__ import annotations
 
 import dataclasses
 import difflib
+import inspect
 import re
 from collections.abc import Callable
 from dataclasses import dataclass, field
@@ -60,8 +61,12 @@ def key(word: Word, doc: str, *, required: bool = False, default: Any = None, na
 
 
 def keys_of(model: type[Written]) -> dict[str, dataclasses.Field[Any]]:
-    """YAML key -> field, in the order in which the model declares them."""
-    return {f.metadata["name"] or f.name: f for f in dataclasses.fields(model) if "word" in f.metadata}
+    """YAML key -> field; a model's own keys stand before those that it has from its base."""
+    fields = [f for f in dataclasses.fields(model) if "word" in f.metadata]
+    line = [one for one in reversed(model.__mro__) if one is not object]
+    depth = {name: n for n, one in enumerate(line) for name in inspect.get_annotations(one)}
+    fields.sort(key=lambda f: -depth[f.name])
+    return {f.metadata["name"] or f.name: f for f in fields}
 
 
 def near(found: str, names: Any) -> str:
@@ -219,9 +224,7 @@ def unit_named(symbol: str, place: Place, found: Collector) -> Unit | None:
     known = units.unit(symbol)
     if known is None:
         close = units.near(symbol)
-        remedy = (
-            f"write one of: {', '.join(close)}" if close else "write a unit such as V, kV, mA, uA, L/min, degC, min"
-        )
+        remedy = f"write {' or '.join(close)}" if close else "write a unit such as V, kV, mA, uA, L/min, degC, min"
         found.add(place, "unknown-unit", f'"{symbol}" is not a unit that is known here', remedy)
         return None
     return sheet_unit(known)

@@ -8,7 +8,7 @@ from walker import Walk, shipped
 from fieldkit.sheet import controls, model
 from fieldkit.sheet.model import Sheet
 
-#: values that a real meter of the invented station shows (procedures.md, section 5), where the middle of limits will not do
+#: what the meters of the invented station show (its model), where the middle of the limits will not do
 WARM = {"dew_point": "12.0", "coolant_inlet": "24.0", "heater_amps_10": "9.82", "heater_amps_warm": "9.80"}
 HIGH = {
     "dew_point": "12.0", "ready_inlet": "24.0", "ready_outlet": "29.0", "ready_focus_volts": "27.0", "top_kv": "32.0",
@@ -163,7 +163,7 @@ def test_beam_on_is_shut_two_minutes_after_the_release(bring_up: Sheet) -> None:
 
 
 def test_a_slow_discharge_shows_an_open_bleeder_and_only_makes_safe(bring_up: Sheet) -> None:
-    # tau 1200 s with all bleeders open: 18 kV is still 17.9 kV after 10 s (procedures.md, 1.3)
+    # tau 1200 s with all bleeders open: 18 kV is still 17.9 kV after 10 s (worked from 4 uF and 300 Mohm)
     walk = Walk(bring_up, HIGH | {"kv_10s": "17.9"}).to("@end")
     assert walk.state["phase"] == "stopped"
     assert walk.visited[-1] == "kv_10s"

@@ -21,7 +21,19 @@ from fieldkit.steps.words import key
 
 HERE = Path(__file__).parent
 #: modules of fieldkit.steps that are no kinds
-SHARED = {"__init__", "base", "conditions", "expression", "gates", "judged", "limits", "meters", "scope", "sources", "words"}
+SHARED = {
+    "__init__",
+    "base",
+    "conditions",
+    "expression",
+    "gates",
+    "judged",
+    "limits",
+    "meters",
+    "scope",
+    "sources",
+    "words",
+}
 
 
 def compiled(kind: str) -> Sheet:

@@ -40,8 +40,10 @@ def start_of(sheet: Sheet, cabinet: str, tube: str, present: tuple[str, ...]) ->
     home = station["cabinets"][cabinet]
     known = home["givens"] | station["tubes"][tube]["givens"]
     return {
-        "do": "run-started", "by": present[0], "facts": {"confirmed": True}, "sheet": model.digest(model.to_bytes(sheet)),
-        "procedure": sheet.procedure, "edition": sheet.edition, "site": home["site"], "site_name": "Skarrow Fell",
+        "do": "run-started", "by": present[0], "facts": {"confirmed": True},
+        "sheet": model.digest(model.to_bytes(sheet)),
+        "procedure": sheet.procedure, "edition": sheet.edition,
+        "site": home["site"], "site_name": "Skarrow Fell",
         "cabinet": cabinet, "tube": tube, "givens": {g.name: known[g.name] for g in sheet.givens},
         "meters": home["meters"], "instruments": list(station["instruments"].values()), "places": home["places"],
         "people": [{"id": i, "name": p["name"], "roles": p["roles"]} for i, p in station["people"].items()],
