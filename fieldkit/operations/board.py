@@ -13,7 +13,7 @@ from typing import Any
 from sqlalchemy import select
 
 from fieldkit.errors import Refusal
-from fieldkit.operations import procedures, runs
+from fieldkit.operations import moment, procedures, runs
 from fieldkit.run import events, state
 from fieldkit.store.db import db
 from fieldkit.store.tables import EventRow, Run
@@ -38,8 +38,8 @@ def boards(cabinets: list[str]) -> dict[str, Board]:
 def _board(cabinet: str) -> Board:
     locks: dict[tuple[str, str], dict[str, Any]] = {}
     earths: dict[str, dict[str, Any]] = {}
-    query = select(Run).where(Run.cabinet == cabinet, Run.rehearsal.is_(False)).order_by(Run.started, Run.id)
-    for run in db.session.scalars(query).all():
+    found = db.session.scalars(select(Run).where(Run.cabinet == cabinet, Run.rehearsal.is_(False))).all()
+    for run in sorted(found, key=lambda run: (moment.order(run.started), run.id)):
         before, after = _start(run), _now(run)
         for lock in before["locks"]:
             locks.pop(_lock(lock), None)
@@ -77,8 +77,8 @@ def _now(run: Run) -> dict[str, Any]:
 def earlier() -> dict[str, list[dict[str, Any]]]:
     """Tube -> its finished runs (bodies of fieldkit.run.events.Earlier), latest last."""
     made: dict[str, list[dict[str, Any]]] = {}
-    query = select(Run).where(Run.phase.in_(("done", "stopped")), Run.rehearsal.is_(False)).order_by(Run.ended, Run.id)
-    for run in db.session.scalars(query):
+    found = db.session.scalars(select(Run).where(Run.phase.in_(("done", "stopped")), Run.rehearsal.is_(False))).all()
+    for run in sorted(found, key=lambda run: (moment.order(run.ended or ""), run.id)):
         one = {"procedure": run.procedure, "run": run.id, "ended": run.ended, "outcome": run.phase}
         made.setdefault(run.tube, []).append(one)
-    return {tube: found[-EARLIER:] for tube, found in made.items()}
+    return {tube: finished[-EARLIER:] for tube, finished in made.items()}

@@ -23,6 +23,22 @@ def read(value: str) -> dt.datetime:
     return made.astimezone(dt.UTC)
 
 
+def order(value: str) -> dt.datetime:
+    """What to sort by where times of several tablets stand side by side; text that is no time comes first."""
+    try:
+        return read(value)
+    except ValueError:
+        return dt.datetime.min.replace(tzinfo=dt.UTC)
+
+
+def shown(value: str) -> str:
+    """A stored time as a person reads it: "31 Jul 2026, 12:00 UTC". Text that is no time stays as it is."""
+    try:
+        return f"{read(value):%-d %b %Y, %H:%M} UTC"
+    except ValueError:
+        return value
+
+
 def fresh(prefix: str) -> str:
     """A name that nothing else has: the prefix and 16 random characters."""
     return f"{prefix}-{secrets.token_hex(8)}"

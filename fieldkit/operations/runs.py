@@ -9,7 +9,7 @@ from typing import Any
 from sqlalchemy import select
 
 from fieldkit.errors import Refusal
-from fieldkit.operations import procedures, records
+from fieldkit.operations import moment, procedures, records
 from fieldkit.run import events, state
 from fieldkit.run.events import Event
 from fieldkit.sheet.model import Sheet
@@ -124,8 +124,8 @@ class Line:
 
 def everything() -> list[Line]:
     """Every run that has begun to arrive, latest start first."""
-    query = select(Run, Chain).join(Chain, (Chain.run == Run.id) & (Chain.id == Run.chain)).order_by(Run.started.desc())
-    return [
+    query = select(Run, Chain).join(Chain, (Chain.run == Run.id) & (Chain.id == Run.chain))
+    found = [
         Line(
             row.id,
             row.procedure,
@@ -141,6 +141,7 @@ def everything() -> list[Line]:
         )
         for row, chain in db.session.execute(query)
     ]
+    return sorted(found, key=lambda line: (moment.order(line.started), line.run), reverse=True)
 
 
 def ended_body(run: Run) -> dict[str, Any] | None:

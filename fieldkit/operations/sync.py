@@ -3,7 +3,7 @@
 An event joins its chain when it is the next one and its `prev` is the head. One that came too early waits in `pending`;
 one that cannot be accepted is kept with the reason and shown. The same key with other bytes is a fork: both are kept
 and an administrator is told. Signatures are checked before the transaction begins, so that it stays short.
-Not here: the wire (fieldkit.web.sync), and when a run becomes a record (records.py).
+Not here: the wire (fieldkit.web.sync), what is kept of a run beside its events (derived.py), records (records.py).
 """
 
 from __future__ import annotations
@@ -16,23 +16,14 @@ from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from fieldkit.errors import Refusal
-from fieldkit.operations import moment, notices, pictures, records, settings, signatures
+from fieldkit.operations import derived, moment, notices, pictures, records, settings, signatures
 from fieldkit.operations.devices import Tablet
 from fieldkit.operations.signatures import Checked
 from fieldkit.operations.station import Station
 from fieldkit.run import events
 from fieldkit.run.events import Event
 from fieldkit.store.db import db, writing
-from fieldkit.store.tables import (
-    Chain,
-    EventRow,
-    KeptEvent,
-    PendingEvent,
-    Receipt,
-    Run,
-    RunPicture,
-    SignatureRow,
-)
+from fieldkit.store.tables import Chain, EventRow, KeptEvent, PendingEvent, Receipt, Run, RunPicture
 from fieldkit.trust import jws, keys, receipts
 
 #: codes that mean somebody's bytes are not what they were: shown to an administrator
@@ -248,7 +239,7 @@ def _join(work: _Work, one: Arrived) -> bool:
     )
     if one.sha256 in work.known_kept:
         _settle_kept(work, one)
-    _derive(work, event)
+    derived.note(work.session, work.station, event, work.checked.get(event.sha256))
     return True
 
 
@@ -268,67 +259,10 @@ def _begin(work: _Work, event: Event) -> Kept | None:
         return Kept(
             0, "another-chain", "This run is recorded in another chain here already. This one is kept and shown."
         )
-    work.session.add(
-        Run(
-            id=work.run,
-            chain=work.chain,
-            device=work.tablet.id,
-            sheet=body.sheet,
-            procedure=body.procedure,
-            edition=body.edition,
-            site=body.site,
-            cabinet=body.cabinet,
-            tube=body.tube,
-            recorder=event.head.by,
-            started=event.head.at.wall,
-            rehearsal=body.rehearsal,
-        )
-    )
+    derived.begin(work.session, event, work.tablet.id)
     work.row = Chain(run=work.run, id=work.chain, device=work.tablet.id, seq=-1, head=body.sheet)
     work.session.add(work.row)
     return None
-
-
-def _derive(work: _Work, event: Event) -> None:
-    """Keep what is known of the run beside it."""
-    kind, body, seq = event.head.kind, event.body, event.head.seq
-    if kind not in ("pictured", "ended", "voided", "reopened", "person-changed", "signed"):
-        return
-    work.session.flush()
-    run = work.session.get_one(Run, work.run)
-    if kind == "pictured":
-        if work.session.get(RunPicture, (work.run, body.sha256)) is None:
-            work.session.add(RunPicture(run=work.run, sha256=body.sha256, seq=seq))
-    elif kind in ("ended", "voided"):
-        run.phase = "voided" if kind == "voided" else body.outcome
-        run.ended, run.ended_seq = event.head.at.wall, seq
-    elif kind == "reopened":
-        run.signed_seq = None
-    elif kind == "person-changed":
-        run.recorder = body.to
-    elif kind == "signed":
-        _put_signature(work, run, event)
-
-
-def _put_signature(work: _Work, run: Run, event: Event) -> None:
-    body, seq = event.body, event.head.seq
-    found = work.checked.get(event.sha256) or signatures.check(work.station, event, run.sheet)
-    row = SignatureRow(
-        run=work.run,
-        chain=work.chain,
-        seq=seq,
-        person=body.person,
-        meaning=body.meaning,
-        kid=found.kid,
-        holds=found.holds,
-        says=found.says,
-    )
-    work.session.add(row)
-    if not found.holds:
-        says = f"The signature of {body.person} in event {seq} does not hold: {found.says}"
-        notices.add(work.session, "signature", says, work.run)
-    if body.meaning == "performed" and run.ended_seq is not None and body.person == run.recorder:
-        run.signed_seq = seq
 
 
 def _keep(work: _Work, one: Arrived, code: str, says: str) -> None:

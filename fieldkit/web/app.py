@@ -15,7 +15,7 @@ from flask_wtf.csrf import CSRFProtect
 from jinja2 import StrictUndefined
 
 from fieldkit import __version__, files
-from fieldkit.operations import settings, station
+from fieldkit.operations import moment, settings, station
 from fieldkit.operations.station import Station
 from fieldkit.store import db, fences, migrate
 from fieldkit.web import assets, errors, security, sessions
@@ -42,6 +42,7 @@ def create_app(
     app = Flask("fieldkit", static_folder=None, template_folder=str(files.folder("templates")))
     app.testing = testing
     app.jinja_env.undefined = StrictUndefined
+    app.jinja_env.filters["when"] = moment.shown
     app.jinja_env.trim_blocks = app.jinja_env.lstrip_blocks = True
     app.config.update(
         SECRET_KEY=held.secret.decode(),

@@ -23,7 +23,7 @@ blueprint = Blueprint("tablet", __name__)
 
 PAGE = "/app/"
 #: static files that only the desk uses
-DESK = ("desk/", "css/desk")
+DESK = ("desk/", "css/desk", "css/admin", "css/review", "css/print")
 #: what a tablet's page may be read as, but never loads
 NOT_LOADED = (".txt",)
 #: a worker that goes away and takes its caches with it; what a person recorded (IndexedDB, OPFS) stays

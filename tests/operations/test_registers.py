@@ -219,6 +219,21 @@ def test_locks_and_earths_outlive_the_run_and_the_next_one_starts_from_them(app,
         assert [one["point"] for one in found.locks] == ["Q2"] and found.earths == []
 
 
+def test_the_order_of_runs_is_that_of_the_moments_whatever_the_offset_or_name(app, tablet, sheet_sha):
+    """16:00+05:00 is earlier than 12:00Z, though its text sorts later."""
+    for run_id, wall, locks in (
+        ("260731-B2-ZLATE", "2026-07-31T12:00:00+00:00", ()),
+        ("260731-B2-AEARL", "2026-07-31T16:00:00+05:00", (lock("Q1", "7"),)),
+    ):
+        run = RunOnTablet(tablet, run_id, sheet_sha)
+        run.start(locks=[lock("Q1", "7")] if not locks else [])
+        run.texts[0] = run.texts[0].replace("2026-07-31T12:00:00+00:00", wall, 1)
+        run.end(locks=locks)
+        send(tablet, run)
+    with app.app_context():
+        assert board.boards(["B2"])["B2"].locks == []
+
+
 def test_an_open_runs_locks_are_on_the_board(app, tablet, sheet_sha):
     run = RunOnTablet(tablet, "260731-B2-L3", sheet_sha)
     run.start(locks=[lock("Q1", "7")])
