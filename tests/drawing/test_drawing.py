@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 import xml.etree.ElementTree as ET
+from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
@@ -16,7 +17,8 @@ from fieldkit.drawing.paint import PRINT
 ROOT = Path(__file__).parents[2]
 ALL = [(f.stem, v) for f in sorted((ROOT / "tests/vectors/drawing").glob("*.json")) for v in json.loads(f.read_text())]
 HEATER = {
-    "value": "6.48", "u": "0.03", "unit": "V", "low": "6.10", "high": "6.50", "caution_low": "6.17", "caution_high": "6.43",
+    "value": "6.48", "u": "0.03", "unit": "V", "low": "6.10", "high": "6.50", "caution_low": "6.17",
+    "caution_high": "6.43",
     "accept_low": "6.13", "accept_high": "6.47", "plate": "6.30", "verdict": "conditional pass",
 }  # fmt: skip
 
@@ -153,4 +155,4 @@ def test_balloons_never_cover_each_other_and_stay_on_the_drawing() -> None:
     lanes = [{"short": "Beam", "title": "beam", "spans": [{"at": 0, "state": "on"}]}]
     svg = drawing.timeline({"from": 0, "to": 3600, "lanes": lanes, "balls": balls, "height": 400})
     at = sorted(float(y) for y in re.findall(r'cy="([0-9.]+)" r="11.5"', svg))
-    assert len(at) == 8 and all(b - a >= 24 for a, b in zip(at, at[1:], strict=False)) and at[-1] + 12 <= 400
+    assert len(at) == 8 and all(b - a >= 24 for a, b in pairwise(at)) and at[-1] + 12 <= 400

@@ -54,8 +54,10 @@ def _steps() -> list[dict[str, Any]]:
         "typical": {"high": number("0.000003")},
     }  # fmt: skip
     prove = {
-        "control": "prove", "unit": VOLT, "tester": hv, "known_source": "proving unit KS-1", "known": {"low": number("450")},
-        "points": [{"name": "deck", "title": "Deck bus", "limits": {"high": number("50"), "high_name": "safe voltage"}}],
+        "control": "prove", "unit": VOLT, "tester": hv, "known_source": "proving unit KS-1",
+        "known": {"low": number("450")},
+        "points": [{"name": "deck", "title": "Deck bus",
+                    "limits": {"high": number("50"), "high_name": "safe voltage"}}],
         "resolution": "1",
     }  # fmt: skip
     power = {"control": "result", "unit": WATT, "resolution": "0.1", "formulas": ["twice"],
@@ -65,10 +67,12 @@ def _steps() -> list[dict[str, Any]]:
               "consequence": "It kills.", "avoid": ["Stay out."]}),
         _step("lock", 2, "Lock the beam supply", {"control": "lock", "point": "B2-Q1", "sources": ["beam_supply"]}),
         _step("prove", 3, "Prove the deck dead", prove),
-        _step("earth", 4, "Earth the deck", {"control": "earth", "stick": "E2", "point": "deck bus", "source": "beam_supply"}),
+        _step("earth", 4, "Earth the deck",
+              {"control": "earth", "stick": "E2", "point": "deck bus", "source": "beam_supply"}),
         _step("in", 5, "Hands in at the deck", {"control": "people", "place": "deck", "way": "in"}),
         _step("out", 6, "Everyone out", {"control": "people", "place": "deck", "way": "out"}),
-        _step("lift", 7, "Lift the earth", {"control": "lift", "stick": "E2", "point": "deck bus", "source": "beam_supply"}),
+        _step("lift", 7, "Lift the earth",
+              {"control": "lift", "stick": "E2", "point": "deck bus", "source": "beam_supply"}),
         _step("unlock", 8, "Take off the lock", {"control": "unlock", "point": "B2-Q1", "sources": ["beam_supply"]}),
         _step("which", 9, "Cold or stored", {"control": "choice", "options": [
               {"value": "cold", "label": "From cold"}, {"value": "stored", "label": "From store"}]}),
@@ -109,6 +113,10 @@ def _moves() -> list[dict[str, Any]]:
     return moves
 
 
+#: stands for the procedure that the sheet was compiled from
+YAML = b"procedure: played\nedition: 3\n"
+
+
 def sheet(**change: Any) -> Sheet:
     sources = [
         ("beam_supply", "beam supply", "Beam"),
@@ -117,8 +125,9 @@ def sheet(**change: Any) -> Sheet:
     ]
     data = {
         "procedure": "played", "edition": 3, "title": "Played procedure", "purpose": "To be tested.",
-        "source_sha256": "0" * 64, "tubes": ["inductive-output-tube"], "crew": 2,
-        "givens": [{"name": "heater_voltage", "origin": "tube", "kind": "number", "unit": VOLT, "meaning": "rated heater voltage"}],
+        "source_sha256": hashlib.sha256(YAML).hexdigest(), "tubes": ["inductive-output-tube"], "crew": 2,
+        "givens": [{"name": "heater_voltage", "origin": "tube", "kind": "number", "unit": VOLT,
+                    "meaning": "rated heater voltage"}],
         "sources": [{"name": n, "title": t, "short": s} for n, t, s in sources],
         "start": {n: {"state": "on" if n == "ion_pump" else "off"} for n, _, _ in sources},
         "ends": {}, "first": "caution", "steps": _steps(), "moves": _moves(), "counters": {},
@@ -132,27 +141,31 @@ def sheet(**change: Any) -> Sheet:
 
 
 PEOPLE = [
-    {"id": "p1", "name": "J. Vell", "roles": ["technician"]},
-    {"id": "p2", "name": "P. Arkle", "roles": ["technician"]},
-    {"id": "p3", "name": "S. Quill", "roles": ["supervisor"]},
-    {"id": "p4", "name": "K. Orme", "roles": ["supervisor"]},
+    {"id": "vell", "name": "J. Vell", "roles": ["technician"]},
+    {"id": "arkle", "name": "P. Arkle", "roles": ["technician"]},
+    {"id": "quill", "name": "S. Quill", "roles": ["supervisor"]},
+    {"id": "orme", "name": "K. Orme", "roles": ["supervisor"]},
 ]
 INSTRUMENTS = [
-    {"id": "DM-04", "reads": "heater volts", "unit": "V", "low": "0", "high": "20", "resolution": "0.01", "percent": "0.3",
-     "digits": "1", "calibrated_to": "2026-11-30", "certificate": "C-1"},
+    {"id": "DM-04", "reads": "heater volts", "unit": "V", "low": "0", "high": "20", "resolution": "0.01",
+     "percent": "0.3", "digits": "1", "calibrated_to": "2031-11-30", "certificate": "C-1"},
     {"id": "IP-2", "reads": "ion-pump current", "unit": "uA", "low": "0.1", "high": "500", "resolution": "0.1",
-     "percent": "3", "digits": "1", "calibrated_to": "2027-01-31", "certificate": "C-2"},
+     "percent": "3", "digits": "1", "calibrated_to": "2032-01-31", "certificate": "C-2"},
     {"id": "HV-2", "reads": "volts, hand", "unit": "V", "low": "1", "high": "999", "resolution": "1", "percent": "2",
-     "digits": "2", "calibrated_to": "2027-03-31", "certificate": "C-3"},
+     "digits": "2", "calibrated_to": "2032-03-31", "certificate": "C-3"},
 ]  # fmt: skip
 STARTED: dict[str, Any] = {
-    "procedure": "played", "edition": 3, "site": "skarrow-fell", "site_name": "Skarrow Fell", "cabinet": "B2", "tube": "T-0417",
+    "procedure": "played", "edition": 3, "site": "skarrow-fell", "site_name": "Skarrow Fell", "cabinet": "B2",
+    "tube": "T-0417",
     "givens": {"heater_voltage": {"texts": ["6.30"], "unit": "V", "source": "nameplate"}},
-    "meters": {"heater_volts": "DM-04", "ion_amps": "IP-2"}, "instruments": INSTRUMENTS, "places": {"deck": ["beam_supply"]},
-    "people": PEOPLE, "present": ["p1", "p2"], "kit": "k" * 64,
+    "meters": {"heater_volts": "DM-04", "ion_amps": "IP-2"}, "instruments": INSTRUMENTS,
+    "places": {"deck": ["beam_supply"]},
+    "people": PEOPLE, "present": ["vell", "arkle"], "kit": "k" * 64,
     "tablet": {"device": "tab3", "name": "tablet 3", "installed": True, "persisted": True, "probe": "ok"},
 }  # fmt: skip
 PICTURE = hashlib.sha256(b"picture").hexdigest()
+
+BEGINS = dt.datetime(2026, 7, 31, 12, 58, tzinfo=dt.timezone(dt.timedelta(hours=1)))
 
 #: signs an event: (person id, claims) -> compact JWS
 Signer = Callable[[str, dict[str, Any]], str]
@@ -168,14 +181,20 @@ class Pen:
     """Writes the events of one run, one after another, on a clock that the test moves."""
 
     def __init__(
-        self, on: Sheet, sign: Signer = unsigned, run: str = "0731-B2-2", device: str = "tab3", **started: Any
-    ):
-        self.sheet, self.sign, self.by = on, sign, "p1"
+        self,
+        on: Sheet,
+        sign: Signer = unsigned,
+        run: str = "0731-B2-2",
+        chain: str = "tab3.1",
+        begins: dt.datetime = BEGINS,
+        **started: Any,
+    ) -> None:
+        self.sheet, self.sign, self.by = on, sign, "vell"
         self.digest = model.digest(model.to_bytes(on))
-        self.state = state.new(on, run, f"{device}.1", self.digest)
+        self.state = state.new(on, run, chain, self.digest)
         self.texts: list[str] = []
         self.events: list[Event] = []
-        self.wall = dt.datetime(2026, 7, 31, 12, 58, tzinfo=dt.timezone(dt.timedelta(hours=1)))
+        self.wall = begins
         self.mono = 1_000_000
         self.write("run-started", {**STARTED, "sheet": self.digest, **started})
         self.write(
@@ -204,26 +223,28 @@ class Pen:
     def signed(self, person: str, meaning: str) -> Pen:
         names = {p["id"]: p["name"] for p in PEOPLE}
         claims = {
-            "run": self.state["run"], "chain": self.state["chain"], "seq": self.state["seq"], "head": self.state["head"],
+            "run": self.state["run"], "chain": self.state["chain"], "seq": self.state["seq"],
+            "head": self.state["head"],
             "sheet": self.digest, "meaning": meaning, "person": person, "name": names[person],
-            "time": self.wall.isoformat(timespec="seconds"), "statement": f"I {meaning} this.", "pictures": [PICTURE],
+            "time": self.wall.isoformat(timespec="seconds"), "statement": f"I {meaning} this.",
+            "pictures": [e.body.sha256 for e in self.events if e.head.kind == "pictured"],
         }  # fmt: skip
         return self.write("signed", {"person": person, "meaning": meaning, "jws": self.sign(person, claims)})
 
     # ---- stretches of the run ----
 
     def isolate(self) -> Pen:
-        self.answer("acknowledged", "caution", heard=["p1", "p2"])
-        self.answer("locked", "lock", point="B2-Q1", lock="41", tag="tag 7", holder="p1")
+        self.answer("acknowledged", "caution", heard=["vell", "arkle"])
+        self.answer("locked", "lock", point="B2-Q1", lock="41", tag="tag 7", holder="vell")
         points = [{"name": "deck", "text": "3"}]
         self.answer("proved", "prove", instrument="HV-2", before="502", points=points, after="501")
         return self.answer("earthed", "earth", stick="E2", point="deck bus")
 
     def release(self) -> Pen:
-        self.answer("people-counted", "in", place="deck", way="in", names=["p1"])
-        self.answer("people-counted", "out", place="deck", way="out", names=["p1"])
+        self.answer("people-counted", "in", place="deck", way="in", names=["vell"])
+        self.answer("people-counted", "out", place="deck", way="out", names=["vell"])
         self.answer("lifted", "lift", stick="E2", point="deck bus")
-        return self.answer("unlocked", "unlock", point="B2-Q1", lock="41", who="p1").signed("p1", "unlocked")
+        return self.answer("unlocked", "unlock", point="B2-Q1", lock="41", who="vell").signed("vell", "unlocked")
 
     def warm(self, seconds: float = 930) -> Pen:
         self.answer("chosen", "which", value="cold").answer("confirmed", "heat").wait(seconds)
@@ -238,7 +259,7 @@ class Pen:
 
     def finish(self, power: str = "63", picture: str = PICTURE) -> Pen:
         self.answer("worked-out", "power", value=power)
-        self.answer("released", "hold", who="p2", statement="Doors are shut.").signed("p2", "released")
+        self.answer("released", "hold", who="arkle", statement="Doors are shut.").signed("arkle", "released")
         shot = {"sha256": picture, "media": "image/jpeg", "width": 640, "height": 480, "size": 9000}
         self.answer("pictured", "picture", **shot, note="panel")
         self.answer("remarked", "remark", text="Nothing odd.")
@@ -247,24 +268,25 @@ class Pen:
     def end(self, outcome: str = "done", reason: str = "", **more: Any) -> Pen:
         states = {"beam_supply": "off", "heater": "on", "ion_pump": "on"}
         self.write("ended", {"outcome": outcome, "reason": reason, "states": states, "locks": [], "earths": [], **more})
-        return self.signed("p1", "performed")
+        return self.signed("vell", "performed")
 
 
-def clean() -> Pen:
+def clean(pen: Pen | None = None, picture: str = PICTURE) -> Pen:
     """A run with nothing wrong."""
-    return Pen(sheet()).isolate().release().warm().read("heater", "6.30").read("ion", "0.4").finish()
+    pen = (pen or Pen(sheet())).isolate().release().warm()
+    return pen.read("heater", "6.30").read("ion", "0.4").finish(picture=picture)
 
 
-def eventful() -> Pen:
+def eventful(pen: Pen | None = None, picture: str = PICTURE) -> Pen:
     """A run with a failing reading taken again, a correction, a deviation, a conditional pass and a changed clock."""
-    pen = Pen(sheet()).isolate().release().warm()
+    pen = (pen or Pen(sheet())).isolate().release().warm()
     pen.read("heater", "6.62", None).went("heater", "again", "Meter not settled.").read("heater", "6.48")
     pen.write("clock-changed", {"wall_s": "212.000", "mono_s": "20.000"})
     pen.read("ion", "52", None)
     pen.write(
         "corrected", {"seq": pen.state["seq"], "field": "text", "text": "5.2", "reason": "point in the wrong place"}
     )
-    pen.went("ion", "deviate", "Maker's letter allows 6.", authority="p3", under="maker's letter").signed(
-        "p3", "allowed"
+    pen.went("ion", "deviate", "Maker's letter allows 6.", authority="quill", under="maker's letter").signed(
+        "quill", "allowed"
     )
-    return pen.finish(power="64.8")
+    return pen.finish(power="64.8", picture=picture)
