@@ -9,7 +9,7 @@
  */
 
 import { decide } from "../core/decide.js";
-import { fold } from "../core/state.js";
+import * as folding from "../core/state.js";
 import * as begin from "./begin.js";
 import { randomId } from "./bytes.js";
 import * as clockwatch from "./clockwatch.js";
@@ -155,7 +155,9 @@ export async function startRun({ procedure, cabinet, tube, present, recorder }) 
   const day = `${at.wall.slice(2, 4)}${at.wall.slice(5, 7)}${at.wall.slice(8, 10)}-${cabinet}-`;
   const run = `${day}${rows.filter((row) => row.run.startsWith(day)).length + 1}${randomId(4)}`;
   const chain = `${device.device}.${device.epoch}`;
-  const answer = decide(chosen.sheet, null, { do: "start", run, chain, recorder, ...body }, at);
+  const { confirmed } = kit.registers.tubes[tube];
+  const command = { do: "run-started", by: recorder, facts: { confirmed }, ...body };
+  const answer = decide(chosen.sheet, folding.make(chosen.sheet, run, chain, chosen.sha256), command, at);
   if ("refused" in answer) throw new Refused(answer.refused.code, answer.refused.says);
   /** @type {RunRow} */
   const row = {
@@ -163,10 +165,8 @@ export async function startRun({ procedure, cabinet, tube, present, recorder }) 
     phase: "new", seq: -1, head: chosen.sha256, acked: null, kept: [], trouble: null, found: null, broken: "",
   };
   const pen = journal.writer(here, row);
-  /** @type {import("../core/events.js").Event[]} */
-  const made = [];
-  for (const { kind, body: part } of answer.events) {
-    made.push(await pen.append(kind, part, recorder, clockwatch.now(), app, (event) => fold(chosen.sheet, [...made, event]).phase));
+  for (const { kind, body: first } of answer.events) {
+    await pen.append(kind, first, recorder, clockwatch.now(), app, (event) => folding.fold(chosen.sheet, [event]).phase);
   }
   loop?.soon();
   return { run };

@@ -11,7 +11,7 @@ import { Refused } from "./refusal.js";
 /**
  * The payload of a receipt for events. Throws Refused bad-receipt or what jws.verify throws.
  * @param {string} token
- * @param {import('./jws.js').PublicJwk} pinned
+ * @param {import("./jws.js").PublicJwk} pinned
  * @param {{store: string, run: string, chain: string}} expected
  * @param {(seq: number) => Promise<string | null>} hashOf the SHA-256 of the local event with that seq
  * @returns {Promise<{store: string, run: string, chain: string, seq: number, head: string, time: string}>}
@@ -29,10 +29,10 @@ export async function check(token, pinned, expected, hashOf) {
 
 /**
  * The payload of a receipt for a picture.
- * @param {string} token @param {import('./jws.js').PublicJwk} pinned @param {string} sha
+ * @param {string} token @param {import("./jws.js").PublicJwk} pinned @param {string} sha
  */
 export async function checkPicture(token, pinned, sha) {
   const { payload } = await verify(token, await publicKey(pinned), "fieldkit-receipt");
-  if (payload.picture !== sha) throw new Refused("bad-receipt", "The receipt is for another picture than the one that was sent.");
+  if (payload.sha256 !== sha) throw new Refused("bad-receipt", "The receipt is for another picture than the one that was sent.");
   return payload;
 }

@@ -10,7 +10,7 @@
 
 import { decide } from "../core/decide.js";
 import { progress } from "../core/progress.js";
-import { fold } from "../core/state.js";
+import * as folding from "../core/state.js";
 import * as clockwatch from "./clockwatch.js";
 import * as journal from "./journal.js";
 import * as keys from "./keys.js";
@@ -48,8 +48,8 @@ function refusal(bad) {
 export async function open(store, start, sheet, app, hooks) {
   const loaded = await journal.load(store, start);
   const pen = journal.writer(store, { ...start, broken: loaded.broken });
-  let events = loaded.events;
-  let state = fold(sheet, events);
+  const foldAll = (/** @type {Event[]} */ events) => events.reduce(folding.apply, folding.begin(sheet));
+  let folded = foldAll(loaded.events);
   let mine = false;
   let closed = false;
   /** @type {((what: any) => void)[]} */
@@ -58,7 +58,7 @@ export async function open(store, start, sheet, app, hooks) {
   let line = Promise.resolve();
 
   const why = () => pen.broken || (mine ? "" : "This run is open in another window of this tablet. Here it can only be read.");
-  const change = (/** @type {any} */ more = {}) => listeners.forEach((cb) => cb({ state, readonly: why() !== "", says: why(), ...more }));
+  const change = (/** @type {any} */ more = {}) => listeners.forEach((cb) => cb({ state: folded.state, readonly: why() !== "", says: why(), ...more }));
 
   /** @template T @param {() => Promise<T>} work @returns {Promise<T>} */
   function inLine(work) {
@@ -70,41 +70,40 @@ export async function open(store, start, sheet, app, hooks) {
   /** @param {string} kind @param {any} body @param {string} by */
   async function append(kind, body, by) {
     if (why()) throw new Refused("read-only", why());
-    let next = state;
+    let next = folded;
     const event = await pen.append(kind, body, by, clockwatch.now(), app, (made) => {
-      next = fold(sheet, [...events, made]);
-      return next.phase;
+      next = folding.apply(folded, made);
+      return next.state.phase;
     });
-    events = [...events, event];
-    state = next;
+    folded = next;
     if (kind === "person-changed") keys.forget(body.to);
     return event;
   }
 
   /** @param {string} person @param {string} meaning @param {string} statement */
   async function appendSignature(person, meaning, statement) {
-    const { people } = state.started;
+    const { people } = folded.state.started;
     const payload = {
-      run: state.run,
-      chain: state.chain,
-      seq: state.seq,
-      head: state.head,
-      sheet: state.sheet,
+      run: folded.state.run,
+      chain: folded.state.chain,
+      seq: folded.state.seq,
+      head: folded.state.head,
+      sheet: folded.state.sheet,
       meaning,
       person,
       name: people.find((/** @type {any} */ p) => p.id === person)?.name ?? person,
       time: clockwatch.now().wall,
       statement,
-      pictures: events.filter((e) => e.kind === "pictured").map((e) => e.body.sha256),
+      pictures: folded.events.filter((e) => e.kind === "pictured").map((e) => e.body.sha256),
     };
     await append("signed", { person, meaning, jws: await keys.signAs(store, person, payload) }, person);
   }
 
   /**
    * What decide gave, on disk event by event. An event that speaks for a person needs their fresh passphrase.
-   * @param {{kind: string, body: any}[]} made @param {string} [passphrase] @param {string} [statement]
+   * @param {{kind: string, body: any}[]} made @param {{by?: string, passphrase?: string, statement?: string}} how
    */
-  async function record(made, passphrase, statement) {
+  async function record(made, { by, passphrase, statement }) {
     const speakers = made.map(({ kind, body }) => SPEAKS_FOR[kind]?.(body) ?? null);
     for (const speaker of speakers) {
       if (!speaker) continue;
@@ -115,7 +114,7 @@ export async function open(store, start, sheet, app, hooks) {
       await keys.maySign(store, speaker.person);
     }
     for (const [n, { kind, body }] of made.entries()) {
-      await append(kind, body, state.recorder);
+      await append(kind, body, by ?? folded.state.recorder);
       const speaker = speakers[n];
       if (speaker) await appendSignature(speaker.person, speaker.meaning, statement ?? body.statement ?? body.reason ?? "");
     }
@@ -126,11 +125,11 @@ export async function open(store, start, sheet, app, hooks) {
     return inLine(async () => {
       try {
         if (why()) throw new Refused("read-only", why());
-        const words = asked.do === "release" || statement === undefined ? { ...asked, ...(statement === undefined ? {} : { statement }) } : asked;
-        const answer = decide(sheet, state, words, clockwatch.now());
+        const words = asked.do === "released" || statement === undefined ? { ...asked, ...(statement === undefined ? {} : { statement }) } : asked;
+        const answer = decide(folded.ctx, folded.state, words, clockwatch.now());
         if ("refused" in answer) return answer;
-        await record(answer.events, passphrase, statement);
-        return { ok: true, state };
+        await record(answer.events, { by: asked.by, passphrase, statement });
+        return { ok: true, state: folded.state };
       } catch (bad) {
         return refusal(bad);
       } finally {
@@ -150,35 +149,36 @@ export async function open(store, start, sheet, app, hooks) {
       if (why()) throw new Refused("read-only", why());
       // Only the recorder goes on under a passphrase entered up to ten minutes ago; everybody else enters theirs now.
       if (passphrase) await keys.unlock(store, person, passphrase);
-      else if (person !== state.recorder && !keys.isFresh(person, FRESH_S)) throw new Refused("locked-key", "Enter the passphrase to sign.");
-      const last = state.signatures.at(-1);
+      else if (person !== folded.state.recorder && !keys.isFresh(person, FRESH_S)) throw new Refused("locked-key", "Enter the passphrase to sign.");
+      const last = folded.state.signatures.at(-1);
       // record() has already signed for the event that speaks for this person; a second signature would say nothing new.
-      const already = last && last.seq === state.seq && last.person === person && last.meaning === meaning;
+      const already = last && last.seq === folded.state.seq && last.person === person && last.meaning === meaning;
       if (!already) await appendSignature(person, meaning, statement);
       change();
       hooks.saved();
-      return { ok: true, state };
+      return { ok: true, state: folded.state };
     });
   }
 
   /** What a gap or a loss leaves to be said before anything else. */
   async function catchUp() {
-    if (pen.broken || STILL.includes(state.phase)) return;
+    if (pen.broken || STILL.includes(folded.state.phase)) return;
     const { found } = pen.row;
-    if (found) await append("storage-found", { lost: found.lost, restored: found.restored, note: "restored from the second copy on the tablet" }, state.recorder);
     const at = clockwatch.now();
-    if (state.clock && state.clock.boot !== at.boot) {
-      const wall = (Date.parse(at.wall) - Date.parse(state.clock.wall)) / 1000;
-      await append("resumed", { cause: "reload", wall_s: wall.toFixed(3), mono_s: null }, state.recorder);
+    if (folded.state.clock && folded.state.clock.boot !== at.boot) {
+      const wall = (Date.parse(at.wall) - Date.parse(folded.state.clock.wall)) / 1000;
+      await append("resumed", { cause: "reload", wall_s: wall.toFixed(3), mono_s: null }, folded.state.recorder);
     }
+    // After it, because the gap is counted from the last event before.
+    if (found) await append("storage-found", { lost: found.lost, restored: found.restored, note: "restored from the second copy on the tablet" }, folded.state.recorder);
   }
 
   /** @param {clockwatch.Seen} what */
   function clockSaid({ kind, wall_s, mono_s }) {
     void inLine(async () => {
-      if (why() || STILL.includes(state.phase)) return;
-      if (kind === "clock-changed") await append(kind, { wall_s, mono_s }, state.recorder);
-      else await append("resumed", { cause: "sleep", wall_s, mono_s }, state.recorder);
+      if (why() || STILL.includes(folded.state.phase)) return;
+      if (kind === "clock-changed") await append(kind, { wall_s, mono_s }, folded.state.recorder);
+      else await append("resumed", { cause: "sleep", wall_s, mono_s }, folded.state.recorder);
     })
       .catch((bad) => change({ trouble: told(bad) }))
       .finally(() => change());
@@ -191,8 +191,7 @@ export async function open(store, start, sheet, app, hooks) {
     letGo = journal.hold(start.run, resolve, () => {
       void inLine(async () => {
         await pen.refresh();
-        events = (await journal.load(store, pen.row)).events;
-        state = fold(sheet, events);
+        folded = foldAll((await journal.load(store, pen.row)).events);
         mine = true;
         await catchUp();
       })
@@ -206,10 +205,10 @@ export async function open(store, start, sheet, app, hooks) {
   return {
     sheet,
     get state() {
-      return state;
+      return folded.state;
     },
     get events() {
-      return events;
+      return folded.events;
     },
     get readonly() {
       return why() !== "";
@@ -222,7 +221,7 @@ export async function open(store, start, sheet, app, hooks) {
     },
     command,
     sign,
-    progress: () => progress(sheet, state, clockwatch.now()),
+    progress: () => progress(folded.ctx, folded.state, clockwatch.now()),
     now: () => clockwatch.now(),
     /** @param {(what: any) => void} cb */
     onchange(cb) {

@@ -8,7 +8,7 @@
  */
 
 import { sha256, text, utf8 } from "./bytes.js";
-import { ask, all, get } from "./db.js";
+import { all, ask, get, put } from "./db.js";
 import * as opfs from "./opfs.js";
 
 /** @typedef {import('./db.js').Store} Store */
@@ -218,7 +218,13 @@ async function mend(store, mine, theirs, heads, rows) {
   const says = [];
   let restored = 0;
   let lost = 0;
-  if (!mine && theirs) await kitIn(store);
+  // Until the tablet is enrolled again this is found at every start; the kit is brought back, and the loss noted, once.
+  const before = await get(store, "meta", "restored");
+  const first = before !== theirs?.epoch;
+  if (!mine && theirs && first) {
+    await kitIn(store);
+    await put(store, "meta", theirs.epoch, "restored");
+  }
   for (const head of heads) {
     const row = rows.get(head.run);
     if (row && (row.chain !== head.chain || row.seq >= head.seq)) continue;
@@ -238,6 +244,6 @@ async function mend(store, mine, theirs, heads, rows) {
   else if (restored || lost) says.unshift("The storage of this tablet was short of events.");
   if (restored) says.push(`${restored} event(s) were restored from the second copy.`);
   const storage = lost ? "lost" : restored || (!mine && theirs) ? "damaged" : "ok";
-  if (storage !== "ok") await incident(store, says.join(" "));
+  if (lost || restored || (storage !== "ok" && first)) await incident(store, says.join(" "));
   return { storage, says };
 }

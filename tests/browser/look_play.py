@@ -7,7 +7,7 @@ the signatures' bytes are made up here. `Play(procedure, ...).to(step)` gives th
 from __future__ import annotations
 
 import json
-from datetime import UTC, datetime, timedelta, timezone
+from datetime import datetime, timedelta, timezone
 from pathlib import Path
 from typing import Any
 
@@ -23,12 +23,16 @@ ZONE = timezone(timedelta(hours=1))
 START = datetime(2026, 7, 31, 12, 58, 4, tzinfo=ZONE)
 STATION: dict[str, Any] = json.loads((ROOT / "fieldkit/demo/station.json").read_text(encoding="utf-8"))
 _SHEETS: dict[str, Any] = {}
+#: readings that the middle of the limits would not give
+TEXTS = {"sticks_home": "3", "plugs_home": "4", "sticks_back": "3", "ready_focus_volts": "26.0", "ready_focus": "22.60", "stop_kv": "18.0", "kv_10s": "5.2"}
 
 
 def sheet_of(procedure: str) -> tuple[dict[str, Any], str]:
     """The compiled sheet as plain values, and its hash."""
     if procedure not in _SHEETS:
-        made, problems = compiling.compile_file(ROOT / f"procedures/{procedure}.yaml", library.load(ROOT / "procedures/formulas"))
+        made, problems = compiling.compile_file(
+            ROOT / f"procedures/{procedure}.yaml", library.load(ROOT / "procedures/formulas")
+        )
         assert made is not None, problems
         data = model.to_bytes(made)
         _SHEETS[procedure] = json.loads(data), model.digest(data)
@@ -38,18 +42,31 @@ def sheet_of(procedure: str) -> tuple[dict[str, Any], str]:
 class Play:
     """One run that goes on as long as it is asked to."""
 
-    def __init__(self, procedure: str, cabinet: str = "B2", tube: str = "T-0417", present: tuple[str, ...] = ("vell", "arkle")) -> None:
+    def __init__(
+        self, procedure: str, cabinet: str = "B2", tube: str = "T-0417", present: tuple[str, ...] = ("vell", "arkle")
+    ) -> None:
         self.sheet, self.sha256 = sheet_of(procedure)
         self.at = START
         self.texts: list[str] = []
         self.run = folding.begin(self.sheet)
         self.state = folding.new(self.sheet, f"0731-{cabinet}-2", "d1.e1", self.sha256)
         self.recorder = present[0]
-        self.do({"do": "run-started", "by": present[0], "facts": {"confirmed": True}, **self._started(cabinet, tube, present)})
+        self.do(
+            {
+                "do": "run-started",
+                "by": present[0],
+                "facts": {"confirmed": True},
+                **self._started(cabinet, tube, present),
+            }
+        )
 
     def _started(self, cabinet: str, tube: str, present: tuple[str, ...]) -> dict[str, Any]:
         at, site = STATION["cabinets"][cabinet], STATION["cabinets"][cabinet]["site"]
-        held = {"tube": STATION["tubes"][tube]["givens"], "cabinet": at["givens"], "site": STATION["sites"][site]["givens"]}
+        held = {
+            "tube": STATION["tubes"][tube]["givens"],
+            "cabinet": at["givens"],
+            "site": STATION["sites"][site]["givens"],
+        }
         locked = [s for s, d in self.sheet["start"].items() if d["state"] == "locked"]
         locks = []
         for number, source in enumerate(locked, 41):
@@ -57,7 +74,10 @@ class Play:
             locks.append({"point": point, "sources": [source], "lock": str(number), "tag": f"T{number}", "holder": present[0],
                           "holder_name": STATION["people"][present[0]]["name"], "run": "0730-B2-1", "since": "2026-07-30T16:02:11.000+01:00"})  # fmt: skip
         ended = (START - timedelta(hours=2)).isoformat(timespec="milliseconds")
-        earlier = [{"procedure": a["procedure"], "run": "0731-B2-1", "ended": ended, "outcome": "done"} for a in self.sheet["after"]]
+        earlier = [
+            {"procedure": a["procedure"], "run": "0731-B2-1", "ended": ended, "outcome": "done"}
+            for a in self.sheet["after"]
+        ]
         return {
             "sheet": self.sha256, "procedure": self.sheet["procedure"], "edition": self.sheet["edition"], "site": site,
             "site_name": STATION["sites"][site]["name"], "cabinet": cabinet, "tube": tube,
@@ -110,7 +130,7 @@ class Play:
         for _ in range(400):
             if self.state["node"] == step and not self.state["pending"]:
                 return self
-            self._answer(picks or {}, texts or {})
+            self._answer(picks or {}, {**TEXTS, **(texts or {})})
         raise AssertionError(f"{step} was not reached; the run stands at {self.state['node']}")
 
     def _answer(self, picks: dict[str, str], texts: dict[str, str]) -> None:
@@ -136,9 +156,19 @@ class Play:
             case "number":
                 return {"do": "read", "text": texts.get(ident) or plausible(told)}
             case "prove":
-                return {"do": "proved", "before": "502", "after": "501", "points": [{"name": p["name"], "text": "3"} for p in control["points"]]}
+                return {
+                    "do": "proved",
+                    "before": "502",
+                    "after": "501",
+                    "points": [{"name": p["name"], "text": "3"} for p in control["points"]],
+                }
             case "lock":
-                return {"do": "locked", "lock": f"5{step['number']}", "tag": f"T5{step['number']}", "holder": self.state["recorder"]}
+                return {
+                    "do": "locked",
+                    "lock": f"5{step['number']}",
+                    "tag": f"T5{step['number']}",
+                    "holder": self.state["recorder"],
+                }
             case "unlock":
                 lock = next(one for one in self.state["locks"] if one["point"] == control["point"])
                 return {"do": "unlocked", "lock": lock["lock"], "who": lock["holder"]}
@@ -147,13 +177,28 @@ class Play:
             case "hold":
                 return {"do": "released", "who": other}
             case "picture":
-                return {"do": "pictured", "sha256": "0" * 64, "media": "image/jpeg", "width": 1600, "height": 1200, "size": 214000}
+                return {
+                    "do": "pictured",
+                    "sha256": "0" * 64,
+                    "media": "image/jpeg",
+                    "width": 1600,
+                    "height": 1200,
+                    "size": 214000,
+                }
             case "remark":
                 return {"do": "remarked", "text": "Next: hv-bring-up. P. Arkle watches."}
             case "people":
                 inside = self.state["hands"].get(control["place"], [])
                 return {"do": "people-counted", "names": ["J. Vell"] if control["way"] == "in" else inside}
-        return {"do": {"confirm": "confirmed", "earth": "earthed", "lift": "lifted", "result": "worked-out", "wait": "waited"}[control["control"]]}
+        return {
+            "do": {
+                "confirm": "confirmed",
+                "earth": "earthed",
+                "lift": "lifted",
+                "result": "worked-out",
+                "wait": "waited",
+            }[control["control"]]
+        }
 
 
 def plausible(told: dict[str, Any]) -> str:
@@ -175,6 +220,3 @@ def plausible(told: dict[str, Any]) -> str:
     size = float(step) or 1.0
     return f"{round(wanted / size) * size:.{digits}f}"
 
-
-def utc_now() -> str:
-    return datetime.now(UTC).isoformat(timespec="milliseconds")

@@ -25,11 +25,28 @@ ROOT = HERE.parents[1]
 
 def held(plays: list[Play], **more: Any) -> dict[str, Any]:
     """What `host.open` says on a tablet that is ready for work."""
-    people = [{"id": k, "name": p["name"], "roles": p["roles"], "enrolledHere": k != "orme", "enrolment": "issued" if k != "orme" else "none"} for k, p in STATION["people"].items()]
+    people = [
+        {
+            "id": k,
+            "name": p["name"],
+            "roles": p["roles"],
+            "enrolledHere": k != "orme",
+            "enrolment": "issued" if k != "orme" else "none",
+        }
+        for k, p in STATION["people"].items()
+    ]
     procedures = []
     for name in ("warm-up", "hv-bring-up"):
         sheet, sha = sheet_of(name)
-        procedures.append({"procedure": name, "edition": sheet["edition"], "title": sheet["title"], "sha256": sha, "sheet": {"crew": sheet["crew"], "alone": sheet["alone"]}})
+        procedures.append(
+            {
+                "procedure": name,
+                "edition": sheet["edition"],
+                "title": sheet["title"],
+                "sha256": sha,
+                "sheet": {"crew": sheet["crew"], "alone": sheet["alone"]},
+            }
+        )
     runs = [{"run": p.state["run"], "procedure": p.sheet["procedure"], "title": p.sheet["title"], "cabinet": "B2", "tube": "T-0417", "phase": p.state["phase"],
              "updated": p.now()["wall"], "seq": p.state["seq"], "acked": -1, "synced": False} for p in plays]  # fmt: skip
     made = {
@@ -55,8 +72,14 @@ class LookServer:
     def __init__(self) -> None:
         self.scene: dict[str, Any] = scene()
         self.swaps: dict[str, Path] = {"tablet/host.js": HERE / "fake_host.js"}
-        environment = Environment(loader=FileSystemLoader(ROOT / "templates"), autoescape=True, undefined=StrictUndefined)
-        self.page = environment.get_template("tablet/shell.html").render(static="/static/look", app="0.1.0", build="look").encode()
+        environment = Environment(
+            loader=FileSystemLoader(ROOT / "templates"), autoescape=True, undefined=StrictUndefined
+        )
+        self.page = (
+            environment.get_template("tablet/shell.html")
+            .render(static="/static/look", app="0.1.0", build="look")
+            .encode()
+        )
         server = self
 
         class Handler(BaseHTTPRequestHandler):

@@ -56,7 +56,13 @@ SEED: dict[str, Any] = {
         for n in (1, 2)
     },
     "instruments": {
-        "DM-04": {"id": "DM-04", "reads": "heater voltage", "unit": "V", "resolution": "0.01", "calibrated_to": "2099-01-01"}
+        "DM-04": {
+            "id": "DM-04",
+            "reads": "heater voltage",
+            "unit": "V",
+            "resolution": "0.01",
+            "calibrated_to": "2099-01-01",
+        }
     },
 }
 
@@ -89,7 +95,10 @@ def sheet():
         tubes=("inductive-output-tube",),
         crew=1,
         givens=(Given(name="heater_voltage", origin="tube", kind="number", unit=volt),),
-        sources=(Source(name="heater", title="Heater", short="HT"), Source(name="beam_supply", title="Beam supply", short="BM")),
+        sources=(
+            Source(name="heater", title="Heater", short="HT"),
+            Source(name="beam_supply", title="Beam supply", short="BM"),
+        ),
         start={"heater": Declared(state="on"), "beam_supply": Declared(state="off")},
         ends={"heater": ("on", "off"), "beam_supply": ("off",)},
         first="look",

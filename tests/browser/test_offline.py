@@ -113,7 +113,9 @@ def test_the_worker_leaves_the_desk_the_calls_and_ranges_alone(tablet, server):
     assert seen["range"] == 206 and seen["whole"] == 200
     server.stop()
     for path in ("/api/challenge", "/signin", "/", "/registers", "/records/x.pdf"):
-        failed = tablet.page.evaluate("async (path) => { try { await fetch(path); return false; } catch { return true; } }", path)
+        failed = tablet.page.evaluate(
+            "async (path) => { try { await fetch(path); return false; } catch { return true; } }", path
+        )
         assert failed, path
     with pytest.raises(Exception, match="ERR_CONNECTION_REFUSED"):
         tablet.page.goto(server.url + "/signin")
@@ -134,7 +136,8 @@ def publish_changed(server, folder: Path) -> None:
     changed.mkdir()
     for part in ("fieldkit", "templates", "static", "procedures"):
         shutil.copytree(root / part, changed / part)
-    (changed / "static" / "css" / "pages.css").open("a").write("\n/* next */\n")
+    sheet = changed / "static" / "css" / "pages.css"
+    sheet.write_text(sheet.read_text() + "\n/* next */\n")
     server.stop()
     server.start(PYTHONPATH=str(changed))
 
