@@ -6,16 +6,10 @@ import { h, put } from "./dom.js";
 import { icon } from "./icons.js";
 import { holdButton } from "./holding.js";
 import { alertUser } from "./announce.js";
+import { opensWords } from "./opens.js";
 import { countdown } from "./words.js";
 
-/** @typedef {{says: string, left: string | number | null}} Reason */
-
-/** What a button that is not open yet says. @param {Reason[]} reasons */
-export function opensWords(reasons) {
-  const left = reasons.filter((r) => r.left !== null && r.left !== undefined && Number(r.left) > 0);
-  if (reasons.length && left.length === reasons.length) return `Opens in ${countdown(Math.max(...left.map((r) => Number(r.left))))}`;
-  return (reasons.find((r) => !left.includes(r))?.says ?? "Not open yet").replace(/\.$/, "");
-}
+/** @typedef {import("./opens.js").Reason} Reason */
 
 /** The list of reasons, with the time that each still takes. @param {Reason[]} reasons */
 export function reasonList(reasons) {

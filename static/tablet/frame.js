@@ -25,9 +25,9 @@ export function frame(sheet, acts) {
   /** The open step fills what two past and two coming rows leave free. */
   function settle() {
     const phone = matchMedia("(max-width: 640px)").matches;
-    const shown = isOver || phone ? 0 : Math.min(2, past.children.length) + Math.min(2, ahead.children.length);
-    now.style.setProperty("--open-height", `${Math.max(0, strip.clientHeight - shown * ROW)}px`);
-    strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - (phone ? 0 : Math.min(2, past.children.length) * ROW));
+    const above = isOver || phone ? 0 : Math.min(strip.clientHeight < 700 ? 1 : 2, past.children.length), below = isOver || phone ? 0 : Math.min(2, ahead.children.length);
+    now.style.setProperty("--open-height", `${Math.max(0, strip.clientHeight - (above + below) * ROW)}px`);
+    strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - above * ROW);
   }
   const watch = new ResizeObserver(() => settle());
   watch.observe(strip);
@@ -38,7 +38,7 @@ export function frame(sheet, acts) {
     head: (state, how) => {
       const { started } = state;
       put(title, sheet.title);
-      put(under, started ? [`edition ${sheet.edition}, cabinet ${started.cabinet}, tube `, h("span", { class: "id" }, started.tube)] : "");
+      put(under, started ? [h("span", { class: "roomy" }, `edition ${sheet.edition}, cabinet `), started.cabinet, ", ", h("span", { class: "roomy" }, "tube "), h("span", { class: "id" }, started.tube)] : "");
       put(who, `${personName(state, state.recorder)} records${started?.present.length === 1 ? ", alone" : ""}`);
       safe.toggleAttribute("data-called", how.called);
       if (how.readonly) put(who, how.readonly);

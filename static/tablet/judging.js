@@ -1,7 +1,7 @@
 /** The verdict on what is being typed, by the same judge that the record is made with; plus the meter it came from, in words. */
 import { judge } from "../core/judge.js";
 import { h, put } from "./dom.js";
-import { day, minus } from "./words.js";
+import { day, minus, pretty } from "./words.js";
 
 /** The instrument that a control's meter names in this run, or null. @param {any} state @param {any} meter */
 export function instrumentOf(state, meter) {
@@ -16,10 +16,10 @@ export function meterWords(instrument, meter, today) {
   const digits = Number(instrument.digits), percent = Number(instrument.percent);
   const accuracy = [percent ? `${instrument.percent} %` : "", digits ? `${instrument.digits} digit${digits === 1 ? "" : "s"}` : ""].filter(Boolean).join(" + ");
   const overdue = Boolean(instrument.calibrated_to && today && instrument.calibrated_to.slice(0, 10) < today.slice(0, 10));
+  const calibrated = instrument.calibrated_to ? (overdue ? `calibration ran out on ${day(instrument.calibrated_to)}` : `calibrated to ${day(instrument.calibrated_to)}`) : "";
   return {
-    kind: meter?.hand_at ? `Hand meter at the ${meter.hand_at.replaceAll("-", " ")}` : "Meter", id: instrument.id, overdue,
-    rest: [accuracy ? `±(${accuracy})` : "", instrument.calibrated_to ? (overdue ? `calibration ran out on ${day(instrument.calibrated_to)}` : `calibrated to ${day(instrument.calibrated_to)}`) : ""]
-      .filter(Boolean).join(", "),
+    kind: meter?.hand_at ? `Hand meter at the ${meter.hand_at}` : "Meter", id: instrument.id, overdue,
+    accuracy: accuracy ? `±(${accuracy})` : "", calibrated,
   };
 }
 
@@ -34,7 +34,7 @@ export function judged(reading) {
 
 /** The judge's sentence with the value before the colon in bold; remarks on it are marked at the side. @param {HTMLElement} node @param {any} found */
 export function showSentence(node, found) {
-  const words = minus(found?.words ?? found?.refused?.says ?? ""), at = found?.words ? words.indexOf(": ") : -1;
+  const words = pretty(minus(found?.words ?? found?.refused?.says ?? "")), at = found?.words ? words.indexOf(": ") : -1;
   node.classList.toggle("warned", Boolean(found?.near || found?.untypical || found?.overdue));
   put(node, at > 0 ? [h("b", {}, words.slice(0, at + 1)), words.slice(at + 1)] : words);
 }

@@ -1,6 +1,6 @@
 /** Live now, locked, next change: what the rails show, in words, beside their heads. */
 import { h } from "./dom.js";
-import { CHANGE_WORDS, LIVE, SHUT, countdown, list, minute, sourceTitle } from "./words.js";
+import { LIVE, SHUT, changeWord, countdown, list, minute, sourceTitle } from "./words.js";
 import { current } from "./timeline.js";
 
 /** @param {any} sheet @param {any} state @param {any} progress */
@@ -29,10 +29,10 @@ function shutWords(sheet, state) {
 /** @param {any} sheet @param {any} state @param {any} progress */
 export function nextWords(sheet, state, progress) {
   const next = progress?.next_change;
-  if (!next) return "none in sight";
+  if (!next) return "none on the way ahead";
   const sets = Array.isArray(next.sources) ? Object.fromEntries(next.sources.map((/** @type {any} */ s) => (typeof s === "string" ? [s, null] : [s.name, s.state]))) : next.sources;
   const move = sheet.moves.filter((/** @type {any} */ m) => m.origin === next.step).map((/** @type {any} */ m) => m.effects?.sets ?? {}).find((/** @type {any} */ s) => Object.keys(sets).some((k) => k in s)) ?? {};
-  const words = Object.keys(sets).map((s) => `${sourceTitle(sheet, s)} ${/** @type {any} */ (CHANGE_WORDS)[sets[s] ?? move[s]] ?? "changes"}`);
+  const words = Object.keys(sets).map((s) => `${sourceTitle(sheet, s)} ${changeWord(state.sources?.[s]?.state, sets[s] ?? move[s])}`);
   const wait = (progress.waits ?? []).filter((/** @type {any} */ w) => w.step === next.step).map((/** @type {any} */ w) => Number(w.left)).filter((/** @type {number} */ n) => n > 0);
   const where = next.step === progress.node ? "at this step" : `at step ${next.number}`;
   return `${list(words)}, ${where}${wait.length ? `, in ${countdown(Math.max(...wait))} at the earliest` : ""}`;
@@ -42,7 +42,7 @@ export function nextWords(sheet, state, progress) {
 export function liveList(sheet, state, progress) {
   const live = liveWords(sheet, state, progress), shut = shutWords(sheet, state);
   return h("dl", {},
-    h("dt", {}, "Live now"), h("dd", {}, live.length ? live.join(", ") : "nothing"),
+    h("dt", {}, "Live now"), h("dd", {}, state.phase === "declare" ? "not known: nothing has been confirmed yet" : live.length ? live.join(", ") : "nothing"),
     shut.length ? [h("dt", {}, "Locked"), h("dd", {}, shut.map((/** @type {any} */ s, /** @type {number} */ k) => [k ? "; " : "", `${s.title}, `, s.sure ? s.how : h("b", {}, s.how)]))] : null,
     h("dt", {}, "Next change"), h("dd", {}, nextWords(sheet, state, progress)));
 }

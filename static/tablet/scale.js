@@ -1,6 +1,7 @@
 /** Thin callers of core/drawing: the limit scale of a reading, its small form, and the scale of a wait, as elements. */
 import * as drawing from "../core/drawing.js";
 import { drawn } from "./dom.js";
+import { pretty } from "./words.js";
 
 /** How wide a drawing may be here, in CSS px: text in it is drawn at its own size. */
 const room = () => (innerWidth <= 640 ? Math.max(260, innerWidth - 28) : innerWidth >= 1000 && innerHeight <= 1000 ? 540 : 572);
@@ -13,7 +14,7 @@ function model(spec) {
   const { limits, plate, found, text, unit, old } = spec;
   const { low, high, caution_low, caution_high, accept_low, accept_high, low_name, high_name } = limits;
   return {
-    unit, low, high, caution_low, caution_high, accept_low, accept_high, low_name: named(low_name, "lower limit"), high_name: named(high_name, "upper limit"),
+    unit: pretty(unit), low, high, caution_low, caution_high, accept_low, accept_high, low_name: named(low_name, "lower limit"), high_name: named(high_name, "upper limit"),
     plate: plate ?? null, plate_name: "nameplate", value: text ? text.replace(",", ".").replace("−", "-").replace(/^\+/, "") : null, u: found?.u ?? null, margin: found?.margin ?? null,
     verdict: found?.verdict ?? null, olds: old ? [{ value: old.text, name: old.name }] : [],
   };

@@ -5,7 +5,7 @@
 import { h } from "./dom.js";
 import { verdictMark } from "./icons.js";
 import { rails } from "./rails.js";
-import { CHANGE_WORDS, CONTROL_WORDS, minus, minute, sourceTitle } from "./words.js";
+import { CONTROL_WORDS, changeWord, minus, minute, pretty, sourceTitle } from "./words.js";
 
 /** Kinds that stand in the log but are no row of work. */
 const QUIET = ["signed", "corrected"];
@@ -30,7 +30,7 @@ export function rowValue(row, sheet, sets = {}) {
   const old = (row.old ?? []).map((/** @type {any} */ o) => [h("s", { class: "num" }, minus(o.text)), " "]);
   const text = row.text || row.value;
   if (text && row.unit !== undefined && row.unit !== null && (row.verdict || row.kind === "read" || row.kind === "worked-out")) {
-    return [old, h("span", {}, h("span", { class: "num" }, minus(text)), ` ${row.unit}`), row.verdict ? [verdictMark(row.verdict), h("span", { class: "seen-by-reader" }, row.verdict)] : null];
+    return [old, h("span", {}, h("span", { class: "num" }, minus(text)), ` ${pretty(row.unit)}`), row.verdict ? [verdictMark(row.verdict), h("span", { class: "seen-by-reader" }, row.verdict)] : null];
   }
   const change = Object.entries(sets).map(([s, v]) => `${sourceTitle(sheet, s)} ${/** @type {any} */ ({ on: "on", off: "off" })[v] ?? v}`);
   if (row.kind === "chosen") return [old, row.note || row.text];
@@ -56,9 +56,9 @@ export function pastRow(sheet, row, states, read) {
       h("span", { class: "v" }, rowValue(row, sheet, sets))));
 }
 
-/** What a coming row says at its end. @param {any} sheet @param {any} step @param {Record<string, string>} sets */
-function comingWords(sheet, step, sets) {
-  const change = Object.entries(sets).map(([s, v]) => `${sourceTitle(sheet, s)} ${/** @type {any} */ (CHANGE_WORDS)[v] ?? v}`);
+/** What a coming row says at its end. @param {any} sheet @param {any} step @param {Record<string, string>} sets @param {Record<string, string>} before */
+function comingWords(sheet, step, sets, before) {
+  const change = Object.entries(sets).map(([s, v]) => `${sourceTitle(sheet, s)} ${changeWord(before[s], v)}`);
   if (change.length) return change.slice(0, 2).join(", ");
   return /** @type {any} */ (CONTROL_WORDS)[step.control.control];
 }
@@ -68,7 +68,7 @@ export function comingRow(sheet, { step, before, after, sets }) {
   const signal = step.control.control === "caution" ? h("span", { class: "signal" }, `${step.control.signal} `) : null;
   return h("li", { class: "step next" }, rails(sheet, before, after, { planned: true }),
     h("div", { class: "row" }, h("span", { class: "t" }), h("span", { class: "n" }, step.number),
-      h("span", { class: "w" }, signal, title(step.title)), h("span", { class: "v" }, comingWords(sheet, step, sets))));
+      h("span", { class: "w" }, signal, title(step.title)), h("span", { class: "v" }, comingWords(sheet, step, sets, before))));
 }
 
 /** A title without its signal word, which stands before it, and with its rung where that is not known yet. @param {string} text */

@@ -54,6 +54,16 @@ export const list = (things) => (things.length < 2 ? things.join("") : `${things
 /** A number as typed, with a true minus sign. @param {string} text */
 export const minus = (text) => String(text ?? "").replace(/^-/, "−");
 
+/** A unit as it is written by hand: the sheet's own symbols are plain ASCII. Also inside sentences. @param {string} text */
+export const pretty = (text) => String(text ?? "").replace(/\b([kMm]?)ohm\b/g, "$1Ω").replace(/\b(c?m)([23])\b/g, (_, m, n) => m + (n === "2" ? "²" : "³")).replace(/\bdegC\b/g, "°C").replace(/\bu(A|V|W|s|Sv|m)\b/g, "µ$1");
+
+/** How a change of a source is said after its name. @param {string} before @param {string} after */
+export function changeWord(before, after) {
+  if (SHUT.includes(before) && after === "off") return "is unlocked";
+  if (before === "earthed" && SHUT.includes(after)) return "is no longer earthed";
+  return /** @type {any} */ (CHANGE_WORDS)[after] ?? "changes";
+}
+
 /** First letter large. @param {string} text */
 export const sentence = (text) => (text ? text[0].toUpperCase() + text.slice(1) : "");
 
@@ -71,6 +81,7 @@ export const personName = (state, id) => (state?.started?.people ?? []).find((/*
 /** "at least 450 V", "6.10 to 6.50 V", "" without limits. @param {any} limits @param {string} unit */
 export function limitWords(limits, unit) {
   const [low, high] = [limits?.low, limits?.high];
+  unit = pretty(unit);
   if (low && high) return `${minus(low)} to ${minus(high)} ${unit}`;
   if (low) return `at least ${minus(low)} ${unit}`;
   return high ? `at most ${minus(high)} ${unit}` : "";

@@ -10,12 +10,12 @@ import { limitScale } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
 import { say } from "../announce.js";
 import { spoken } from "../spoken.js";
-import { limitWords, minus } from "../words.js";
+import { limitWords, minus, pretty } from "../words.js";
 
 /** Shows which meter is to be read. @param {HTMLElement} node @param {any} words */
 export function showMeter(node, words) {
   if (!words) { node.hidden = true; return; }
-  put(node, `${words.kind} `, h("span", { class: "id" }, words.id), words.rest ? `, ${words.rest}` : "", words.overdue ? h("b", {}, " (overdue)") : null);
+  put(node, `${words.kind} `, h("span", { class: "id" }, words.id), words.accuracy ? `, ${words.accuracy}` : "", words.calibrated ? h(words.overdue ? "b" : "span", { class: words.overdue ? null : "roomy" }, `, ${words.calibrated}`) : null);
 }
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
@@ -24,8 +24,8 @@ export function mount(ctx, el) {
   const input = part(el.l, "typed"), wrong = part(el.l, "wrong"), box = part(el.l, "verdict-box");
   const instrument = instrumentOf(ctx.state, control.meter);
   showMeter(part(el.l, "meter"), meterWords(instrument, control.meter, ctx.run.now().wall));
-  put(part(el.l, "label"), `${ctx.step.title}, in ${unit}`);
-  put(part(el.l, "unit"), unit);
+  put(part(el.l, "label"), `${ctx.step.title}, in ${pretty(unit)}`);
+  put(part(el.l, "unit"), pretty(unit));
   put(part(el.r, "pad"), keypad(() => input));
   const act = acting(ctx, { run: record });
   put(part(el.r, "act"), act.node);
@@ -58,7 +58,7 @@ export function mount(ctx, el) {
   function update() {
     const text = input.value.trim(), reasons = ctx.shutReasons();
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    act.show({ label: text ? ["Record", h("span", { class: "num" }, minus(text)), unit] : "Type the reading", ready: Boolean(text), reasons });
+    act.show({ label: text ? ["Record", h("span", { class: "num" }, minus(text)), pretty(unit)] : "Type the reading", ready: Boolean(text), reasons });
   }
   show();
   return { update, focus: input };

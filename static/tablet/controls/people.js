@@ -5,7 +5,7 @@ import { list } from "../words.js";
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
-  const { place, way } = ctx.step.control, where = place.replaceAll("-", " ");
+  const { place, way } = ctx.step.control, where = place;
   const inside = ctx.state.hands?.[place] ?? [], out = way === "out";
   const present = ctx.people();
   put(part(el.l, "count"), inside.length
@@ -24,7 +24,7 @@ export function mount(ctx, el) {
   function update() {
     const reasons = ctx.shutReasons(), n = chosen().length, all = out ? n === inside.length : n > 0;
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    const label = out ? (inside.length ? `${n} of ${inside.length} out of the ${where}` : `Nobody is at the ${where}; looked and counted`) : `${n} ${n === 1 ? "person goes" : "people go"} in at the ${where}`;
+    const label = out ? (inside.length ? `${n} of ${inside.length} out of the ${where}` : `Nobody is at the ${where}; looked and counted`) : n === 0 ? `Hands in at the ${where}` : `${n} ${n === 1 ? "person goes" : "people go"} in at the ${where}`;
     act.show({ label, ready: all, reasons, small: all ? undefined : out ? "Every name must be out, seen and counted" : "Name whose hands go in" });
   }
   update();

@@ -1,13 +1,14 @@
 /** Picture: taken with the tablet's camera, kept in the run under its own hash before the event says so. */
 import { h, part, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
+import { lower } from "../words.js";
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
   const file = /** @type {HTMLInputElement} */ (el.l.querySelector("[data-field=picture] input"));
   const note = /** @type {HTMLInputElement} */ (el.l.querySelector("[data-field=note] input"));
   const wrong = part(el.l, "wrong"), preview = part(el.l, "preview");
-  put(part(el.l, "of"), `Show ${ctx.step.control.of}.`);
+  put(part(el.l, "of"), `Show this: ${lower(ctx.step.control.of)}.`);
   note.value = ctx.draft.note ?? "";
   note.addEventListener("input", () => ctx.keep({ note: note.value }));
   let kept = ctx.draft.picture ?? null;

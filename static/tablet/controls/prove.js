@@ -9,7 +9,7 @@ import { instrumentOf, judged, meterWords } from "../judging.js";
 import { smallScale } from "../scale.js";
 import { say } from "../announce.js";
 import { freshen } from "../step_page.js";
-import { limitWords, minus } from "../words.js";
+import { limitWords, minus, pretty } from "../words.js";
 import { showMeter } from "./number.js";
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
@@ -34,7 +34,7 @@ export function mount(ctx, el) {
     put(part(node, "n"), String(k + 1));
     put(part(node, "what"), ask.title);
     put(part(node, "label"), `${ask.title}, in ${unit}`);
-    put(part(node, "unit"), unit);
+    put(part(node, "unit"), pretty(unit));
     input.value = ctx.draft[`row${k}`] ?? "";
     input.addEventListener("focus", () => { open = k; paint(); });
     input.addEventListener("input", () => { put(wrong); ctx.keep({ [`row${k}`]: input.value }); paint(); });
@@ -50,9 +50,9 @@ export function mount(ctx, el) {
       const found = text ? judged({ text, unit, limits, resolution: control.resolution, instrument, protects: true, day: ctx.run.now().wall }) : null;
       r.node.classList.toggle("open", k === open);
       r.node.classList.toggle("todo", !text && k !== open);
-      put(part(r.node, "limit"), limitWords(limits, unit), found?.verdict ? h("b", {}, `${limits ? ": " : ""}${found.verdict}`) : found?.refused ? " not a number yet" : "");
+      put(part(r.node, "limit"), limitWords(limits, unit), found?.verdict ? [limits ? ": " : "", h("strong", {}, found.verdict)] : found?.refused ? " not a number yet" : "");
       put(part(r.node, "tiny"), limits ? smallScale({ limits, unit, text: found && !found.refused ? text : null, found: found?.refused ? null : found }) : null);
-      if (k === open && found) { put(part(el.l, "sentence"), minus(found.words ?? found.refused.says)); if (found.verdict) say(`${r.ask.title}: ${text} ${unit}, ${found.verdict}`); }
+      if (k === open && found) { put(part(el.l, "sentence"), pretty(minus(found.words ?? found.refused.says))); if (found.verdict) say(`${r.ask.title}: ${text} ${unit}, ${found.verdict}`); }
     });
     update();
   }
@@ -69,7 +69,7 @@ export function mount(ctx, el) {
     const reasons = ctx.shutReasons(), all = rows.every((r) => r.input.value.trim());
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
     const now = rows[open]?.input.value.trim();
-    act.show({ label: all ? ["Record", h("span", { class: "num" }, rows.map((r) => minus(r.input.value.trim())).join(", ")), unit] : "Next line", ready: all || Boolean(now), reasons });
+    act.show({ label: all ? ["Record", h("span", { class: "num" }, rows.map((r) => minus(r.input.value.trim())).join(", ")), pretty(unit)] : "Next line", ready: all || Boolean(now), reasons });
   }
   paint();
   return { update, focus: rows[open].input };

@@ -16,7 +16,7 @@ export function mount(ctx, el) {
   function update() {
     const reasons = ctx.shutReasons(), text = input.value.trim();
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    act.show({ label: text ? "Record the remark" : "Nothing to remark", ready: Boolean(text) || !ctx.step.control.required, reasons });
+    act.show({ label: text ? "Record the remark" : ctx.step.control.required ? "Write the remark" : "Nothing to remark", ready: Boolean(text) || !ctx.step.control.required, reasons });
   }
   update();
   return { update };

@@ -4,7 +4,7 @@ import { acting, reasonList } from "../acting.js";
 import { judged, showSentence } from "../judging.js";
 import { limitScale } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
-import { limitWords, minus } from "../words.js";
+import { limitWords, minus, pretty } from "../words.js";
 
 /** Reference lines of the library formulas that the value uses. @param {any} ctx */
 function references(ctx) {
@@ -18,7 +18,7 @@ function references(ctx) {
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
   const control = ctx.step.control, unit = control.unit.symbol;
-  put(part(el.l, "unit"), unit);
+  put(part(el.l, "unit"), pretty(unit));
   const lines = references(ctx);
   put(part(el.l, "reference"), lines.length ? lines : "Worked out from this run’s own readings.");
   const act = acting(ctx, { run: record });
@@ -41,7 +41,7 @@ export function mount(ctx, el) {
       else put(part(el.l, "sentence"), value ? String(value) : "A reading that this needs is missing.");
     }
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    act.show({ label: isNumber ? ["Record", h("span", { class: "num" }, minus(String(value))), unit] : "Record that it has no value", reasons });
+    act.show({ label: isNumber ? ["Record", h("span", { class: "num" }, minus(String(value))), pretty(unit)] : "Record that it has no value", reasons });
   }
   update();
   return { update };

@@ -44,8 +44,9 @@ export function mount(ctx, el) {
       put(part(el.r, "sentence"), h("b", {}, passed(elapsed)), ` of at least ${countdown(least)} has passed by the running timer, which is what counts${wait.greatest && passed(wait.greatest) !== passed(elapsed) ? `; ${passed(wait.greatest)} by the clock, which is only compared` : ""}.`);
     }
     showDue();
-    put(part(el.r, "reasons"), reasons.length > 1 || reasons.some((/** @type {any} */ r) => !(Number(r.left) > 0)) ? reasonList(reasons) : null);
-    put(part(el.r, "note"), ctx.step.control.why, left > 0 ? [ctx.step.control.why ? " " : "", "At the end: sound, vibration and words here. ", ctx.awake() ? "The screen stays on." : "Keep the screen on."] : null);
+    const other = reasons.filter((/** @type {any} */ r) => !(Number(r.left) > 0));
+    put(part(el.r, "reasons"), other.length ? reasonList(other) : null);
+    put(part(el.r, "note"), left > 0 ? `At the end: sound, vibration and words here. ${ctx.awake() ? "The screen stays on." : "Keep the screen on."}` : "");
     act.show({ label: left > 0 ? `Opens in ${countdown(left)}` : "The wait is over: go on", reasons });
     if (left > 0) over = false;
     else if (!over) { over = true; if (wait) { alertUser(`${ctx.step.title}: the wait is over.`); chime(); } }

@@ -42,6 +42,12 @@ export function remarkPage(ctx) {
   return { node: overWork([overHead(ctx, "Remark", "Beside this step"), h("div", { class: "fields" }, text.node)], [first("Record the remark", () => void go(), "record-remark")]), focus: text.input };
 }
 
+/** The file field, looking like the button that it is. @param {HTMLElement} node */
+function camera(node) {
+  node.dataset.field = "picture";
+  return node;
+}
+
 /** @param {any} ctx */
 export function picturePage(ctx) {
   const file = field({ label: "Take the picture", kind: "file", attributes: { accept: "image/*", capture: "environment", "data-picture": true } });
@@ -59,7 +65,7 @@ export function picturePage(ctx) {
     const r = await ctx.send({ do: "pictured", step: ctx.step?.id ?? ctx.state.node, ...pictureBody(kept), note: note.input.value.trim() });
     if (r.refused) note.wrong(r.refused.says); else ctx.shut();
   };
-  return { node: overWork([overHead(ctx, "Picture", "Beside this step"), h("div", { class: "shot" }, file.node, preview, note.node)], [button]) };
+  return { node: overWork([overHead(ctx, "Picture", "Beside this step"), h("div", { class: "shot" }, camera(file.node), preview, note.node)], [button]) };
 }
 
 /** @param {any} ctx */
@@ -96,7 +102,7 @@ export function cardPage(ctx, args) {
 
 /** @param {any} ctx */
 export function boardPage(ctx) {
-  return { node: overWork([overHead(ctx, "Locks and earths", `Cabinet ${ctx.state.started?.cabinet ?? ""}`), boardList(ctx.state), h("p", { class: "note" }, "They belong to the cabinet and outlive the run.")]) };
+  return { node: overWork([overHead(ctx, "Locks and earths", `Cabinet ${ctx.state.started?.cabinet ?? ""}`), boardList(ctx), h("p", { class: "note" }, "They belong to the cabinet and outlive the run.")]) };
 }
 
 /** @param {any} ctx */
@@ -113,5 +119,5 @@ function reasonPage(ctx, spec) {
     const r = await ctx.send({ ...spec.command, reason: reason.input.value.trim() });
     if (r.refused) reason.wrong(r.refused.says); else ctx.shut();
   };
-  return { node: overWork([overHead(ctx, spec.title), h("p", { class: "say" }, spec.says), boardList(ctx.state), h("div", { class: "fields" }, reason.node)], [first(spec.act, () => void go(), spec.name)]) };
+  return { node: overWork([overHead(ctx, spec.title), h("p", { class: "say" }, spec.says), boardList(ctx), h("div", { class: "fields" }, reason.node)], [first(spec.act, () => void go(), spec.name)]) };
 }

@@ -9,7 +9,7 @@ export function cardBody(site) {
   return [
     h("div", { class: "eo" }, h("b", {}, "Emergency off"), h("dl", { class: "card-eo" }, card.emergency_off.map((/** @type {any} */ e) => [h("dt", {}, e.name), h("dd", {}, e.where)]))),
     (card.notes ?? []).map((/** @type {string} */ note) => h("p", { class: "heed" }, note)),
-    facts([["Telephone", card.telephone.map((/** @type {any} */ t) => h("div", {}, `${t.who}: `, h("a", { class: "num", href: `tel:${t.number.replace(/[^+\d]/g, "")}` }, t.number)))],
+    facts([["Telephone", card.telephone.map((/** @type {any} */ t) => h("div", {}, `${t.who}: `, /^[+\d][\d ()-]*$/.test(t.number) ? h("a", { class: "num call", href: `tel:${t.number.replace(/[^+\d]/g, "")}` }, t.number) : h("span", { class: "num" }, t.number)))],
       ["First aid", card.first_aid.map((/** @type {string} */ line) => h("div", {}, line))], ["Nearest help", card.nearest_help]]),
     h("p", { class: "note" }, "The maker’s instructions, your site’s rules, local codes and qualified practice come first."),
   ];

@@ -1,9 +1,10 @@
 /** The pages at the end of a run: stopped, all steps done, ended and to be signed, returned and taken up again, read only. */
 import { field, h, put } from "../dom.js";
 import { passphrase } from "../passphrase.js";
+import { lanesOf } from "../rails.js";
 import { work } from "../step_page.js";
 import { boardList } from "./states.js";
-import { STATE_WORDS, day, list, minute, personName, sourceTitle } from "../words.js";
+import { STATE_WORDS, day, list, minute, personName, sentence } from "../words.js";
 
 /** @param {string} kind @param {string} title @param {string} [note] */
 const head = (kind, title, note = "") => [h("div", { class: "what" }, h("span", {}, h("b", {}, kind)), h("span", {}, note)), h("h1", { tabindex: "-1" }, title)];
@@ -17,7 +18,7 @@ export function countWords(state) {
 }
 
 /** The states, locks and earths that the end names. @param {any} ctx */
-const finalStates = (ctx) => h("ul", { class: "facts" }, ctx.sheet.sources.map((/** @type {any} */ s) => h("li", {}, h("span", { class: "k" }, s.title), h("span", { class: "v" }, /** @type {any} */ (STATE_WORDS)[ctx.state.sources[s.name]?.state ?? "unknown"]))));
+const finalStates = (ctx) => h("ul", { class: "facts" }, lanesOf(ctx.sheet).map((/** @type {any} */ s) => h("li", {}, h("span", { class: "k" }, sentence(s.title)), h("span", { class: "v" }, /** @type {any} */ (STATE_WORDS)[ctx.state.sources[s.name]?.state ?? "unknown"]))));
 
 /** The run is stopped. @param {any} ctx */
 export function stoppedPage(ctx) {
@@ -30,7 +31,7 @@ export function stoppedPage(ctx) {
     if (!r.refused) ctx.shut();
   };
   const { node } = work([head("Stopped", "This run is stopped"), h("p", { class: "say" }, state.stop?.why ?? "", " Nothing that was recorded is hidden. Only make safe, remarks, pictures, corrections and the end remain."), h("p", { class: "plainly" }, done ? `${done} of ${all} steps of the make-safe list are recorded.` : "No step of the make-safe list is recorded yet.")],
-    [h("div", { class: "choose" }, h("button", { type: "button", class: "way stop", "data-open-safe": true, on: { click: () => ctx.over("make_safe") } }, h("b", {}, "Open the make-safe list"), h("span", {}, "Nothing is switched from here; its own steps record."))), h("div", { class: "fields" }, reason.node), boardList(state), refused,
+    [h("div", { class: "choose" }, h("button", { type: "button", class: "way stop", "data-open-safe": true, on: { click: () => ctx.over("make_safe") } }, h("b", {}, "Open the make-safe list"), h("span", {}, "Nothing is switched from here; its own steps record."))), h("div", { class: "fields" }, reason.node), boardList(ctx), refused,
       h("div", { class: "acts one" }, h("button", { type: "button", class: "act first", "data-end": "stopped", on: { click: () => void end() } }, "End the run as stopped"))]);
   return { node, refuse: (/** @type {string} */ says) => put(refused, says) };
 }
@@ -44,7 +45,7 @@ export function endPage(ctx) {
     if (!r.refused) ctx.shut();
   };
   const { node } = work([head("End", "All steps are done"), h("p", { class: "say" }, countWords(ctx.state)), ctx.sheet.next_person ? h("p", { class: "heed" }, h("b", {}, "For the next person: "), ctx.sheet.next_person) : null, h("h2", { class: "part" }, "The run leaves"), finalStates(ctx)],
-    [h("h2", { class: "part" }, "Locks and earths that stay on, with their holders"), boardList(ctx.state), refused,
+    [h("h2", { class: "part" }, "Locks and earths that stay on, with their holders"), boardList(ctx), refused,
       h("div", { class: "acts one" }, h("button", { type: "button", class: "act first", "data-end": "done", on: { click: () => void end() } }, "End the run"))]);
   return { node, refuse: (/** @type {string} */ says) => put(refused, says) };
 }
@@ -78,7 +79,7 @@ function returnedBlock(ctx, back) {
 function readPage(ctx, kind, title, extra = null) {
   const signed = (ctx.state.signatures ?? []).map((/** @type {any} */ s) => h("li", {}, h("span", { class: "k" }, personName(ctx.state, s.person)), h("span", { class: "v" }, `${s.meaning}, over events 0 to ${s.covers ?? s.seq - 1}`)));
   const { node } = work([head(kind, title), extra, h("p", { class: "say" }, countWords(ctx.state)), h("p", { class: "say" }, "Touch a row above to read it."), h("h2", { class: "part" }, "The run left"), finalStates(ctx)],
-    [h("h2", { class: "part" }, "Signatures"), h("ul", { class: "facts" }, signed), h("h2", { class: "part" }, "Locks and earths"), boardList(ctx.state), h("div", { class: "acts one" }, h("button", { type: "button", class: "act first", on: { click: () => ctx.app.go("home") } }, "To the start page"))]);
+    [h("h2", { class: "part" }, "Signatures"), h("ul", { class: "facts" }, signed), h("h2", { class: "part" }, "Locks and earths"), boardList(ctx), h("div", { class: "acts one" }, h("button", { type: "button", class: "act first", on: { click: () => ctx.app.go("home") } }, "To the start page"))]);
   return { node };
 }
 

@@ -48,7 +48,7 @@ function runRow(app, run) {
 /** @param {any} app */
 function runsBand(app) {
   const { runs, health } = app.held;
-  const says = health.storage === "lost" ? "None can be read. See above: this is a loss, not an empty list." : "None has been recorded on this tablet since it was enrolled.";
+  const says = health.storage !== "ok" ? "None can be read. See above: this is a loss, not an empty list." : app.held.device ? "None has been recorded on this tablet since it was enrolled." : "Nothing is held here: this tablet was never enrolled, or the browser has removed everything.";
   return band({ title: "Runs on this tablet", name: "runs" }, runs.length ? h("ul", { class: "runs" }, runs.map((/** @type {any} */ r) => runRow(app, r))) : h("p", { class: "say" }, says));
 }
 
@@ -61,7 +61,7 @@ function healthBand(app) {
     ["Works offline", yes(health.offline_ready, "yes, every file is aboard", "not yet: open it once more while the server can be reached")],
     ["Installed", yes(health.installed, "yes", "no: add it to the home screen, or the browser may remove what it holds")],
     ["Storage", [yes(health.persisted, "kept by the browser", "the browser does not promise to keep it"), health.probe ? `; ${health.probe}` : ""]],
-    ["Enrolled", enrolled ? `${here.map((/** @type {any} */ p) => p.name).join(", ") || "nobody has a certificate yet"}${device?.name ? `; tablet ${device.name}` : ""}${waiting.length ? `; waiting for the signing authority: ${waiting.map((/** @type {any} */ p) => p.name).join(", ")}` : ""}` : h("b", {}, "nobody")],
+    ["Enrolled", enrolled ? `${here.map((/** @type {any} */ p) => p.name).join(", ") || "nobody has a certificate yet"}${device?.name ? `; this is ${device.name}` : ""}${waiting.length ? `; waiting for the signing authority: ${waiting.map((/** @type {any} */ p) => p.name).join(", ")}` : ""}` : h("b", {}, "nobody")],
     ["Sending", [app.sync.says || "nothing to send", app.sync.oldestUnsynced ? `; oldest event not received: ${day(app.sync.oldestUnsynced)} ${minute(app.sync.oldestUnsynced)}` : ""]]]),
     health.storage === "ok" ? health.says.map((/** @type {string} */ s) => h("p", { class: "heed" }, s)) : null,
     h("div", { class: "buttons" }, h("button", { type: "button", class: "act", "data-enrol": true, on: { click: () => app.go("enrol") } }, enrolled ? "Enrol another person" : "Enrol a person"),
@@ -72,7 +72,12 @@ function healthBand(app) {
 function frontBand(app, returned) {
   const { held } = app, open = held.runs.find((/** @type {any} */ r) => !["ended", "voided"].includes(r.phase));
   const go = (/** @type {string} */ label, /** @type {() => void} */ run, /** @type {string} */ name) => h("div", { class: "buttons" }, h("button", { type: "button", class: "act", on: { click: () => app.go("card") } }, "Site card"), h("button", { type: "button", class: "act first", "data-next": name, on: { click: run } }, label));
-  if (held.health.storage === "damaged" && !held.device) return null;
+  if (held.health.storage !== "ok") {
+    // After a loss nothing is put forward as the next thing to do; what is possible stays possible.
+    return band({ name: "front" }, h("div", { class: "buttons" }, h("button", { type: "button", class: "act", on: { click: () => app.go("card") } }, "Site card"),
+      open ? h("button", { type: "button", class: "act", on: { click: () => app.go("run", { run: open.run }) } }, "Look at the open run") : null,
+      held.enrolled && held.kit ? h("button", { type: "button", class: "act", on: { click: () => app.go("start") } }, "Start a run all the same") : null));
+  }
   if (!held.device || !held.enrolled) {
     return band({ front: true, name: "front" }, h("p", { class: "lead" }, "This tablet is not enrolled"), h("p", { class: "say" }, "Nobody can record or sign here yet. Enrolment needs the server once; everything after it works without a network. A browser tab and the app on the home screen do not share what they hold: enrol in the one you take to site."), go("Enrol a person", () => app.go("enrol"), "enrol"));
   }

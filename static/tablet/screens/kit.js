@@ -21,6 +21,7 @@ export async function kitScreen(app) {
         put(says, name ? `Part ${done + 1} of ${of}: ${name}` : `${of} parts taken and checked against their hashes.`);
       });
       await app.refresh();
+      fill.style.width = "100%";
       put(says, `The kit is aboard: ${(kit ?? app.held.kit)?.procedures?.length ?? 0} procedures. Everything from here works without a network.`);
       put(take, "Done");
       take.removeAttribute("disabled");

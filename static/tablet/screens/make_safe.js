@@ -13,7 +13,7 @@ export const siteOf = (ctx) => ctx.app.held.kit?.registers?.sites?.[ctx.state.st
 /** @param {any} ctx */
 export function makeSafePage(ctx) {
   const site = siteOf(ctx), list = h("ol", { class: "list", "data-safe-list": true }), says = h("p", { class: "nothing", role: "status", "data-nothing": true }), refused = h("p", { class: "refused" });
-  const remark = field({ label: "A remark on how it was made safe", rows: true }), foot = h("div");
+  const remark = field({ label: "A remark on how it was made safe" }), foot = h("div");
   const over = ["ended", "voided"].includes(ctx.state.phase);
 
   /** @param {any} item @param {boolean} done */
@@ -33,7 +33,7 @@ export function makeSafePage(ctx) {
   function paint() {
     const n = Object.keys(ctx.run.state.safe ?? {}).length, all = ctx.sheet.make_safe.length;
     ctx.state = ctx.run.state;
-    put(says, n === 0 ? "Nothing has been changed yet. Only the steps below record, and none of them switches anything by itself." : `${n} of ${all} steps are recorded. Go on down the list.`);
+    put(says, n === 0 ? [h("b", {}, "Nothing has been changed yet."), h("span", {}, "Only the steps below record; none of them switches anything by itself.")] : [h("b", {}, `${n} of ${all} steps are recorded.`), h("span", {}, "Go on down the list.")]);
     put(list, ctx.sheet.make_safe.map(row));
     put(foot, over || n === 0 ? null : [remark.node, end.node]);
   }
@@ -47,8 +47,8 @@ export function makeSafePage(ctx) {
   paint();
   const node = overWork([
     overHead(ctx, "Make safe", "", "Leave the list"),
-    h("div", { class: "eo", "data-eo": true }, h("b", {}, "Danger to life: ", eo.length ? eo.map((/** @type {any} */ e) => `${e.name} ${e.where}`).join("; ") : "the site’s emergency off"),
-      h("p", {}, eo.length ? "Press the real one. This button and this list operate nothing." : "The kit names none for this site; you must know where it is. This list operates nothing."),
+    h("div", { class: "eo", "data-eo": true }, h("b", {}, "Danger to life: ", eo.length ? eo.map((/** @type {any} */ e, /** @type {number} */ k) => [k ? "; " : "", h("span", { class: "whole" }, e.name), ` ${e.where}`]) : "the site’s emergency off"),
+      h("p", {}, eo.length ? "Press the real one: this list operates nothing." : "The kit names none for this site; you must know where it is. This list operates nothing."),
       h("button", { type: "button", class: "close", "data-card": true, on: { click: () => ctx.over("card", { back: "make_safe" }) } }, "Site card")),
     says, list], [refused, foot]);
   return { node, update: () => undefined };

@@ -3,7 +3,7 @@ import { field, h, picks, put } from "../dom.js";
 import { keypad } from "../keypad.js";
 import { limitScale } from "../scale.js";
 import { rowTitle } from "../strip.js";
-import { day, limitWords, minus, personName, time } from "../words.js";
+import { day, limitWords, minus, personName, pretty, time } from "../words.js";
 import { overHead, overWork } from "./over_parts.js";
 
 /** What of a row was typed and can be corrected: [field, name, text]. @param {any} row @param {any} body */
@@ -24,7 +24,7 @@ function bodyOf(ctx, seq) {
 export function pastPage(ctx, { row: shown }) {
   const row = ctx.state.log.find((/** @type {any} */ r) => r.seq === shown.seq) ?? shown, body = bodyOf(ctx, row.seq), fields = typedFields(row, body);
   const rows = /** @type {[string, any][]} */ ([["When", `${day(row.wall)} ${time(row.wall)}`], ["By", personName(ctx.state, row.by)], ["Event", String(row.seq)]]);
-  if (row.text && row.unit) rows.push(["Reading", h("span", {}, (row.old ?? []).map((/** @type {any} */ o) => [h("s", { class: "num" }, minus(o.text)), " "]), h("span", { class: "num" }, minus(row.text)), ` ${row.unit}`)]);
+  if (row.text && row.unit) rows.push(["Reading", h("span", {}, (row.old ?? []).map((/** @type {any} */ o) => [h("s", { class: "num" }, minus(o.text)), " "]), h("span", { class: "num" }, minus(row.text)), ` ${pretty(row.unit)}`)]);
   if (row.verdict) rows.push(["Verdict", row.verdict]);
   if (row.limits) rows.push(["Limits", `${limitWords(row.limits, row.unit ?? "") || "none"}${row.limits.low_name || row.limits.high_name ? ` (${[row.limits.low_name, row.limits.high_name].filter(Boolean).join(", ")})` : ""}`]);
   if (row.instrument) rows.push(["Meter", h("span", { class: "id" }, row.instrument)]);
@@ -57,7 +57,7 @@ function pictureOf(ctx, sha) {
 /** @param {any} ctx @param {any} row @param {any[][]} fields */
 function correction(ctx, row, fields) {
   const which = fields.length > 1 ? picks({ legend: "What was wrong", options: fields.map(([name, label, text]) => ({ value: name, label, small: text })), chosen: [fields[0][0]] }) : null;
-  const text = field({ label: `Right is${row.unit ? `, in ${row.unit}` : ""}`, code: true, rows: row.kind === "remarked", attributes: row.kind === "read" || row.kind === "proved" ? { inputmode: "none", "data-right": true } : { "data-right": true } });
+  const text = field({ label: `Right is${row.unit ? `, in ${pretty(row.unit)}` : ""}`, code: true, rows: row.kind === "remarked", attributes: row.kind === "read" || row.kind === "proved" ? { inputmode: "none", "data-right": true } : { "data-right": true } });
   const reason = field({ label: "Why it was wrong", attributes: { "data-reason": true } });
   const go = async () => {
     if (!text.input.value.trim()) { text.wrong("Write what it should have been."); return; }

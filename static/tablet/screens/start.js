@@ -14,7 +14,7 @@ export async function startScreen(app) {
   const usable = kit.procedures.filter((/** @type {any} */ p) => p.sheet !== null || p.sheet === undefined);
   const procedure = picks({ legend: "Procedure", options: usable.map((/** @type {any} */ p) => ({ value: p.procedure, label: p.title, small: `edition ${p.edition}${crew(p) > 1 ? `, ${crew(p)} people` : ""}` })), onchange: () => update() });
   const cabinets = Object.entries(registers.cabinets);
-  const cabinet = picks({ legend: "Cabinet", options: cabinets.map(([id, c]) => ({ value: id, label: `Cabinet ${id}`, small: /** @type {any} */ (c).title })), onchange: () => tubesFor() });
+  const cabinet = picks({ legend: "Cabinet", options: cabinets.map(([id, c]) => ({ value: id, label: `Cabinet ${id}`, small: /** @type {any} */ (c).title === `Cabinet ${id}` ? null : /** @type {any} */ (c).title })), onchange: () => tubesFor() });
   const tubeBox = h("div"), present = picks({ legend: "Who is here, by name", many: true, options: people.map((/** @type {any} */ p) => ({ value: p.id, label: p.name, small: p.enrolledHere ? p.roles.join(", ") : "not enrolled on this tablet: cannot sign here" })), onchange: () => recorders() });
   const recorderBox = h("div");
   let tube = /** @type {ReturnType<typeof picks> | null} */ (null), recorder = /** @type {ReturnType<typeof picks> | null} */ (null);

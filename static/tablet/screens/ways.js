@@ -3,10 +3,11 @@
  * needs a supervisor's own passphrase; stop and make safe is never gated.
  */
 import { field, h, put } from "../dom.js";
+import { showSentence } from "../judging.js";
 import { passphrase } from "../passphrase.js";
 import { limitScale } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
-import { personName, minus, time } from "../words.js";
+import { minus, personName, pretty, time } from "../words.js";
 import { stepHead, work } from "../step_page.js";
 
 /** @param {any} ctx @param {any} move @returns {{title: string, small: string, order: number}} */
@@ -24,11 +25,12 @@ function wordsOf(ctx, move) {
 /** The reading that waits for a decision, as it was recorded. @param {any} ctx @param {any} row */
 function recorded(ctx, row) {
   if (!row) return null;
-  const text = row.text || row.value, box = h("div", { class: "verdict" });
+  const text = row.text || row.value, box = h("div", { class: "verdict" }), sentence = h("p", { class: "sentence" });
+  showSentence(sentence, row);
   showVerdict(box, row.verdict ?? null);
-  return [h("div", { class: "entry" }, h("div", { class: "well" }, h("span", { class: "figure" }, h("span", {}, minus(text ?? "")), h("span", { class: "u" }, row.unit ?? ""))), box),
+  return [h("div", { class: "entry" }, h("div", { class: "well" }, h("span", { class: "figure" }, h("span", {}, minus(text ?? "")), h("span", { class: "u" }, pretty(row.unit ?? "")))), box),
     h("div", { class: "scalebox" }, row.limits && text ? limitScale({ limits: row.limits, plate: ctx.progress.plate, found: { u: row.u, margin: row.margin, verdict: row.verdict }, text: String(text), unit: row.unit }) : null),
-    h("p", { class: "sentence" }, row.words ?? "")];
+    sentence];
 }
 
 /** @param {any} ctx */
