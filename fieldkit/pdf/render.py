@@ -29,6 +29,8 @@ Paper = Literal["A4", "Letter"]
 #: paper -> size for CSS, and the width of the title block between the margins of print.css
 PAPERS: dict[str, tuple[str, str]] = {"A4": ("210mm 297mm", "184mm"), "Letter": ("8.5in 11in", "189.9mm")}
 #: Letter is 18 mm shorter, so its figure is smaller, in the same proportion
+#: where the signatures do not fit on the first page, the readings follow them instead of leaving a page half empty
+_SPILL = "section.readings.fresh{break-before:auto}section.readings.fresh h2{margin-top:7mm}"
 _SHORT = ".fig{width:52mm}.fig img{width:52mm;height:74.6mm}.fig.tall img{height:88.9mm}"
 #: as many things that deserve attention stand on the first page
 FIRST = 7
@@ -155,12 +157,7 @@ def typeset_pages(text: str, data: bytes, pictures: Mapping[str, bytes], paper: 
     css = f"@page{{size:{size}}}\n{css}\n.tb{{width:{width}}}\n{_SHORT if paper == 'Letter' else ''}"
     resources = {f"picture/{sha}": (_JPEG, jpeg) for sha, jpeg in pictures.items()}
     identifier = hashlib.sha256(data).digest()[:16]
-    made = typeset.pages(text, css, identifier=identifier, resources=resources)
-    if made.boxes["supervisor"].page == 0:
-        return made
-    # The signatures did not fit on the first page: the readings then follow them instead of leaving a page half empty.
-    css += "section.readings.fresh{break-before:auto}"
-    return typeset.pages(text, css, identifier=identifier, resources=resources)
+    return typeset.pages(text, css, identifier=identifier, resources=resources, otherwise=("supervisor", _SPILL))
 
 
 def _attachments(data: bytes, rendering: bytes, attached: Files) -> list[Attached]:

@@ -15,6 +15,7 @@ from asn1crypto import x509 as asn1_x509
 from cryptography.hazmat.primitives import serialization
 from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
 from pyhanko.sign import fields, signers
+from pyhanko.stamp import NoOpStampStyle
 from pyhanko_certvalidator.registry import SimpleCertificateStore
 
 from fieldkit.errors import Refusal
@@ -76,7 +77,8 @@ def seal(pdf: bytes, seal: Seal, now: dt.datetime) -> bytes:
     )
     out = io.BytesIO()
     writer = IncrementalPdfFileWriter(io.BytesIO(pdf))
-    work = Timed(meta, signer=signer, now=now).async_sign_pdf(
+    # The block on the page says what the seal is; the library's own stamp would draw over it, in a font not embedded.
+    work = Timed(meta, signer=signer, stamp_style=NoOpStampStyle(), now=now).async_sign_pdf(
         writer, existing_fields_only=True, bytes_reserved=RESERVED, output=out
     )
     asyncio.run(work)

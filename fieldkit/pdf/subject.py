@@ -26,6 +26,8 @@ from fieldkit.trust.certificates import Certificate
 
 #: a record with a hundred pictures stays far below; what is larger is refused unread
 LARGEST = 400_000_000
+#: a time claimed by a tablet may be ahead of this machine's clock by so much
+AHEAD = dt.timedelta(days=1)
 
 
 class Subject:
@@ -35,6 +37,10 @@ class Subject:
         self.data = data
         self.authority = authority
         self.now = now
+
+    def to_come(self, time: dt.datetime) -> bool:
+        """Whether a claimed time lies in the future, clocks being what they are."""
+        return time > self.now + AHEAD
 
     @cached_property
     def pdf(self) -> pikepdf.Pdf:

@@ -110,21 +110,29 @@ def pages(
     identifier: bytes,
     resources: Mapping[str, tuple[str, bytes]] | None = None,
     variant: str | None = "pdf/a-3a",
+    otherwise: tuple[str, str] | None = None,
 ) -> Pages:
     """The pages of `html` under `css`. `resources` are pictures by name (media type, bytes), asked for as fieldkit:...
 
-    `identifier` becomes the file's identifier; the same arguments give the same bytes. Raises TypesetError, and
-    Refusal typesetting-missing.
+    `otherwise` is an id and more CSS: when that element does not come to stand on the first page, the pages are laid
+    out again with the CSS added. `identifier` becomes the file's identifier; the same arguments give the same bytes.
+    Raises TypesetError, and Refusal typesetting-missing.
     """
     weasyprint = library()
     closed = importlib.import_module("fieldkit.pdf.fetcher").Closed
     fetcher = closed({**_font_files(), **(resources or {})})
     with _LOCK, _no_system_fonts(), _complaints() as complaints, _refusals():
         fonts = importlib.import_module("weasyprint.text.fonts").FontConfiguration()
-        sheet = weasyprint.CSS(string=_faces() + css, font_config=fonts, url_fetcher=fetcher)
-        document = weasyprint.HTML(string=html, base_url="fieldkit:", url_fetcher=fetcher).render(
-            stylesheets=[sheet], font_config=fonts, pdf_variant=variant, pdf_tags=variant is not None
-        )
+
+        def laid_out(text: str) -> Any:
+            sheet = weasyprint.CSS(string=_faces() + text, font_config=fonts, url_fetcher=fetcher)
+            return weasyprint.HTML(string=html, base_url="fieldkit:", url_fetcher=fetcher).render(
+                stylesheets=[sheet], font_config=fonts, pdf_variant=variant, pdf_tags=variant is not None
+            )
+
+        document = laid_out(css)
+        if otherwise and otherwise[0] not in document.pages[0].anchors:
+            document = laid_out(css + otherwise[1])
         pdf = document.write_pdf(
             pdf_identifier=identifier, pdf_variant=variant, pdf_tags=variant is not None, custom_metadata=False
         )

@@ -25,6 +25,8 @@ SEAL = "seal"
 AUTHORITY_YEARS = 30
 PERSON_YEARS = 5
 SEAL_YEARS = 10
+#: certificates begin this much before they are made, because a tablet's clock may be behind the server's
+BEHIND = dt.timedelta(days=1)
 
 Certificate = x509.Certificate
 
@@ -82,7 +84,7 @@ def _builder(
     count: int,
     latest: dt.datetime | None = None,
 ) -> x509.CertificateBuilder:
-    start = years(now, 0)
+    start = years(now, 0) - BEHIND
     end = years(now, count) if latest is None else min(latest, years(now, count))
     identifier = x509.SubjectKeyIdentifier.from_public_key(public)
     builder = x509.CertificateBuilder(issuer_name=issuer, subject_name=subject, public_key=public)

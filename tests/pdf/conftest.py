@@ -1,4 +1,4 @@
-"""A station with its authority, seal and people, made once; and a plain page that is sealed where no record is needed."""
+"""A station with its authority, seal and people, made once; and a plain page to seal where no record is needed."""
 
 from __future__ import annotations
 
@@ -56,6 +56,11 @@ def station(tmp_path_factory) -> Station:
     station.enrol("j.vell", "J. Vell", "technician")
     station.enrol("s.quill", "S. Quill", "technician", "supervisor")
     station.enrol("p.ardin", "P. Ardin", "supervisor")
+    # the people of the played run
+    station.enrol("vell", "J. Vell", "technician")
+    station.enrol("arkle", "P. Arkle", "technician")
+    station.enrol("quill", "S. Quill", "supervisor")
+    station.enrol("orme", "K. Orme", "supervisor")
     return station
 
 
@@ -79,3 +84,16 @@ def plain() -> bytes:
 @pytest.fixture(scope="session")
 def sealed(plain, station) -> bytes:
     return seal.seal(plain, station.seal, NOW)
+
+
+@pytest.fixture(scope="session")
+def run(station):
+    """A finished run of every kind of event, with real signatures."""
+    from .played import run as play
+
+    return play(station)
+
+
+@pytest.fixture(scope="session")
+def countersigned(run) -> bytes:
+    return run.countersigned()

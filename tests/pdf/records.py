@@ -9,12 +9,22 @@ from fieldkit.record.lines import Limits, Note, Reading
 
 SHEET, HEAD = hashlib.sha256(b"sheet").hexdigest(), hashlib.sha256(b"head").hexdigest()
 LANES = (
-    ("beam_supply", "Beam supply", "Beam", (("locked", 12.97), ("proved", 13.2), ("off", 14.1), ("on", 14.6), ("off", 16.5))),
+    (
+        "beam_supply",
+        "Beam supply",
+        "Beam",
+        (("locked", 12.97), ("proved", 13.2), ("off", 14.1), ("on", 14.6), ("off", 16.5)),
+    ),
     ("heater", "Heater", "Heater", (("off", 12.97), ("on", 14.15))),
     ("bias", "Bias", "Bias", (("off", 12.97), ("on", 14.42))),
     ("magnets", "Magnets", "Magnets", (("off", 12.97), ("on", 14.1))),
     ("coolant", "Coolant", "Coolant", (("off", 12.97), ("on", 13.8))),
-    ("rf_drive", "RF drive", "RF drive", (("locked", 12.97), ("proved", 13.25), ("off", 15.7), ("on", 15.8), ("off", 16.45))),
+    (
+        "rf_drive",
+        "RF drive",
+        "RF drive",
+        (("locked", 12.97), ("proved", 13.25), ("off", 15.7), ("on", 15.8), ("off", 16.45)),
+    ),
     ("ion_pump", "Ion pump", "Ion pump", (("on", 12.97),)),
 )
 
@@ -52,10 +62,20 @@ def readings(count: int = 1):
 
 
 def _note(seq, says, title="", number="7"):
-    return Note(seq=seq, at="2026-07-31T13:10:00+01:00", time="13:10:00", by_name="J. Vell", number=number, title=title, says=says)
+    return Note(
+        seq=seq,
+        at="2026-07-31T13:10:00+01:00",
+        time="13:10:00",
+        by_name="J. Vell",
+        number=number,
+        title=title,
+        says=says,
+    )
 
 
-def record(count: int = 1, rehearsal: bool = False, proved: bool = False, pictures: tuple = (), **named) -> model.Record:
+def record(
+    count: int = 1, rehearsal: bool = False, proved: bool = False, pictures: tuple = (), **named
+) -> model.Record:
     """The record; `count` times its readings and its log."""
     kid = hashlib.sha256(b"kid").hexdigest()
     data = dict(

@@ -34,7 +34,13 @@ def _signatures(data, station):
 def test_the_seal_certifies_and_leaves_only_the_supervisors_field_free(sealed, station):
     assert signed.names(PdfFileReader(io.BytesIO(sealed))) == {assemble.SEAL: True, assemble.SUPERVISOR: False}
     found = _signatures(sealed, station)[assemble.SEAL]
-    assert (found.problem, found.genuine, found.certifies, found.whole_file, found.locks) == ("", True, True, True, False)
+    assert (found.problem, found.genuine, found.certifies, found.whole_file, found.locks) == (
+        "",
+        True,
+        True,
+        True,
+        False,
+    )
     assert found.time == NOW
 
 
@@ -52,7 +58,7 @@ def test_the_supervisors_block_says_who_what_when_and_with_which_key(sealed, sta
     pdf = pikepdf.open(io.BytesIO(station.countersign(sealed)))
     (field,) = [f for f in pdf.Root.AcroForm.Fields if f.T == assemble.SUPERVISOR]
     key = appearance.grouped(certificates.digest(station.certificates["p.ardin"]))
-    words = f"Supervisor P. Ardin “{appearance.REVIEWED}” 2026-08-01 09:12:55 +01:00 key {key}"
+    words = f"P. Ardin “{appearance.REVIEWED}” 2026-08-01 09:12:55 +01:00 key {key}"
     assert text.squeeze(text.form(field.AP.N)) == text.squeeze(words)
     assert "/Lock" in field and field.Lock.P == 1 and field.Lock.Action == "/All"
 

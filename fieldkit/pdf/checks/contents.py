@@ -20,7 +20,11 @@ _SUPERVISORS = {"allowed"}
 
 def attached(subject: Subject) -> str:
     """Every file that a record needs is attached, no other is, and each has the hash that the run names."""
-    files = subject.files
+    try:
+        files = subject.files
+        _ = subject.sheet if inside.SHEET in files else None
+    except Unknown as exc:
+        raise Wrong(str(exc)) from exc
     wrong = [f"{name} is not attached." for name in inside.REQUIRED if name not in files]
     pictures = inside.pictures(files)
     known = {*inside.REQUIRED, *(inside.picture(p) for p in pictures)}
@@ -50,7 +54,11 @@ def _named(subject: Subject, pictures: set[str]) -> list[str]:
 
 def chain(subject: Subject) -> str:
     """The events are one unbroken chain from the sheet on."""
-    events = subject.events
+    subject.file(inside.EVENTS)
+    try:
+        events = subject.events
+    except Unknown as exc:
+        raise Wrong(str(exc)) from exc
     started = _started(events)
     wrong = []
     before = _sha(subject.file(inside.SHEET))
@@ -121,7 +129,7 @@ def _check_signer(subject: Subject, certificate: certificates.Certificate, paylo
         time = dt.datetime.fromisoformat(str(payload.get("time")))
     except ValueError as exc:
         raise Refusal("bad-time", "The signature claims no time.") from exc
-    if time.tzinfo is None or time > subject.now:
+    if time.tzinfo is None or subject.to_come(time):
         raise Refusal("bad-time", f"The signature claims a time that has not come yet: {payload['time']}.")
     if subject.authority is not None:
         certificates.check_chain(certificate, subject.authority, time)
@@ -152,7 +160,7 @@ def _unsigned(events: list[Event], signed: dict[str, list[tuple[int, str]]]) -> 
 
 
 def _unallowed(events: list[Event]) -> list[str]:
-    """A release and a deviation are each followed at once by the signature of the one named, who did not record it."""
+    """Who released, allowed or unlocked signs at once; a release and a deviation take another than the recorder."""
     wrong = []
     for number, event in enumerate(events):
         who, meaning = _second(event)
@@ -166,7 +174,7 @@ def _unallowed(events: list[Event]) -> list[str]:
         )
         if not fits:
             wrong.append(f"Event {event.head.seq} names {who}, whose signature does not follow it.")
-        elif who == event.head.by:
+        elif who == event.head.by and meaning != "unlocked":
             wrong.append(f"Event {event.head.seq} was {meaning} by {who}, who recorded it.")
     return wrong
 
@@ -176,6 +184,8 @@ def _second(event: Event) -> tuple[str, str]:
         return event.body.who, "released"
     if event.head.kind == "went-on" and event.body.authority:
         return event.body.authority, "allowed"
+    if event.head.kind == "unlocked":
+        return event.body.who, "unlocked"
     return "", ""
 
 

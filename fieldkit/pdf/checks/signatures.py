@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 from fieldkit.errors import Refusal
 from fieldkit.pdf import signed
 from fieldkit.pdf.assemble import SEAL, SUPERVISOR
@@ -13,6 +15,7 @@ from fieldkit.trust.certificates import Holder
 
 #: revisions of a finished file: as put together, sealed, countersigned
 REVISIONS = 3
+_END = re.compile(rb"\nstartxref\n\d+\n%%EOF\n\Z")
 #: where the signatures are said to stand, by field
 _WHOSE = {SEAL: "the station's seal", SUPERVISOR: "the supervisor's signature"}
 
@@ -65,6 +68,8 @@ def countersignature(subject: Subject) -> str:
 
 def untouched(subject: Subject) -> str:
     """Nothing was added, changed or left over beside what the two signatures cover."""
+    if not _END.search(subject.data):
+        raise Wrong("The file does not end where a PDF ends: something follows it.")
     wrong = []
     found = subject.signatures
     for name in (SEAL, SUPERVISOR):
@@ -99,7 +104,7 @@ def trusted(subject: Subject) -> str:
             wrong.append(f"{_whose(name)} has no certificate to judge.")
         elif signature.time is None:
             wrong.append(f"{_whose(name)} claims no time.")
-        elif signature.time > subject.now:
+        elif subject.to_come(signature.time):
             wrong.append(f"{_whose(name)} claims a time that has not come yet: {_when(signature)}.")
         else:
             try:
