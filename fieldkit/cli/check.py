@@ -22,7 +22,7 @@ from fieldkit.formula.library import Library
 from fieldkit.procedure.compile import compile_bytes
 from fieldkit.sheet import model
 from fieldkit.sheet.model import Sheet
-from fieldkit.yaml_source import Mapping, read
+from fieldkit.yaml_source import Mapping, Node, Sequence, read
 
 WINDOW = 100
 
@@ -35,6 +35,8 @@ class Looked:
     problems: list[Problem]
     sheet: Sheet | None = None
     source: str = ""
+    #: of a formula file: what was tried
+    tried: str = ""
 
     @property
     def clean(self) -> bool:
@@ -63,17 +65,11 @@ def run(args: argparse.Namespace) -> int:
 
 def look(path: Path) -> list[Looked]:
     """Every file at `path`, read, compiled or tried."""
-    if path.is_dir():
-        files = sorted(p for p in path.rglob("*.yaml") if p.is_file())
-        formulas = library.load(path / "formulas") if (path / "formulas").is_dir() else _shipped()
-    else:
-        files, beside = [path], path.parent / "formulas"
-        formulas = library.load(beside) if beside.is_dir() else _shipped()
-    return [_look_at(file, formulas) for file in files]
-
-
-def _shipped() -> Library:
-    return library.load(folder("procedures") / "formulas")
+    files = sorted(p for p in path.rglob("*.yaml") if p.is_file()) if path.is_dir() else [path]
+    beside = (path if path.is_dir() else path.parent) / "formulas"
+    home = beside if beside.is_dir() else folder("procedures") / "formulas"
+    formulas = library.load(home)
+    return [_look_at(file, home, formulas) for file in files]
 
 
 def shown(path: Path) -> str:
@@ -82,15 +78,24 @@ def shown(path: Path) -> str:
     return str(path) if relative.startswith("..") else relative
 
 
-def _look_at(file: Path, formulas: Library) -> Looked:
+def _look_at(file: Path, home: Path, formulas: Library) -> Looked:
     name, data = shown(file), file.read_bytes()
     source = data.decode("utf-8", "replace")
     node, _ = read(data, name)
     if isinstance(node, Mapping) and "formulas" in node:
-        own = library.load(file.parent)
-        return Looked(name, [p for p in own.problems if Path(p.file).resolve() == file.resolve()], None, source)
+        own = formulas if file.parent.resolve() == home.resolve() else library.load(file.parent)
+        problems = [p for p in own.problems if Path(p.file).resolve() == file.resolve()]
+        return Looked(name, problems, None, source, _tried(node.get("formulas")))
     sheet, problems = compile_bytes(data, name, formulas)
     return Looked(name, problems, sheet, source)
+
+
+def _tried(node: Node | None) -> str:
+    """How many formulas and worked examples a file has; all of them were tried."""
+    entries = [e.value for e in node if isinstance(e.value, Mapping)] if isinstance(node, Mapping) else []
+    examples = [e.get("examples") for e in entries]
+    count = sum(len(x) for x in examples if isinstance(x, Sequence))
+    return f"{len(entries)} formula{'' if len(entries) == 1 else 's'}, {count} worked examples tried"
 
 
 def as_text(found: list[Looked]) -> str:
@@ -105,7 +110,7 @@ def _summary(one: Looked) -> str:
     counted = [f"{n} {word}{'' if n == 1 else 's'}" for n, word in ((problems, "problem"), (warnings, "warning")) if n]
     state = ", ".join(counted) or "clean"
     if one.sheet is None:
-        return f"{one.file}: {state}"
+        return f"{one.file}: {state}" + (f"; {one.tried}" if one.tried else "")
     what = f"edition {one.sheet.edition}, {len(one.sheet.steps)} steps, {len(one.sheet.moves)} moves"
     return f"{one.file}: {state}; {what}, sheet {model.digest(model.to_bytes(one.sheet))[:12]}, not proved"
 

@@ -7,6 +7,7 @@ files in tests/lint/err. Not here: the safety proof; rules about one step alone 
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator
 from typing import Any
 
@@ -59,16 +60,21 @@ def _make_safe_leaves_it_on(items: list[Item], head: dict[str, Any], scope: Scop
             scope.found.add(lines[0].place, "make-safe-leaves", message, remedy, "warning")
 
 
-def _fact_without_way_back(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
-    """A pause clears facts; a step that needs one must then lead back to where it is shown."""
+def _no_way_back(items: list[Item], head: dict[str, Any], scope: Scope) -> None:
+    """A pause clears facts, and a greatest age passes; a step that needs either must then lead back to it."""
     for item in items:
         if item.written is None or item.written.or_else is not None:
             continue
         for scalar in item.written.needs:
-            if " ".join(scalar.text.split()) in scope.facts:
-                message = f'a pause clears "{scalar.text}", and nothing leads back to where it is shown'
-                remedy = "write or_else: with the step that shows it"
-                scope.found.add(scalar.place, "no-way-back", message, remedy, "warning")
+            written = " ".join(scalar.text.split())
+            if written in scope.facts:
+                message = f'a pause clears "{written}", and nothing leads back to where it is shown'
+            elif re.search(r"^[a-z][a-z0-9_]* within ", written):
+                message = f'"{written}" can pass, and nothing leads back'
+            else:
+                continue
+            remedy = "write or_else: with the step to take again"
+            scope.found.add(scalar.place, "no-way-back", message, remedy, "warning")
 
 
 def _given_unused(sheet: Sheet, places: dict[int, Place], scope: Scope) -> None:
@@ -129,7 +135,7 @@ WRITTEN: tuple[Callable[[list[Item], dict[str, Any], Scope], None], ...] = (
     _second_person_alone,
     _end_not_said,
     _make_safe_leaves_it_on,
-    _fact_without_way_back,
+    _no_way_back,
 )
 SHEET: tuple[Callable[[Sheet, dict[int, Place], Scope], None], ...] = (
     _given_unused,

@@ -11,8 +11,9 @@ from typing import Any
 import pytest
 from walker import shipped
 
+from fieldkit.files import folder
 from fieldkit.formula import evaluate as evaluation
-from fieldkit.formula.library import Library
+from fieldkit.formula import library
 from fieldkit.procedure.compile import compile_file
 from fieldkit.sheet.model import Sheet
 from fieldkit.sheet.moves import END, SAFE, Move
@@ -27,7 +28,7 @@ NAMES += [f"lint/ok/{p.stem}" for p in sorted((HERE / "lint" / "ok").glob("*.yam
 def sheet(request: pytest.FixtureRequest) -> Sheet:
     if "/" not in request.param:
         return shipped(request.param)
-    found, problems = compile_file(HERE / f"{request.param}.yaml", Library())
+    found, problems = compile_file(HERE / f"{request.param}.yaml", library.load(folder("procedures") / "formulas"))
     assert found is not None, problems
     return found
 
