@@ -54,6 +54,11 @@ def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--data", metavar="DIR", help="data folder (else $FIELDKIT_DATA, else the platform's place for it)"
     )
+    parser.add_argument(
+        "--database",
+        metavar="URL",
+        help="PostgreSQL instead of SQLite (else $FIELDKIT_DATABASE); keys stay in the folder",
+    )
     parser.add_argument("--host", default="0.0.0.0", help="address to listen on (default: every address)")  # noqa: S104
     parser.add_argument("--port", type=int, default=PORT, help=f"port to listen on (default {PORT})")
     parser.add_argument(
@@ -82,9 +87,10 @@ def run(args: argparse.Namespace) -> int:
         place = _place(args)
         folder = station.data_folder(args.data)
         with _alone(folder):
-            _prepare(args, folder, place)
+            database = args.database or os.environ.get("FIELDKIT_DATABASE")
+            _prepare(args, folder, place, database)
             if not args.set_up_only:
-                _serve(folder, place)
+                _serve(folder, place, database)
     except Refusal as bad:
         print(f"fieldkit serve: {bad.sentence} [{bad.code}]", file=sys.stderr)
         return 2 if bad.code in ("plain-http", "bad-host-name") else 1
@@ -153,9 +159,9 @@ def _alone(folder: Path) -> Iterator[None]:
         yield
 
 
-def _prepare(args: argparse.Namespace, folder: Path, place: Place) -> None:
+def _prepare(args: argparse.Namespace, folder: Path, place: Place, database: str | None) -> None:
     """Set up at the first start, load what was asked for, and say where it is."""
-    app = create_app(folder, plain_http=place.plain, hosts=_trusted(place))
+    app = create_app(folder, plain_http=place.plain, hosts=_trusted(place), database_url=database)
     held: station.Station = app.extensions["fieldkit"]
     if not place.plain:
         _tls(held.tls, place)
@@ -267,8 +273,8 @@ def start(folder: Path, place: Place) -> None:
         _serve(folder, place)
 
 
-def _serve(folder: Path, place: Place) -> None:
-    """Serve until stopped: one process that writes, several threads."""
+def _serve(folder: Path, place: Place, database: str | None = None) -> None:
+    """Serve a station that is set up, until stopped: one process that writes, several threads."""
     from gunicorn.app.base import BaseApplication
 
     class Server(BaseApplication):  # type: ignore[misc, unused-ignore]
@@ -277,7 +283,7 @@ def _serve(folder: Path, place: Place) -> None:
                 self.cfg.set(name, value)
 
         def load(self) -> Any:
-            return create_app(folder, plain_http=place.plain, hosts=_trusted(place))
+            return create_app(folder, plain_http=place.plain, hosts=_trusted(place), database_url=database)
 
     Server().run()
 

@@ -14,7 +14,7 @@ import secrets
 from sqlalchemy import delete, select
 
 from fieldkit.errors import Refusal
-from fieldkit.operations import moment, people
+from fieldkit.operations import moment, notices, people
 from fieldkit.operations.actor import Actor
 from fieldkit.store.db import db, writing
 from fieldkit.store.tables import Miss, Person, SignedIn
@@ -30,6 +30,9 @@ FREE = 4
 FORGOTTEN = dt.timedelta(minutes=15)
 #: seconds; the same account from the same address, and one account from anywhere (kept short: nobody is locked out)
 CAP_HERE, CAP_ACCOUNT, FREE_ACCOUNT = 60.0, 5.0, 20
+
+#: an administrator is told of an account when its wrong tries reach one of these
+ALARMING = (10, 100, 1000)
 
 #: compared with when there is no such person, so that the answer takes as long
 _NOBODY = people.HASHER.hash(secrets.token_hex(16))
@@ -50,7 +53,7 @@ def check_password(login: str, password: str, where: str, at: dt.datetime | None
     row = db.session.scalar(select(Person).where(Person.login == login))
     fits = people.fits(row.password if row else _NOBODY, password[: people.LONGEST])
     if row is None or not fits or not row.active:
-        _missed([key for key, _, _ in keys], at)
+        _missed(login, where, [key for key, _, _ in keys], at)
         raise Refusal("wrong-password", "That name and password do not fit together. Nothing is locked; try again.")
     actor = Actor(row.id, row.name, tuple(json.loads(row.roles)))
     hashed = people.hash_password(password) if people.HASHER.check_needs_rehash(row.password) else None
@@ -108,7 +111,7 @@ def _wait(key: str, free: int, cap: float, at: dt.datetime) -> float:
     return pause - (at - moment.read(row.last)).total_seconds()
 
 
-def _missed(keys: list[str], at: dt.datetime) -> None:
+def _missed(login: str, where: str, keys: list[str], at: dt.datetime) -> None:
     with writing() as session:
         session.execute(delete(Miss).where(Miss.last < moment.text(at - FORGOTTEN)))
         for key in keys:
@@ -117,3 +120,6 @@ def _missed(keys: list[str], at: dt.datetime) -> None:
                 session.add(Miss(key=key, count=1, last=moment.text(at)))
             else:
                 row.count, row.last = row.count + 1, moment.text(at)
+                if key == keys[-1] and row.count in ALARMING:
+                    says = f"{row.count} wrong passwords in a row, the last from {where or 'nowhere known'}."
+                    notices.add(session, "sign-in", says, f"{login} {moment.text(at)}")

@@ -81,7 +81,7 @@ def set_roles(person: str) -> ResponseReturnValue:
 @blueprint.post("/people/<person>/out")
 @ADMIN
 def put_out(person: str) -> ResponseReturnValue:
-    return _active(person, False, "is out of use; what they signed stays.")
+    return _active(person, False, "is out of use; what they signed stays. Their keys are revoked below, tablet by tablet.")
 
 
 @blueprint.post("/people/<person>/back")

@@ -10,7 +10,9 @@ import subprocess
 import threading
 import time
 
+import psycopg
 import pytest
+from postgresql_in_tests import fresh_database
 from server_in_tests import PASSPHRASE, PASSWORD, Client, Serving, command, environment
 from station_in_tests import SEED, furnish, held, issue
 from tablet_in_python import RunOnTablet, TabletInPython
@@ -158,3 +160,12 @@ def test_every_receipt_survives_a_server_that_is_killed_at_any_moment(tmp_path):
         assert given.items() <= stored.items()
         assert sorted(stored) == list(range(len(stored)))
     assert len(given) > rounds, "the server was killed before anything was received; the test tried nothing"
+
+
+def test_a_station_on_postgresql(tmp_path, postgresql):
+    url = fresh_database(postgresql, "served")
+    done = finished("--data", str(tmp_path / "d"), "--set-up-only", *FIRST, FIELDKIT_DATABASE=url)
+    assert done.returncode == 0, done.stderr
+    assert not (tmp_path / "d" / "fieldkit.db").exists()
+    with psycopg.connect(f"host={postgresql} user=fieldkit dbname=served") as connection:
+        assert connection.execute("SELECT login FROM people").fetchall() == [("orme",)]

@@ -157,6 +157,15 @@ def test_the_wait_grows_is_capped_and_is_forgotten(inside):
     assert signin.check_password("vell", PASSWORD, "here", at + signin.FORGOTTEN + dt.timedelta(seconds=1)).id == "vell"
 
 
+def test_an_administrator_is_told_when_an_account_is_tried_again_and_again(inside):
+    from fieldkit.operations import notices
+
+    for n in range(12):
+        code_of(lambda n=n: signin.check_password("vell", "wrong", f"192.0.2.{n}", AT + dt.timedelta(seconds=n)))
+    found = notices.latest()
+    assert [line.code for line in found] == ["sign-in"] and "10 wrong passwords" in found[0].says
+
+
 def test_a_certificate_says_who_and_the_roles_that_sign(app):
     tablet = TabletInPython(app.test_client())
     tablet.enrol("quill", PASSWORD)
