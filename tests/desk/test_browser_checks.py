@@ -1,6 +1,6 @@
 """The browser's own check before it signs: run in node on a file that the server prepared, and on tampered ones.
 
-Source of the form checked: RFC 5652, 5.3 and 5.4 (signed attributes, message digest), RFC 5035 (signing certificate v2).
+Form checked: RFC 5652, 5.3 and 5.4 (signed attributes, message digest), RFC 5035 (signing certificate v2).
 """
 
 from __future__ import annotations

@@ -187,7 +187,8 @@ def test_countersigning_over_the_wire_and_downloading_the_file(desk, supervisor)
 
 @pytest.mark.parametrize(
     ("body", "code"),
-    [({}, "bad-request"), ({"kid": "0" * 64, "paper": "A3"}, "bad-request"), ({"kid": "0" * 64, "paper": "A4"}, "unknown-key"),
+    [({}, "bad-request"), ({"kid": "0" * 64, "paper": "A3"}, "bad-request"),
+     ({"kid": "0" * 64, "paper": "A4"}, "unknown-key"),
      ([], "bad-request")],
 )  # fmt: skip
 def test_a_wrong_question_is_refused_in_json(desk, supervisor, body, code):
