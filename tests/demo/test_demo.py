@@ -1,0 +1,85 @@
+"""The demonstration is made through the same operations as a real station's work, and its record verifies elsewhere."""
+
+from __future__ import annotations
+
+import datetime as dt
+import json
+import os
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+from fieldkit.demo import build, registers
+from fieldkit.operations import review, runs
+from fieldkit.pdf.verify import verify
+
+NOW = dt.datetime.now(dt.UTC)
+
+
+def fieldkit(*words: str, place: Path) -> subprocess.CompletedProcess[str]:
+    command = [sys.executable, "-m", "fieldkit.cli.main", *words]
+    return subprocess.run(command, cwd=place, env=dict(os.environ), capture_output=True, text=True, timeout=180)
+
+
+@pytest.fixture(scope="module")
+def made(tmp_path_factory):
+    """The whole demonstration, filled once."""
+    folder = tmp_path_factory.mktemp("demo")
+    with build.opened(folder):
+        demo = build.prepare(folder, NOW, build.signs(), lambda said: None)
+        third = build.tablet(demo, "demo-tablet-3", "tablet 3", NOW - dt.timedelta(hours=5))
+        warm = build.warm_up(demo, third)
+        pdf = build.countersign(demo, warm.run)
+        third.clock.pass_by(720)
+        climbed = build.bring_up(demo, third)
+        fourth = build.tablet(demo, "demo-tablet-4", "tablet 4", NOW - dt.timedelta(minutes=25))
+        going = build.still_going(demo, fourth)
+        yield demo, warm, pdf, climbed, going
+
+
+def test_one_record_is_countersigned_one_waits_and_one_run_is_open(made):
+    states = {line.run: line.state for line in review.lines()}
+    _, warm, _, climbed, going = made
+    assert states == {warm.run: "countersigned", climbed.run: "waiting", going.run: "open"}
+
+
+def test_what_was_played_agrees_with_the_engine(made):
+    for run in (made[1], made[3], made[4]):
+        assert run.state["disagree"] == []
+        assert [e.raw.decode() for e in runs.load(run.run).events] == run.texts
+
+
+def test_the_bring_up_fell_back_once_for_gas_and_ended_locked(made):
+    climbed = made[3]
+    failed = [row for row in climbed.state["log"] if row["outcome"] == "fail"]
+    assert [row["step"] for row in failed] == ["climb_ion"]
+    levels = [row["level"] for row in climbed.state["log"] if row["step"] == "climb_ion"]
+    assert levels == [f"{kv} kV" for kv in (18, 20, 22, 24, 26, 24, 26, 28, 30, 32)]
+    assert {lock["point"] for lock in climbed.state["locks"]} == {"Q1", "S4"}
+
+
+def test_the_countersigned_record_holds_with_its_authority_and_not_without(made):
+    demo, _, pdf, _, _ = made
+    assert verify(pdf, demo.held.authority_pem).holds
+    assert not verify(pdf, None).holds
+
+
+def test_dates_of_the_registers_move_with_the_day_and_one_meter_stays_overdue():
+    later = registers.WRITTEN_FOR + dt.timedelta(days=400)
+    instruments = registers.seed(later)["instruments"]
+    assert instruments["DM-04"]["calibrated_to"] > later.isoformat()
+    overdue = [key for key, one in instruments.items() if one["calibrated_to"] < later.isoformat()]
+    assert overdue == ["RM-1"]
+
+
+def test_a_record_is_made_and_verified_by_the_command_line_alone(tmp_path):
+    done = fieldkit("demo", "--record", str(tmp_path / "out"), place=tmp_path)
+    assert done.returncode == 0, done.stderr
+    pdf, certificate = (Path(line) for line in done.stdout.splitlines())
+    assert pdf.is_file() and certificate.is_file()
+    told = fieldkit("verify", str(pdf), "--ca", str(certificate), "--json", place=tmp_path)
+    assert told.returncode == 0, told.stdout
+    assert json.loads(told.stdout)
+    assert fieldkit("verify", str(pdf), place=tmp_path).returncode == 1
