@@ -17,7 +17,7 @@ from run_twin import Twin, digest
 
 from fieldkit.run import state
 
-SHEETS = {"tiny": (drive.tiny, 30, 70), "warm-up": (lambda: walking.real("warm-up"), 14, 110), "hv-bring-up": (lambda: walking.real("hv-bring-up"), 10, 130)}  # fmt: skip
+SHEETS = {"tiny": (drive.tiny, 30, 70), "warm-up": (lambda: walking.real("warm-up"), 10, 110), "hv-bring-up": (lambda: walking.real("hv-bring-up"), 6, 200)}  # fmt: skip
 
 
 def begin(name: str, sheet: Any) -> tuple[drive.Driver, list[dict[str, Any]]]:
@@ -31,10 +31,14 @@ def play(name: str, sheet: Any, seed: int, length: int) -> tuple[drive.Driver, l
     """A walk, and its steps with what this engine says of each."""
     rng = random.Random(seed)
     d, commands = begin(name, sheet)
-    walker = walking.Walker(d, seed, care=rng.choice((0.97, 0.9, 0.6)))
+    walker = walking.Walker(d, seed, care=1.0 if seed % 4 == 0 else rng.choice((0.97, 0.9, 0.6)))
     steps: list[dict[str, Any]] = []
+    over = 0
 
     def note(what: dict[str, Any], said: Any) -> None:
+        if "text" in what:
+            what["whole"] = len(steps) % 40 == 0
+            said = said if what["whole"] else walking.brief(said)
         steps.append({**what, "digest": digest(walking.canonical(said))})
 
     for i in range(length):
@@ -42,7 +46,7 @@ def play(name: str, sheet: Any, seed: int, length: int) -> tuple[drive.Driver, l
             note({"now": d.now}, d.progress)
         if i < 2 and rng.random() < 0.1:
             note({"command": {"do": "read", "text": "1"}, "now": d.now}, d.ask("read", text="1"))
-        if seed % 3 == 0 and i > 6 and rng.random() < 0.04:
+        if seed % 3 == 0 and i > 6 and rng.random() < 0.1:
             d.record(*walker.nonsense(), by="vell")
             note({"text": d.texts[-1]}, d.state)
             continue
@@ -56,8 +60,11 @@ def play(name: str, sheet: Any, seed: int, length: int) -> tuple[drive.Driver, l
         if due and rng.random() < 0.95:
             d.sign(due["person"], due["meaning"])
             note({"text": d.texts[-1]}, d.state)
-        if d.state["phase"] == "voided":
+        over += d.state["phase"] in ("ended", "stopped")
+        if d.state["phase"] == "voided" or over > 14:
             break
+    d.record("remarked", {"step": d.state["node"], "move": None, "text": "Last."}, "vell")
+    steps.append({"text": d.texts[-1], "whole": True, "digest": digest(walking.canonical(d.state))})
     return d, steps
 
 
@@ -88,7 +95,7 @@ def explain(name: str, sheet: Any, seed: int, length: int, reply: dict[str, Any]
             d.texts.append(one["text"])
             d.run = state.apply(d.run, walking.events.parse(one["text"].encode()))
     if "text" in step:
-        here: Any = d.state
+        here: Any = d.state if step["whole"] else walking.brief(d.state)
     elif "command" in step:
         here = walking.decided(sheet, d.state, step)
     else:

@@ -3,7 +3,7 @@
  *
  *   {"sheet": name, "body": sheet}                                  keeps a sheet
  *   {"walk": name, "run", "chain", "sha256", "steps": [...]}        plays a walk; a step is one of
- *       {"text": event text, "digest": of the state after}          {"now": at, "digest": of progress}
+ *       {"text": event text, "whole": bool, "digest": of the state after, brief or whole}   {"now": at, "digest": of progress}
  *       {"command": {...}, "now": at, "digest": of the decision}
  *   {"fold": name, "texts": [...]}                                  the whole state
  *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events
@@ -43,6 +43,12 @@ function deep_freeze(part) {
   return part;
 }
 
+/** A state without what seldom changes: the start, and all but the last rows of the log. */
+function brief(found) {
+  const { started, log, ...rest } = found;
+  return { ...rest, log: log.slice(-2) };
+}
+
 function walk(request) {
   const sheet = sheets.get(request.walk);
   let run = state.begin(sheet);
@@ -52,7 +58,7 @@ function walk(request) {
     if ("text" in step) {
       run = state.apply(run, events.read(step.text, sha256(step.text)));
       now = deep_freeze(run.state);
-      got = now;
+      got = step.whole ? now : brief(now);
     } else got = "command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now);
     if (step.digest && sha256(canonical(got)) !== step.digest) return { step: i, got };
   }

@@ -19,7 +19,9 @@ def tiny() -> Sheet:
     return Sheet.model_validate_json((VECTORS / "sheets" / "tiny.json").read_text())
 
 
-def instrument(name: str, unit: str, resolution: str, percent: str, digits: str, low: str | None, high: str | None) -> dict[str, Any]:
+def instrument(
+    name: str, unit: str, resolution: str, percent: str, digits: str, low: str | None, high: str | None
+) -> dict[str, Any]:
     return {
         "id": name, "reads": name, "unit": unit, "low": low, "high": high, "resolution": resolution, "percent": percent,
         "digits": digits, "calibrated_to": "2026-11-30", "certificate": "",
@@ -169,6 +171,7 @@ def to_heater_volts(d: Driver) -> Driver:
     d.do("lifted")
     d.do("released", who="arkle")
     d.do("unlocked")
+    d.do("confirmed")
     d.do("confirmed")
     return d
 

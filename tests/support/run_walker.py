@@ -7,11 +7,12 @@ import random
 from pathlib import Path
 from typing import Any
 
+import run_driver as drive
+
 from fieldkit.formula import library
 from fieldkit.procedure import compile as compiling
 from fieldkit.run import answers, clock, decide, events, progress
 from fieldkit.sheet.model import Sheet
-import run_driver as drive
 
 ROOT = Path(__file__).parent.parent.parent
 KINDS = list(events.EVENTS)
@@ -20,7 +21,9 @@ JUNK = ("", "6,3.0", "abc", "1e3", "63.0", "-0", "+1", "0", "999999999999999", "
 
 def real(name: str) -> Sheet:
     """A procedure of the project, compiled."""
-    found, problems = compiling.compile_file(ROOT / "procedures" / f"{name}.yaml", library.load(ROOT / "procedures" / "formulas"))
+    found, problems = compiling.compile_file(
+        ROOT / "procedures" / f"{name}.yaml", library.load(ROOT / "procedures" / "formulas")
+    )
     assert found is not None, problems
     return found
 
@@ -42,7 +45,8 @@ def real_start(sheet: Sheet, rng: random.Random | None = None) -> dict[str, Any]
         "instruments": list(station["instruments"].values()),
         "places": cabinet["places"],
         "earlier": [
-            {"procedure": a.procedure, "run": "r0", "ended": "2026-07-31T08:00:00.000+00:00", "outcome": "done"} for a in sheet.after
+            {"procedure": a.procedure, "run": "r0", "ended": "2026-07-31T08:00:00.000+00:00", "outcome": "done"}
+            for a in sheet.after
         ],
         "locks": [board_lock(s, f"L-{n}") for n, s in enumerate(isolated(sheet))],
     }
@@ -118,12 +122,14 @@ class Walker:
         """Mostly inside the limits, sometimes at, near or outside them."""
         rng = self.rng
         low, high = (limits or {}).get("low"), (limits or {}).get("high")
-        if rng.random() < 0.03:
+        if low is None and high is None and control.get("unit", {}).get("symbol") == "V":
+            return "28.5"
+        if rng.random() < 0.1 * (1 - self.care):
             return rng.choice(JUNK)
         a = float(low) if low is not None else (float(high) - abs(float(high)) if high is not None else 1.0)
         b = float(high) if high is not None else a + abs(a) + 1.0
         x = rng.choice((a, b)) if rng.random() < 0.1 else rng.uniform(a, b)
-        if rng.random() < 0.12:
+        if self.care < 1 and rng.random() < 0.02 + 0.4 * (1 - self.care):
             x += rng.uniform(-1, 1) * (b - a or 1.0)
         text = f"{x:.{rng.choice((1, 2, 2, 3))}f}"
         return text.replace(".", ",") if rng.random() < 0.1 else text
@@ -139,7 +145,9 @@ class Walker:
         if not ways:
             if state["node"] == "@end":
                 return {"do": "ended"}
-            return {"do": "ended", "outcome": "stopped", "reason": "No way on."} if rng.random() < 0.2 else self.anything()
+            return (
+                {"do": "ended", "outcome": "stopped", "reason": "No way on."} if rng.random() < 0.2 else self.anything()
+            )
         return self.way(rng.choice(ways))
 
     def way(self, move: dict[str, Any]) -> dict[str, Any]:
@@ -190,9 +198,19 @@ class Walker:
         if pick == 0:
             return {"do": rng.choice(KINDS)}
         if pick == 1:
-            return {"do": rng.choice(KINDS), "step": rng.choice(steps), "text": rng.choice(JUNK), "move": rng.choice(moves)}
+            return {
+                "do": rng.choice(KINDS),
+                "step": rng.choice(steps),
+                "text": rng.choice(JUNK),
+                "move": rng.choice(moves),
+            }
         if pick == 2:
-            return {"do": "went-on", "move": rng.choice([*moves, "none"]), "reason": rng.choice(("", "why")), "authority": rng.choice(people)}
+            return {
+                "do": "went-on",
+                "move": rng.choice([*moves, "none"]),
+                "reason": rng.choice(("", "why")),
+                "authority": rng.choice(people),
+            }
         if pick == 3:
             return {"do": "paused", "reason": "Meal."}
         if pick == 4:
@@ -215,11 +233,18 @@ class Walker:
         if pick == 12:
             return {"do": "unlocked", "who": rng.choice(people), "second": rng.choice(people), "checks": self.checks()}
         if pick == 13:
-            return {"do": "people-counted", "names": rng.choice(([], ["J. Vell"], ["J. Vell", "P. Arkle"], "x", [1, " "]))}
+            return {
+                "do": "people-counted",
+                "names": rng.choice(([], ["J. Vell"], ["J. Vell", "P. Arkle"], "x", [1, " "])),
+            }
         if pick == 14:
             return {"do": "remarked", "text": rng.choice(("", "Louder than last month."))}
         if pick == 15:
-            return {"do": "safe-step-done", "item": rng.choice(d.run.ctx.sheet["make_safe"])["id"], "done": False} if rng.random() < 0.1 else {"do": "safe-begun"}
+            return (
+                {"do": "safe-step-done", "item": rng.choice(d.run.ctx.sheet["make_safe"])["id"], "done": False}
+                if rng.random() < 0.1
+                else {"do": "safe-begun"}
+            )
         if pick == 16:
             return {"do": "storage-found", "lost": rng.choice((1, "1")), "restored": 1}
         if pick == 17:
@@ -261,6 +286,11 @@ def _plain(part: Any) -> Any:
     if isinstance(part, float):
         return int(part) if part.is_integer() else clock.seconds(round(part * 1000))
     return part
+
+
+def brief(state: dict[str, Any]) -> dict[str, Any]:
+    """A state without what seldom changes: the start, and all but the last rows of the log."""
+    return {**{k: v for k, v in state.items() if k != "started"}, "log": state["log"][-2:]}
 
 
 def decided(sheet: Sheet, state: dict[str, Any], step: dict[str, Any]) -> Any:
