@@ -56,6 +56,7 @@ class _Reader:
     taken: dict[str, Place] = field(default_factory=dict)
     section: str = ""
     blocks: int = 0
+    pieces: int = 0
 
 
 def read(node: Node | None, found: Collector, kinds: dict[str, Kind] | None = None) -> list[Item]:
@@ -63,10 +64,6 @@ def read(node: Node | None, found: Collector, kinds: dict[str, Kind] | None = No
     reader = _Reader(found, kinds or KINDS)
     if node is not None:
         _list(node, (), reader)
-    if len(reader.items) > MAX_STEPS:
-        found.add(
-            reader.items[MAX_STEPS].place, "too-many-steps", f"more than {MAX_STEPS} steps", "split the procedure"
-        )
     return reader.items
 
 
@@ -77,6 +74,11 @@ def _list(node: Node, blocks: tuple[Block, ...], reader: _Reader) -> None:
         )
         return
     for item in node:
+        reader.pieces += 1
+        if reader.pieces > MAX_STEPS:
+            if reader.pieces == MAX_STEPS + 1:
+                reader.found.add(item.place, "too-many-steps", f"more than {MAX_STEPS} steps", "split the procedure")
+            return
         if not isinstance(item, Mapping):
             remedy = "write - act: ... (a kind, a colon, a text), and its keys below"
             reader.found.add(item.place, "not-a-step", f"{kind(item)} stands here, not a step", remedy)

@@ -25,6 +25,8 @@ from fieldkit.sheet.parts import Unit
 from fieldkit.yaml_source import Entry, Mapping, Node, Scalar, Sequence, kind
 
 MAX_TEXT = 900
+#: far more than anything has: a file with more is not read on
+MAX_KEYS = 200
 _NAME = re.compile(r"[a-z][a-z0-9_]{0,39}\Z")
 _SLUG = re.compile(r"[a-z][a-z0-9]*(-[a-z0-9]+)*\Z")
 _QUANTITY = re.compile(r"([+-]?\d+(?:\.\d+)?)(?:\s+(\S+))?\Z")
@@ -91,6 +93,9 @@ def read_keys(model: type[Written], node: Node, found: Collector, what: str) -> 
         found.add(node.place, "not-keys", f"{what} is {kind(node)} here", "write its keys, one on each line")
         return {}
     fields, values = keys_of(model), {}
+    if len(node) > MAX_KEYS:
+        found.add(node.place, "too-many-keys", f"{what} has {len(node)} keys", f"it has: {', '.join(fields)}")
+        return {}
     for entry in node:
         if entry.key not in fields:
             _unknown(entry, fields, found, what)

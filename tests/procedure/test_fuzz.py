@@ -145,8 +145,8 @@ def hostile() -> dict[str, bytes]:
 @pytest.mark.parametrize("name", hostile())
 def test_a_hostile_file_is_answered_within_a_second(name: str, formulas: Library) -> None:
     data = hostile()[name]
-    begun = time.perf_counter()
+    begun = time.process_time()
     sheet, problems = compile_bytes(data, "hostile.yaml", formulas)
-    assert time.perf_counter() - begun < 1.0
+    assert time.process_time() - begun < 1.0
     assert sheet is None
     assert any(p.weight == "problem" for p in problems)
