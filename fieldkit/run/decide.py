@@ -120,7 +120,7 @@ def _answer(given: Given) -> Plain:
         raise Refusal("wrong-answer", f"Step {step['number']} is not answered so.")
     closed = progress.closed(ctx, state, names.scope(ctx, state, given.now))
     if closed:
-        raise Refusal("not-open", " ".join(one["says"] for one in closed))
+        raise Refusal("not-open", progress.told(closed))
     body = rules.ANSWERS[given.kind](given, step)
     body = {**body, "step": step["id"], "move": None}
     return {**body, "move": _move(given, checked(given.kind, body))}
@@ -172,7 +172,7 @@ def _went_on(given: Given) -> Plain:
     closed = names.reasons(ctx, names.scope(ctx, state, given.now), move["gate"])
     if closed:
         code = "no-more-tries" if move["manner"] == "again" else "not-open"
-        raise Refusal(code, " ".join(one["says"] for one in closed))
+        raise Refusal(code, progress.told(closed))
     if move["manner"] == "again":
         given.need("reason", "reason-needed", "Say why it is taken again.")
     if move["manner"] == "deviation":

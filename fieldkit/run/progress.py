@@ -66,11 +66,20 @@ def closed(ctx: Context, state: State, where: Scope) -> list[Plain]:
         return [{"says": "The last step is done. End the run and sign it.", "left": None}]
     if state["pending"]:
         return [{"says": "It is answered. Choose how to go on.", "left": None}]
-    found = _wait_reasons(ctx, where, step)
     gates = [names.reasons(ctx, where, move["gate"], node) for move in _forward(ctx, node)]
-    if gates and all(gates):
-        found += [one for one in min(gates, key=len) if one not in found]
-    return found
+    found = min(gates, key=len) if gates and all(gates) else []
+    timed = any(one["left"] is not None for one in found)
+    return found if timed else [*_wait_reasons(ctx, where, step), *found]
+
+
+def told(reasons: list[Plain]) -> str:
+    """Reasons as one text, with the time that is left."""
+    return " ".join(
+        one["says"]
+        if not one["left"]
+        else f"{one['says'].removesuffix('.')}; {clock.spoken(clock.ceil_ms(one['left']))} left."
+        for one in reasons
+    )
 
 
 _PHASES = {
@@ -97,7 +106,7 @@ def _wait_reasons(ctx: Context, where: Scope, step: Plain) -> list[Plain]:
     if elapsed is None:
         return [{"says": "The time has not begun to count.", "left": None}]
     if elapsed["left"] > 0:
-        return [{"says": f"Opens in {clock.spoken(clock.ceil_ms(elapsed['left']))}.", "left": elapsed["left"]}]
+        return [{"says": "The time is not over.", "left": elapsed["left"]}]
     return []
 
 
@@ -252,6 +261,9 @@ def waits(ctx: Context, where: Scope, state: State, path: list[tuple[str, Plain 
         own = _is(step, "wait")
         asked = [{"clock": control["clock"], "least": control["least"], "says": step["title"]}] if own else []
         asked += [c for c in (move["gate"] if move else []) if c["clock"] and c["least"]]
+        untimed = [c for c in (move["gate"] if move else []) if not c["clock"]]
+        if step_id != state["node"] and names.reasons(ctx, where, untimed, step_id):
+            continue
         for one in asked:
             elapsed = answers.waited(ctx, where, one)
             if elapsed is None or (elapsed["left"] <= 0 and not (own and step_id == state["node"])):

@@ -104,7 +104,7 @@ function answer(given) {
     throw new Refused("wrong-answer", `Step ${step.number} is not answered so.`);
   }
   const closed = progress.closed(ctx, state, names.scope(ctx, state, given.now));
-  if (closed.length) throw new Refused("not-open", closed.map((one) => one.says).join(" "));
+  if (closed.length) throw new Refused("not-open", progress.told(closed));
   const body = { ...rules.ANSWERS[kind](given, step), step: step.id, move: null };
   return { ...body, move: move_of(given, checked(kind, body)) };
 }
@@ -153,7 +153,7 @@ function went_on(given) {
   if (!pending && !moves.is_around(move)) throw new Refused("not-answered", "Answer the step first.");
   const closed = names.reasons(ctx, names.scope(ctx, state, given.now), move.gate);
   if (closed.length) {
-    throw new Refused(move.manner === "again" ? "no-more-tries" : "not-open", closed.map((one) => one.says).join(" "));
+    throw new Refused(move.manner === "again" ? "no-more-tries" : "not-open", progress.told(closed));
   }
   if (move.manner === "again") given.need("reason", "reason-needed", "Say why it is taken again.");
   if (move.manner === "deviation") rules.deviation(given);

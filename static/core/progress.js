@@ -59,13 +59,18 @@ export function closed(ctx, state, where) {
   const step = ctx.steps[node];
   if (!step) return [{ says: "The last step is done. End the run and sign it.", left: null }];
   if (state.pending) return [{ says: "It is answered. Choose how to go on.", left: null }];
-  const found = wait_reasons(ctx, where, step);
   const gates = forward(ctx, node).map((move) => names.reasons(ctx, where, move.gate, node));
-  if (gates.length && gates.every((gate) => gate.length)) {
-    const least = gates.reduce((a, b) => (b.length < a.length ? b : a));
-    found.push(...least.filter((one) => !found.some((f) => f.says === one.says && f.left === one.left)));
-  }
-  return found;
+  const shut = gates.length > 0 && gates.every((gate) => gate.length);
+  const found = shut ? gates.reduce((a, b) => (b.length < a.length ? b : a)) : [];
+  const timed = found.some((one) => one.left !== null);
+  return timed ? found : [...wait_reasons(ctx, where, step), ...found];
+}
+
+/** Reasons as one text, with the time that is left. @param {Reason[]} reasons */
+export function told(reasons) {
+  return reasons
+    .map(({ says, left }) => (left ? `${says.replace(/\.$/, "")}; ${clock.spoken(clock.ceil_ms(left))} left.` : says))
+    .join(" ");
 }
 
 /** @type {Record<string, string>} */
@@ -89,7 +94,7 @@ function wait_reasons(ctx, where, step) {
   if (step.control.control !== "wait") return [];
   const elapsed = answers.waited(ctx, where, step.control);
   if (elapsed === null) return [{ says: "The time has not begun to count.", left: null }];
-  if (elapsed.left > 0) return [{ says: `Opens in ${clock.spoken(clock.ceil_ms(elapsed.left))}.`, left: elapsed.left }];
+  if (elapsed.left > 0) return [{ says: "The time is not over.", left: elapsed.left }];
   return [];
 }
 
@@ -231,6 +236,8 @@ export function waits(ctx, where, state, path) {
     const own = is(step, "wait");
     const asked = own ? [{ clock: control.clock, least: control.least, says: step.title }] : [];
     if (move) asked.push(...move.gate.filter((/** @type {any} */ c) => c.clock && c.least));
+    const untimed = move ? move.gate.filter((/** @type {any} */ c) => !c.clock) : [];
+    if (step_id !== state.node && names.reasons(ctx, where, untimed, step_id).length) continue;
     for (const one of asked) {
       const elapsed = answers.waited(ctx, where, one);
       if (elapsed === null || (elapsed.left <= 0 && !(own && step_id === state.node))) continue;

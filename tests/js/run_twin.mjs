@@ -5,6 +5,7 @@
  *   {"walk": name, "run", "chain", "sha256", "steps": [...]}        plays a walk; a step is one of
  *       {"text": event text, "whole": bool, "digest": of the state after, brief or whole}   {"now": at, "digest": of progress}
  *       {"command": {...}, "now": at, "digest": of the decision}
+ *   {"play": name, "run", "chain", "sha256", "steps": [...]}        the same without digests; gives what every step says
  *   {"fold": name, "texts": [...]}                                  the whole state
  *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events
  *
@@ -65,9 +66,25 @@ function walk(request) {
   return { ok: request.steps.length };
 }
 
+/** Plays like a walk, and gives what every step without a text says, and the last state. */
+function play(request) {
+  const sheet = sheets.get(request.play);
+  let run = state.begin(sheet);
+  let now = state.make(sheet, request.run, request.chain, request.sha256);
+  const said = [];
+  for (const step of request.steps) {
+    if ("text" in step) {
+      run = state.apply(run, events.read(step.text, sha256(step.text)));
+      now = deep_freeze(run.state);
+    } else said.push("command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now));
+  }
+  return { said, state: now };
+}
+
 function answer(request) {
   if ("sheet" in request) return { kept: Boolean(sheets.set(request.sheet, request.body)) };
   if ("walk" in request) return walk(request);
+  if ("play" in request) return play(request);
   if ("fold" in request) return state.fold(sheets.get(request.fold), request.texts.map((t) => events.read(t, sha256(t))));
   const [module, name] = request.call.split(".");
   const found = MODULES[module][name];
