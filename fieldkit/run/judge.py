@@ -66,7 +66,7 @@ def bounds(
         if text is not None:
             out[key] = values.inward(text, resolution, "low" if key.endswith("low") else "high")
         if fault and key in ("low", "high"):
-            out["fault"] = f"The {_NAMES[key]} limit has no value: {fault}"
+            out["fault"] = f"the {_NAMES[key]} limit has no value ({fault})"
         if text is not None and key in ("low", "high") and _lost(text, out[key], key):
             out["coarse"] = f"the meter's steps of {resolution} {unit['symbol']} are too coarse for this limit"
     if typical is not None:
@@ -292,7 +292,7 @@ def _inside(limits: dict[str, Any], tail: str) -> str:
         return f"at most {high}{tail} is allowed"
     if high is None:
         return f"at least {low}{tail} is needed"
-    return f"inside {low} to {high}{tail}"
+    return f"exactly {low}{tail}" if low == high else f"inside {low} to {high}{tail}"
 
 
 def _meter(u: str | None, like: str, tail: str) -> str:

@@ -52,7 +52,7 @@ export function bounds(limits, typical, unit, resolution, instrument, value) {
     const [text, fault] = shown(given[key] ?? null, unit, value);
     if (text !== null) out[key] = inward(text, resolution, side);
     if (key !== side) continue;
-    if (fault) out.fault = `The ${NAMES[key]} limit has no value: ${fault}`;
+    if (fault) out.fault = `the ${NAMES[key]} limit has no value (${fault})`;
     if (text !== null && lost(text, out[key], key)) {
       out.coarse = `the meter's steps of ${resolution} ${unit.symbol} are too coarse for this limit`;
     }
@@ -248,7 +248,7 @@ function words(plain, unit, out, limits, resolution, instrument) {
 function inside_words(limits, tail) {
   if (limits.low === null) return `at most ${limits.high}${tail} is allowed`;
   if (limits.high === null) return `at least ${limits.low}${tail} is needed`;
-  return `inside ${limits.low} to ${limits.high}${tail}`;
+  return limits.low === limits.high ? `exactly ${limits.low}${tail}` : `inside ${limits.low} to ${limits.high}${tail}`;
 }
 
 /** @param {string | null} u @param {string} like @param {string} tail */

@@ -7,6 +7,7 @@
  *       {"command": {...}, "now": at, "digest": of the decision}
  *   {"play": name, "run", "chain", "sha256", "steps": [...]}        the same without digests; gives what every step says
  *   {"fold": name, "texts": [...]}                                  the whole state
+ *   {"judge": case of tests/vectors/judge}, {"read": event text}
  *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events
  *
  * A walk answers {"ok": n} or the first step that differs with what was got. Digests are SHA-256 of `canonical`.
@@ -15,6 +16,7 @@ import { createHash } from "node:crypto";
 import { createInterface } from "node:readline";
 import * as clock from "../../static/core/clock.js";
 import { decide } from "../../static/core/decide.js";
+import { evaluate } from "../../static/core/evaluate.js";
 import * as events from "../../static/core/events.js";
 import * as judge from "../../static/core/judge.js";
 import { progress } from "../../static/core/progress.js";
@@ -81,11 +83,19 @@ function play(request) {
   return { said, state: now };
 }
 
+/** Limits and judgement of one case of tests/vectors/judge. */
+function judged({ limits, typical, unit, resolution, instrument, text, protects, day }) {
+  const bounds = judge.bounds(limits, typical, unit, resolution, instrument, (tree) => evaluate(tree));
+  return { bounds, judged: judge.judge(text, unit.symbol, bounds, resolution, instrument, protects, day) };
+}
+
 function answer(request) {
   if ("sheet" in request) return { kept: Boolean(sheets.set(request.sheet, request.body)) };
   if ("walk" in request) return walk(request);
   if ("play" in request) return play(request);
   if ("fold" in request) return state.fold(sheets.get(request.fold), request.texts.map((t) => events.read(t, sha256(t))));
+  if ("judge" in request) return judged(request.judge);
+  if ("read" in request) return events.read(request.read, sha256(request.read));
   const [module, name] = request.call.split(".");
   const found = MODULES[module][name];
   return { value: typeof found === "function" ? found(...request.args) : found };
