@@ -159,8 +159,10 @@ def ceil_ms(of: float) -> int:
 
 
 def spoken(ms: int) -> str:
-    """A time as a person says it, rounded up to the second so that it never promises too early: "6 min 18 s"."""
+    """A time as a person says it, rounded up so that it never promises too early: "6 min 18 s", "1 h 2 min"."""
     whole = -(-ms // 1000) if ms > 0 else 0
+    if whole >= 3600:
+        whole = -(-whole // 60) * 60
     hours, minutes, left = whole // 3600, whole // 60 % 60, whole % 60
     if hours:
         return f"{hours} h {minutes} min" if minutes else f"{hours} h"

@@ -138,7 +138,8 @@ export function ceil_ms(of) {
 
 /** @param {number} ms */
 export function spoken(ms) {
-  const whole = ms > 0 ? Math.ceil(ms / 1000) : 0;
+  let whole = ms > 0 ? Math.ceil(ms / 1000) : 0;
+  if (whole >= 3600) whole = Math.ceil(whole / 60) * 60;
   const hours = Math.floor(whole / 3600);
   const minutes = Math.floor(whole / 60) % 60;
   const left = whole % 60;

@@ -39,7 +39,7 @@ def test_a_sample_with_a_key_too_many_or_too_few_is_refused_by_both(kind: str, t
     damaged += [{**data, "body": {**data["body"], name: 7.5}} for name in data["body"]]
     for one in damaged:
         text = json.dumps(one)
-        with pytest.raises(Refusal, match=".") as refused:
+        with pytest.raises(Refusal) as refused:
             events.parse(text.encode())
         assert refused.value.code == "damaged-event"
         assert twin.ask(read=text)["refused"]["code"] == "damaged-event", text

@@ -33,7 +33,7 @@ def play(vector: dict[str, Any]) -> tuple[Any, list[dict[str, Any]], list[Any]]:
     """The driver at the end; the steps for the twin; and what was said at each step that says something."""
     d, steps, said = driver(vector), [], []
     for moment in vector["script"]:
-        (what, value), *more = moment.items()
+        what, value = next(iter(moment.items()))
         if what == "later":
             d.later(*value)
         elif what == "reload":
