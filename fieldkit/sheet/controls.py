@@ -167,7 +167,9 @@ class People(Part):
 
 
 Control = Annotated[
-    Union[Caution, Confirm, Number, Prove, Lock, Unlock, Earth, Lift, Choice, Hold, Picture, Remark, Result, Wait, People],
+    Union[
+        Caution, Confirm, Number, Prove, Lock, Unlock, Earth, Lift, Choice, Hold, Picture, Remark, Result, Wait, People
+    ],
     Field(discriminator="control"),
 ]
 

@@ -10,7 +10,7 @@ import hashlib
 import json
 from typing import Any, Literal
 
-from pydantic import ValidationError
+from pydantic import Field, ValidationError
 
 from fieldkit.errors import Refusal
 from fieldkit.sheet.controls import Control
@@ -51,7 +51,7 @@ class SafeStep(Part):
 
     id: str
     text: str
-    sets: dict[str, SourceState] = {}
+    sets: dict[str, SourceState] = Field(default_factory=dict)
     note: str = ""
 
 
@@ -126,12 +126,12 @@ class Sheet(Part):
     ends: dict[str, tuple[SourceState, ...]]
     rules: tuple[Rule, ...] = ()
     #: name -> where it starts (it never goes below), and the most it can reach
-    counters: dict[str, tuple[int, int]] = {}
+    counters: dict[str, tuple[int, int]] = Field(default_factory=dict)
     first: str
     steps: tuple[Step, ...]
     moves: tuple[Move, ...]
     make_safe: tuple[SafeStep, ...]
-    formulas: dict[str, FormulaUsed] = {}
+    formulas: dict[str, FormulaUsed] = Field(default_factory=dict)
     #: what the next person must know, shown at the end
     next_person: str = ""
 

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from typing import Annotated, Any, Literal
 
-from pydantic import AfterValidator, BaseModel, ConfigDict
+from pydantic import AfterValidator, BaseModel, ConfigDict, Field
 
 from fieldkit.formula import ast
 
@@ -100,16 +100,16 @@ class Count(Part):
 class Effects(Part):
     """What taking a move does to the plant as the run believes it to be."""
 
-    sets: dict[str, SourceState] = {}
+    sets: dict[str, SourceState] = Field(default_factory=dict)
     shows: tuple[str, ...] = ()
     clears: tuple[str, ...] = ()
     counts: tuple[Count, ...] = ()
     #: place -> "in" or "out"
-    hands: dict[str, Literal["in", "out"]] = {}
+    hands: dict[str, Literal["in", "out"]] = Field(default_factory=dict)
 
 
 class Given(Part):
-    """A value known before the run. `kind` number has a unit; levels is a list of numbers in that unit; text has none."""
+    """A value known before the run: a number with its unit, levels (a list of numbers in that unit), or a text."""
 
     name: str
     origin: Literal["tube", "cabinet", "site"]

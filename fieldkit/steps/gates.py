@@ -11,10 +11,7 @@ from fieldkit.errors import Place
 from fieldkit.sheet.parts import Condition
 from fieldkit.steps import conditions
 from fieldkit.steps.scope import Scope
-from fieldkit.steps.sources import ISOLATED, SOURCES, says_state
-
-#: a source in one of these states can hurt
-LIVE = ("on", "standby")
+from fieldkit.steps.sources import ISOLATED, SOURCES
 
 
 def built_in(sets: dict[str, str], scope: Scope, place: Place) -> list[Condition]:
@@ -48,7 +45,9 @@ def _needed(source: str, state: str, sets: dict[str, str], scope: Scope) -> list
             continue
         states = states_asked(rule.needs, source)
         if states and state not in states:
-            says = f"{SOURCES[rule.source].is_} not {rule.state}, because then {says_state(source, states)}"
+            needs = "they need" if SOURCES[rule.source].plural else "it needs"
+            kept = f"the {SOURCES[source].title} {' or '.join(states)}"
+            says = f"{SOURCES[rule.source].is_} no longer {rule.state}; {needs} {kept}"
             found.append(conditions.state_is_not(rule.source, (rule.state,), says))
     return found
 

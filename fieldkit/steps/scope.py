@@ -38,7 +38,6 @@ class Scope:
     steps: dict[str, tuple[int, str]] = field(default_factory=dict)
     sources: tuple[str, ...] = ()
     facts: set[str] = field(default_factory=set)
-    earthed: set[str] = field(default_factory=set)
     rules: tuple[Rule, ...] = ()
     crew: int = 1
     #: order of the step that is being lowered; names given by later steps are not known yet
