@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from decimal import Decimal
 from typing import Any
 
-from fieldkit.record import course, lanes, words
+from fieldkit.record import course, lanes, readings, words
 from fieldkit.record.frame import Frame
 from fieldkit.record.lines import Chain, Correction, Deviation, EarthLine, LockLine, Note, Reading, Signature
 from fieldkit.record.model import Attention, Review, Scale
@@ -78,7 +78,7 @@ def _of(frame: Frame, code: str, tag: str, r: Reading, tone: str = "", by: str =
     """An item about a reading: its own sentence without the value, its scale, the last run."""
     body = r.words.partition(": ")[2] or r.words
     last = next((f"Last run {words.minus(p.value)} {r.unit}." for p in r.pointers if p.name == "last run"), "")
-    title = f"{r.title}, {r.part}" if r.part else r.title
+    title = ", ".join(p for p in (readings.titled(r.title, r.level), r.part) if p)
     return _item(
         frame,
         code,
@@ -152,7 +152,7 @@ def deviation(frame: Frame, lists: Lists) -> Iterator[Attention]:
     by_seq = {r.seq: r for r in lists.readings if r.deviation is not None or r.kind == "proof"}
     for d in lists.deviations:
         under = f" Under: {d.under}." if d.under else ""
-        by = f"{d.authority_name} {d.time[:5]}: “{d.reason}”{under}"
+        by = f"{d.authority_name} {d.time[:5]}: {words.quoted(d.reason)}{under}"
         r = by_seq.get(d.seq)
         if r is not None:
             yield _of(frame, "deviation", "Deviation", r, "dev", by)
@@ -185,7 +185,9 @@ def made_safe(frame: Frame, lists: Lists) -> Iterator[Attention]:
 
 
 def lock_on(frame: Frame, lists: Lists) -> Iterator[Attention]:
-    """A lock or an earth that is still on at the end."""
+    """A lock or an earth that is still on at the end; while a run goes on that is as it should be."""
+    if not frame.of("ended", "voided"):
+        return
     last = frame.events[-1]["seq"]
     for lock in lists.locks:
         if lock.left_on:
@@ -212,7 +214,10 @@ def exception(frame: Frame, lists: Lists) -> Iterator[Attention]:
 def failed(frame: Frame, lists: Lists) -> Iterator[Attention]:
     for r in lists.readings:
         if r.verdict in ("fail", "conditional fail") and r.deviation is None and not r.retaken:
-            yield _of(frame, "failed", words.first_up(r.verdict), r, "dev")
+            move = frame.index.moves.get(frame.rows[r.seq]["move"] or "") or {}
+            label = str(move.get("label") or "").replace("{level}", r.level)
+            then = words.sentence(f"Then: {label}") if label else ""
+            yield _of(frame, "failed", words.first_up(r.verdict), r, "dev", then)
 
 
 def trip(frame: Frame, lists: Lists) -> Iterator[Attention]:
@@ -228,7 +233,7 @@ def retaken(frame: Frame, lists: Lists) -> Iterator[Attention]:
     for r in lists.readings:
         if r.retaken and r.verdict in ("fail", "conditional fail"):
             reason = frame.rows[r.seq]["reason"] or reasons.get(r.step, "")
-            by = f"{r.by_name} {r.time[:5]}: “{reason}”" if reason else f"{r.by_name} {r.time[:5]}."
+            by = f"{r.by_name} {r.time[:5]}: {words.quoted(reason)}" if reason else f"{r.by_name} {r.time[:5]}."
             yield _of(frame, "retaken", "Fail, taken again", r, "", by)
 
 
@@ -295,7 +300,7 @@ def correction(frame: Frame, lists: Lists) -> Iterator[Attention]:
             "correction",
             "Correction",
             title,
-            f"Put right after {words.spoken(c.after_s)}: “{c.reason}”.",
+            f"Put right after {words.spoken(c.after_s)}: {words.quoted(c.reason)}",
             c.seq,
             struck=words.minus(c.old),
             value=words.minus(c.new),
@@ -337,7 +342,7 @@ def returned(frame: Frame, lists: Lists) -> Iterator[Attention]:
     last = frame.events[-1]["seq"]
     for r in frame.context.returns:
         by = f"{r.by_name}, {words.day(r.time)}."
-        yield _item(frame, "returned", "Returned before", "Record", f"“{r.reason}”", min(r.seq, last), by=by)
+        yield _item(frame, "returned", "Returned before", "Record", words.quoted(r.reason), min(r.seq, last), by=by)
 
 
 RULES: tuple[Rule, ...] = (

@@ -297,7 +297,7 @@ def _line(frame: Frame, e: Plain) -> str:
         case "safe-ended":
             return words.sentence(f"Make safe ended. {body['remark']}")
         case _:
-            return " ".join(_gap(frame, e)) if e["kind"] in _GAPS else e["kind"]
+            return ". ".join(p for p in _gap(frame, e) if p) if e["kind"] in _GAPS else e["kind"]
 
 
 _GAPS = ("paused", "resumed", "states-confirmed", "clock-changed", "storage-found", "reopened")

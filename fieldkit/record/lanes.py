@@ -32,6 +32,9 @@ METERS = {
     "reflected": "rf_drive",
 }
 
+#: sources that take their time after they are switched on; others are there at once, and only settle
+WARMS = ("heater",)
+
 
 def lanes(frame: Frame) -> tuple[Lane, ...]:
     waited = _waited(frame)
@@ -41,8 +44,9 @@ def lanes(frame: Frame) -> tuple[Lane, ...]:
             continue
         spans = _spans(frame, source.name)
         for at, seq in waited.get(source.name, ()):
-            spans = _mark(spans, at, seq)
-        found.append(Lane(source=source.name, title=source.title, short=source.short, spans=tuple(spans)))
+            spans = _mark(source.name, spans, at, seq)
+        short = words.first_up(source.title)
+        found.append(Lane(source=source.name, title=source.title, short=short, spans=tuple(spans)))
     return tuple(found)
 
 
@@ -60,7 +64,7 @@ def _spans(frame: Frame, source: str) -> list[Span]:
 
 
 def _waited(frame: Frame) -> dict[str, list[tuple[int, int]]]:
-    """source -> (when a wait for it was over, seq)."""
+    """source -> (when a wait for it was over, seq); only where something warms or discharges meanwhile."""
     found: dict[str, list[tuple[int, int]]] = {}
     for event in frame.of("waited"):
         step = frame.step(event)
@@ -75,7 +79,7 @@ def _waited(frame: Frame) -> dict[str, list[tuple[int, int]]]:
     return found
 
 
-def _mark(spans: list[Span], at: int, seq: int) -> list[Span]:
+def _mark(source: str, spans: list[Span], at: int, seq: int) -> list[Span]:
     """Split the span that a wait lay in: before its end the source was warming, or its charge going."""
     out: list[Span] = []
     for k, span in enumerate(spans):
@@ -84,6 +88,9 @@ def _mark(spans: list[Span], at: int, seq: int) -> list[Span]:
             out.append(span)
             continue
         live = span.state in LIVE
+        if live and source not in WARMS:
+            out.append(span)
+            continue
         out.append(span.model_copy(update={"warming": live, "decay": span.state == "off"}))
         out.append(span.model_copy(update={"second": at, "seq": seq}))
     return out

@@ -113,6 +113,11 @@ def _proof(frame: Frame, event: Plain, row: Plain) -> list[Reading]:
     return found
 
 
+def titled(title: str, level: str) -> str:
+    """A step's title, with the rung that it was at where the title does not say it."""
+    return title if not level or level in title else f"{title}, {level}"
+
+
 def _judged(row: Plain, symbol: str, unit: str) -> Plain:
     margin, u = row.get("margin"), row.get("u")
     return {
@@ -210,7 +215,7 @@ def deviations(frame: Frame) -> tuple[Deviation, ...]:
                 time=frame.time(event),
                 step=row["step"],
                 number=row["number"],
-                title=row["title"],
+                title=titled(row["title"], row["level"]),
                 value=row["text"],
                 unit=unit,
                 limits=limits.says if limits else "",

@@ -33,7 +33,9 @@ def steps_say(head: Head, n: Counts, stop: str) -> str:
     some = f"{n.steps_done} of {n.steps} steps were done"
     if head.outcome == "done":
         return (
-            f"all {n.steps} steps were done" if n.steps_done == n.steps else f"{some}, the others not being on the way"
+            f"all {n.steps} steps were done"
+            if n.steps_done == n.steps
+            else f"all {n.steps_done} steps on the way taken were done"
         )
     if head.outcome == "stopped":
         return f"the run was stopped after {n.steps_done} of {words.count(n.steps, 'step')}" + (

@@ -126,6 +126,11 @@ def sentence(words: str) -> str:
 _MINUS = re.compile(r"(?<![\w-])-(?=[0-9])", re.ASCII)
 
 
+def quoted(reason: str) -> str:
+    """What a person wrote, in quotation marks, as the end of a sentence."""
+    return f"“{reason}”" + ("" if reason[-1:] in tuple(".!?") else ".")
+
+
 def minus(text: str) -> str:
     """Text for a person: a true minus sign before numbers; hyphens in names and dates stay."""
     return _MINUS.sub("−", text)

@@ -19,7 +19,7 @@ from fieldkit.record import words
 from fieldkit.record.attention import scale
 from fieldkit.record.lines import Reading
 from fieldkit.record.model import Attention, Record
-from fieldkit.record.readings import by_margin
+from fieldkit.record.readings import by_margin, titled
 
 #: as many things that deserve attention stand in a list
 FEW = 3
@@ -164,7 +164,7 @@ def _point(item: Attention) -> Point:
 
 
 def _row(reading: Reading) -> Row:
-    title = ", ".join(p for p in (reading.title, reading.part) if p)
+    title = ", ".join(p for p in (titled(reading.title, reading.level), reading.part) if p)
     if reading.margin_u is not None:
         margin = words.minus(reading.margin_u)
     else:

@@ -13,10 +13,10 @@ import played_run as play
 import pytest
 
 from fieldkit.errors import Refusal
-from fieldkit.record import build, model, sections
+from fieldkit.record import build, lanes, model, sections
 from fieldkit.record.context import Check, Context, LastRun
 from fieldkit.record.model import Record
-from fieldkit.record.readings import by_margin
+from fieldkit.record.readings import by_margin, titled
 
 HERE = Path(__file__).parent
 
@@ -149,3 +149,17 @@ def test_sections_name_fields_that_exist_and_empty_ones_are_left_out() -> None:
     printed = [s.name for s in sections.printed(made)]
     assert printed[0] == "summary" and printed[-1] == "proof"
     assert "deviations" not in printed and "isolation" in printed
+
+
+def test_only_a_heater_warms_up_and_only_a_source_that_is_off_discharges() -> None:
+    span = lanes.Span(second=100, state="on", seq=3)
+    off = span.model_copy(update={"state": "off"})
+    assert [s.warming for s in lanes._mark("heater", [span], 400, 9)] == [True, False]
+    assert lanes._mark("beam_supply", [span], 400, 9) == [span]
+    assert [s.decay for s in lanes._mark("beam_supply", [off], 400, 9)] == [True, False]
+
+
+def test_a_reading_on_a_ladder_is_titled_with_its_rung_once() -> None:
+    assert titled("Ion-pump current", "26 kV") == "Ion-pump current, 26 kV"
+    assert titled("Settle at 26 kV", "26 kV") == "Settle at 26 kV"
+    assert titled("Heater voltage", "") == "Heater voltage"
