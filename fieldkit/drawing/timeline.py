@@ -72,7 +72,8 @@ def _lane(ink: str, x: int, spans: Any, end: int, y: Any) -> str:
             and not covered
             and (before != span["state"] or not k)
         ):
-            marks += _mark(ink, off, y0, span["state"])
+            # at the very start the mark stands below the lane's head, not on it
+            marks += _mark(ink, off, y0 if k else y0 + 90, span["state"])
     return out + marks
 
 

@@ -73,7 +73,8 @@ function draw(ink, x, spans, end, y) {
     }
     const covered = next && ["proved", "earthed"].includes(next.state) && y1 - y0 < 160;
     if (["locked", "proved", "earthed", "unknown"].includes(span.state) && !covered && (before !== span.state || !k)) {
-      marks += drawn(ink, off, y0, span.state);
+      // at the very start the mark stands below the lane's head, not on it
+      marks += drawn(ink, off, k ? y0 : y0 + 90, span.state);
     }
   });
   return out + marks;
