@@ -11,11 +11,9 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from fieldkit import values
-from fieldkit.run import clock, judge, moves, names, rows
+from fieldkit.run import clock, judge, moves, names, readings, rows
 from fieldkit.run.moves import State, disagree
 from fieldkit.run.names import Context, Scope
-from fieldkit.values import Fault
 
 Plain = dict[str, Any]
 Said = tuple[str, Plain]
@@ -80,10 +78,6 @@ def answer(ctx: Context, state: State, event: Plain, corrections: list[Plain]) -
         state["pending"] = None
 
 
-def names_now(ctx: Context, state: State) -> Scope:
-    return names.scope(ctx, state)
-
-
 def corrected(body: Plain, corrections: list[Plain]) -> tuple[Plain, list[Plain]]:
     """A body with its corrections applied, and every text that stood there before."""
     old = []
@@ -112,40 +106,6 @@ def with_field(body: Plain, field: str, text: str) -> Plain:
     return {**body, "points": [{**p, "text": text} if p["name"] == name else p for p in body["points"]]}
 
 
-def instrument(state: State, name: str | None) -> Plain | None:
-    """The instrument as the run's first event carries it."""
-    started = state["started"]
-    return next((one for one in started["instruments"] if one["id"] == name), None) if started and name else None
-
-
-def meter_of(state: State, meter: Plain | None) -> str | None:
-    """The instrument that a step's meter means in this run."""
-    if meter is None:
-        return None
-    if meter["instrument"]:
-        return str(meter["instrument"])
-    return state["started"]["meters"].get(meter["role"]) if state["started"] else None
-
-
-def resolution_of(control: Plain, meter: Plain | None) -> str | None:
-    """The step's own resolution, else the instrument's where it reads in the step's unit."""
-    if control["resolution"] is not None:
-        return str(control["resolution"])
-    if meter is not None and meter["unit"] == control["unit"]["symbol"]:
-        return str(meter["resolution"])
-    return None
-
-
-def bounds(
-    ctx: Context, where: Scope, control: Plain, meter: Plain | None, limits: Plain | None = None
-) -> Plain | None:
-    """The limits of a number or result (or `limits`, of a point) as they are shown and applied now."""
-    own = control["limits"] if limits is None else limits
-    typical = control.get("typical") if limits is None else None
-    resolution = resolution_of(control, meter)
-    return judge.bounds(own, typical, control["unit"], resolution, meter, lambda tree: names.value(ctx, where, tree))
-
-
 def person(state: State, name: str) -> Plain | None:
     started = state["started"]
     return next((one for one in started["people"] if one["id"] == name), None) if started else None
@@ -170,8 +130,8 @@ def _confirm(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
 
 def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     body, control, seq = event["body"], event["step"]["control"], event["seq"]
-    meter = instrument(state, body["instrument"])
-    limits = bounds(ctx, where, control, meter)
+    meter = readings.instrument(state, body["instrument"])
+    limits = readings.bounds(ctx, where, control, meter)
     if body["unit"] != control["unit"]["symbol"]:
         disagree(state, seq, "unit", f"Event {seq} is in '{body['unit']}', the step in '{control['unit']['symbol']}'.")
     verdict = _judged(control, body["text"], limits, meter, control["protects"], event)
@@ -183,7 +143,7 @@ def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
             "verdict": "not judged",
             "instrument": body["instrument"],
         }
-    si = si_text(body["text"], control["unit"])
+    si = readings.si_text(body["text"], control["unit"])
     _keep(state, event["step"]["id"], body["text"], control["unit"]["symbol"], si, seq)
     return verdict.pop("outcome"), {
         "text": body["text"],
@@ -197,7 +157,7 @@ def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
 def _judged(
     control: Plain, text: str, limits: Plain | None, meter: Plain | None, protects: bool, event: Plain
 ) -> Plain:
-    resolution = resolution_of(control, meter)
+    resolution = readings.resolution_of(control, meter)
     day = clock.day(event["at"]["wall"])
     return judge.judge(text, control["unit"]["symbol"], limits, resolution, meter, protects, day)
 
@@ -212,28 +172,9 @@ def _keep(state: State, step: str, text: str, unit: str, si: str | None, seq: in
         state["series"][step] = [*state["series"].get(step, []), si]
 
 
-def si_text(text: str, unit: Plain) -> str:
-    """The exact SI value of a typed number, as decimal text."""
-    typed = values.typed(text)
-    if not isinstance(typed, values.Dec):
-        raise ValueError(text)
-    return values.to_text(
-        values.trim(values.add(values.mul(typed, values.dec(unit["factor"])), values.dec(unit["offset"])))
-    )
-
-
-def result_text(ctx: Context, where: Scope, control: Plain) -> tuple[str, str, str]:
-    """A result now: its SI value (12 digits), its text in the unit, the sentence of a fault (then both are empty)."""
-    si = names.value(ctx, where, control["value"])
-    if isinstance(si, Fault):
-        return "", "", si.says
-    text = rows.shown(si, control["unit"], control["resolution"])
-    return ("", "", "It is no number.") if text is None else (values.round12(si), text, "")
-
-
 def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     body, control, seq, step = event["body"], event["step"]["control"], event["seq"], event["step"]["id"]
-    si, text, fault = result_text(ctx, where, control)
+    si, text, fault = readings.result_text(ctx, where, control)
     old = []
     if si != body["value"]:
         changed = next((row for row in reversed(state["log"]) if any(o["seq"] > seq for o in row["old"])), None)
@@ -254,7 +195,7 @@ def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
                     "reason": "worked out again after the correction",
                 }
             ]
-    limits = bounds(ctx, where, control, None)
+    limits = readings.bounds(ctx, where, control, None)
     unit = control["unit"]["symbol"]
     if fault:
         _keep(state, step, "", unit, None, seq)
@@ -266,24 +207,17 @@ def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     return verdict.pop("outcome"), {**said, **_of_verdict(verdict)}
 
 
-def proof_fields(control: Plain) -> list[tuple[str, str, Plain]]:
-    """What a proof asks for, in order: field of the event, title, limits."""
-    known = (control["known_source"], control["known"])
-    points = [("points." + p["name"], p["title"], p["limits"]) for p in control["points"]]
-    return [("before", *known), *points, ("after", *known)]
-
-
 def _prove(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     body, control, seq = event["body"], event["step"]["control"], event["seq"]
-    meter = instrument(state, body["instrument"])
+    meter = readings.instrument(state, body["instrument"])
     typed = {point["name"]: point["text"] for point in body["points"]}
     for point in control["points"]:
         if point["name"] not in typed:
             disagree(state, seq, "point-missing", f"Event {seq} leaves out the point '{point['name']}'.")
     points = []
-    for field, title, own in proof_fields(control):
+    for field, title, own in readings.proof_fields(control):
         text = field_text(body, field) or ""
-        limits = bounds(ctx, where, control, meter, own)
+        limits = readings.bounds(ctx, where, control, meter, own)
         verdict = _judged(control, text, limits, meter, True, event)
         if "refused" in verdict:
             disagree(state, seq, "no-number", f"Event {seq} holds no number at {title}: {verdict['refused']['says']}")
@@ -398,22 +332,10 @@ def _remark(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
 
 
 def _wait(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
-    elapsed = waited(ctx, where, event["step"]["control"])
+    elapsed = readings.waited(ctx, where, event["step"]["control"])
     if elapsed is None or elapsed["left"] > 0:
         disagree(state, event["seq"], "too-early", f"Event {event['seq']} ends a wait before its time.")
     return "done", {"elapsed": None if elapsed is None else elapsed["texts"]}
-
-
-def waited(ctx: Context, where: Scope, control: Plain) -> Plain | None:
-    """What a wait has counted: texts of least, greatest and needed seconds, and `left`; None before it has begun."""
-    least = where.names.get(control["clock"])
-    head, _, rest = control["clock"].partition(":")
-    greatest = where.names.get(f"{'oldest' if head == 'age' else 'oldest-since'}:{rest}", least)
-    needed = names.value(ctx, where, control["least"])
-    if not isinstance(least, float) or not isinstance(needed, float) or not isinstance(greatest, float):
-        return None
-    texts = {"least": values.fixed(least, 3), "greatest": values.fixed(greatest, 3), "needed": values.fixed(needed, 3)}
-    return {"texts": texts, "left": max(0.0, needed - least)}
 
 
 def _people(ctx: Context, state: State, where: Scope, event: Plain) -> Said:

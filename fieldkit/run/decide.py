@@ -13,7 +13,7 @@ from collections.abc import Callable
 from typing import Any
 
 from fieldkit.errors import Refusal
-from fieldkit.run import answers, clock, judge, moves, names, progress, rules, start
+from fieldkit.run import answers, clock, judge, moves, names, progress, readings, rules, start
 from fieldkit.run import state as folding
 from fieldkit.run.command import Given, checked
 from fieldkit.run.moves import State
@@ -195,7 +195,7 @@ def _corrected(given: Given) -> Plain:
     if text == now:
         raise Refusal("nothing-changed", "It says so already.")
     if row["kind"] in ("read", "proved"):
-        rules.number(text, answers.instrument(state, row["instrument"]), row["unit"])
+        rules.number(text, readings.instrument(state, row["instrument"]), row["unit"])
     return {**asked, "text": text, "move": _corrected_move(given, row, text)}
 
 
@@ -207,12 +207,12 @@ def _corrected_move(given: Given, row: Plain, text: str) -> str | None:
         return None
     step = ctx.steps[row["step"]]
     control = step["control"]
-    meter = answers.instrument(state, row["instrument"])
-    resolution = answers.resolution_of(control, meter)
+    meter = readings.instrument(state, row["instrument"])
+    resolution = readings.resolution_of(control, meter)
     verdict = judge.judge(text, row["unit"], row["limits"], resolution, meter, control["protects"])
     if verdict.get("outcome") != "pass":
         return None
-    si = answers.si_text(text, control["unit"])
+    si = readings.si_text(text, control["unit"])
     column = state["series"].get(step["id"], [])
     after = {
         **state,

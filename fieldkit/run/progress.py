@@ -8,11 +8,10 @@ from __future__ import annotations
 
 from typing import Any
 
-from fieldkit.run import answers, clock, judge, moves, names, rows
+from fieldkit.run import ahead, clock, judge, moves, names, readings, rows
 from fieldkit.run.moves import State
 from fieldkit.run.names import LIVE, Context, Scope, context
 from fieldkit.sheet.model import Sheet
-from fieldkit.sheet.moves import END, SAFE
 
 Plain = dict[str, Any]
 
@@ -31,7 +30,7 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) 
     step = ctx.steps.get(state["node"])
     reasons = closed(ctx, state, where)
     ways = offered(ctx, state, where)
-    path = ahead(ctx, state, where)
+    path = ahead.ahead(ctx, state, where)
     meter = _meter(state, step)
     limits = _limits(ctx, where, step, meter)
     return {
@@ -48,9 +47,9 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) 
         "value": _value(ctx, where, step),
         "level": rows.level_text(ctx, where, step) if step and step["level"] else "",
         "judgeable": _judgeable(ctx, where, step, meter, limits, now),
-        "waits": waits(ctx, where, state, path),
+        "waits": ahead.waits(ctx, where, state, path),
         "live": [name for name, source in state["sources"].items() if source["state"] in LIVE],
-        "next_change": _next_change(state, ctx, path),
+        "next_change": ahead.next_change(state, ctx, path),
         "may": may(state, not reasons, ways),
         "path": [step_id for step_id, _ in path[1:]],
     }
@@ -66,7 +65,7 @@ def closed(ctx: Context, state: State, where: Scope) -> list[Plain]:
         return [{"says": "The last step is done. End the run and sign it.", "left": None}]
     if state["pending"]:
         return [{"says": "It is answered. Choose how to go on.", "left": None}]
-    gates = [names.reasons(ctx, where, move["gate"], node) for move in _forward(ctx, node)]
+    gates = [names.reasons(ctx, where, move["gate"], node) for move in ahead.forward(ctx, node)]
     found = min(gates, key=len) if gates and all(gates) else []
     timed = any(one["left"] is not None for one in found)
     return found if timed else [*_wait_reasons(ctx, where, step), *found]
@@ -92,17 +91,11 @@ _PHASES = {
 }
 
 
-def _forward(ctx: Context, node: str) -> list[Plain]:
-    """The moves that an answer of the step is for: not those that a fail offers, and no way round."""
-    leaving = ctx.leaving.get(node, [])
-    return [m for m in leaving if m["on"] != "fail" and m["manner"] == "plain" and not moves.is_around(m)]
-
-
 def _wait_reasons(ctx: Context, where: Scope, step: Plain) -> list[Plain]:
     control = step["control"]
     if control["control"] != "wait":
         return []
-    elapsed = answers.waited(ctx, where, control)
+    elapsed = readings.waited(ctx, where, control)
     if elapsed is None:
         return [{"says": "The time has not begun to count.", "left": None}]
     if elapsed["left"] > 0:
@@ -175,13 +168,13 @@ def _is(step: Plain | None, *controls: str) -> bool:
 def _meter(state: State, step: Plain | None) -> Plain | None:
     """The instrument that the step is read with, as this run carries it."""
     control = step["control"] if step else {}
-    return answers.instrument(state, answers.meter_of(state, control.get("meter") or control.get("tester")))
+    return readings.instrument(state, readings.meter_of(state, control.get("meter") or control.get("tester")))
 
 
 def _limits(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> Plain | None:
     if step is None or not _is(step, "number", "result"):
         return None
-    return answers.bounds(ctx, where, step["control"], meter)
+    return readings.bounds(ctx, where, step["control"], meter)
 
 
 def _points(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> list[Plain]:
@@ -189,8 +182,8 @@ def _points(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None)
     if step is None or not _is(step, "prove"):
         return []
     return [
-        {"field": field, "title": title, "limits": answers.bounds(ctx, where, step["control"], meter, own)}
-        for field, title, own in answers.proof_fields(step["control"])
+        {"field": field, "title": title, "limits": readings.bounds(ctx, where, step["control"], meter, own)}
+        for field, title, own in readings.proof_fields(step["control"])
     ]
 
 
@@ -198,14 +191,14 @@ def _value(ctx: Context, where: Scope, step: Plain | None) -> str | None:
     """A result in its unit; None where the step is none, or the formula has no value."""
     if step is None or not _is(step, "result"):
         return None
-    return answers.result_text(ctx, where, step["control"])[1] or None
+    return readings.result_text(ctx, where, step["control"])[1] or None
 
 
 def _plate(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> str | None:
     control = step["control"] if step else {}
     if control.get("plate") is None:
         return None
-    resolution = answers.resolution_of(control, meter)
+    resolution = readings.resolution_of(control, meter)
     return rows.shown(names.value(ctx, where, control["plate"]), control["unit"], resolution)
 
 
@@ -220,83 +213,10 @@ def _judgeable(
     if asked and meter is None:
         why = f"This run carries no instrument for {asked['role'] or asked['instrument']}."
     elif _is(step, "result"):
-        why = answers.result_text(ctx, where, step["control"])[2]
+        why = readings.result_text(ctx, where, step["control"])[2]
     if limits and not why:
         why = limits["fault"] or limits["coarse"]
     return {"ok": not why, "why": why, "overdue": judge.overdue(meter, now["wall"])}
-
-
-def ahead(ctx: Context, state: State, where: Scope) -> list[tuple[str, Plain | None]]:
-    """The steps that probably come, the open one first, each with the move that probably leaves it."""
-    node, seen, path = state["node"], set[str](), list[tuple[str, Plain | None]]()
-    while node in ctx.steps and node not in seen:
-        seen.add(node)
-        pending = state["pending"] if state["pending"] and state["pending"]["step"] == node else None
-        leaving = moves.leads(ctx, state, node, pending["outcome"]) if pending else _forward(ctx, node)
-        plain = [m for m in leaving if m["manner"] == "plain" and m["to"] not in seen and m["to"] != SAFE]
-        likely = [m for m in plain if not any(_decided_against(ctx, state, where, c) for c in m["gate"])]
-        move = likely[0] if likely else plain[0] if plain else None
-        path.append((node, move))
-        if move is None or move["to"] == END:
-            break
-        node = move["to"]
-    return path
-
-
-def _decided_against(ctx: Context, state: State, where: Scope, condition: Plain) -> bool:
-    """The condition speaks only of answered choices and of givens, and does not hold: it never will in this run."""
-    found = names.mentioned(condition["tree"])
-    given = {one["name"] for one in ctx.sheet["givens"]}
-    known = all(n in given or (n.startswith("choice:") and n[len("choice:") :] in state["choices"]) for n in found)
-    return bool(found) and known and names.value(ctx, where, condition["tree"]) is not True
-
-
-def waits(ctx: Context, where: Scope, state: State, path: list[tuple[str, Plain | None]]) -> list[Plain]:
-    """Waits that count now and gate the open step or one that comes."""
-    found: list[Plain] = []
-    known = set()
-    for step_id, move in path:
-        step = ctx.steps[step_id]
-        control = step["control"]
-        own = _is(step, "wait")
-        asked = [{"clock": control["clock"], "least": control["least"], "says": step["title"]}] if own else []
-        asked += [c for c in (move["gate"] if move else []) if c["clock"] and c["least"]]
-        untimed = [c for c in (move["gate"] if move else []) if not c["clock"]]
-        if step_id != state["node"] and names.reasons(ctx, where, untimed, step_id):
-            continue
-        for one in asked:
-            elapsed = answers.waited(ctx, where, one)
-            if elapsed is None or (elapsed["left"] <= 0 and not (own and step_id == state["node"])):
-                continue
-            key = (one["clock"], elapsed["texts"]["needed"])
-            if key in known:
-                continue
-            known.add(key)
-            head, _, rest = one["clock"].partition(":")
-            found.append(
-                {
-                    "step": step_id,
-                    "number": step["number"],
-                    "source": rest if head == "age" else None,
-                    "since": rest if head == "since" else None,
-                    "says": one["says"],
-                    "left": elapsed["left"],
-                    "least": elapsed["texts"]["needed"],
-                    "elapsed": elapsed["texts"]["least"],
-                    "greatest": elapsed["texts"]["greatest"],
-                }
-            )
-    return found
-
-
-def _next_change(state: State, ctx: Context, path: list[tuple[str, Plain | None]]) -> Plain | None:
-    """The next step that probably changes a source, and what it changes."""
-    for step_id, move in path:
-        sets = move["effects"]["sets"] if move else {}
-        changed = {n: to for n, to in sets.items() if state["sources"].get(n, {}).get("state") != to}
-        if changed:
-            return {"sources": changed, "step": step_id, "number": ctx.steps[step_id]["number"]}
-    return None
 
 
 _MAY = {

@@ -13,7 +13,7 @@ from typing import Any
 
 from fieldkit import values
 from fieldkit.errors import Refusal
-from fieldkit.run import answers, names
+from fieldkit.run import answers, names, readings
 from fieldkit.run.command import Given
 from fieldkit.run.moves import State
 from fieldkit.run.names import Context
@@ -99,8 +99,8 @@ def _confirmed(given: Given, step: Plain) -> Plain:
 
 def _meter(given: Given, asked: Plain | None, key: str) -> Plain | None:
     """The instrument that was used: the one named, else the one that the cabinet's register means."""
-    named = given.text(key) or answers.meter_of(given.state, asked)
-    meter = answers.instrument(given.state, named)
+    named = given.text(key) or readings.meter_of(given.state, asked)
+    meter = readings.instrument(given.state, named)
     if meter is None and (named or asked):
         wanted = named or (asked or {}).get("role") or ""
         raise Refusal("no-instrument", f"This run carries no instrument {wanted}. Name the one that was used.")
@@ -127,7 +127,7 @@ def _proved(given: Given, step: Plain) -> Plain:
         else {}
     )
     texts: Plain = {"before": given.asked.get("before"), "after": given.asked.get("after")}
-    for field, title, _ in answers.proof_fields(control):
+    for field, title, _ in readings.proof_fields(control):
         text = texts[field] if field in texts else typed.get(field[len("points.") :])
         if not isinstance(text, str) or not text:
             raise Refusal("point-missing", f"Nothing is written for: {title}.")
@@ -227,7 +227,7 @@ def _remarked(given: Given, step: Plain) -> Plain:
 
 def _worked_out(given: Given, step: Plain) -> Plain:
     where = names.scope(given.ctx, given.state, given.now)
-    return {"value": answers.result_text(given.ctx, where, step["control"])[0]}
+    return {"value": readings.result_text(given.ctx, where, step["control"])[0]}
 
 
 def _waited(given: Given, step: Plain) -> Plain:

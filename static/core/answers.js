@@ -7,8 +7,8 @@ import * as clock from "./clock.js";
 import * as judge from "./judge.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
+import * as readings from "./readings.js";
 import * as rows from "./rows.js";
-import { Dec, Fault, add, dec, fixed, mul, round12, to_text, trim, typed } from "./values.js";
 
 /** @typedef {import("./names.js").Context} Context */
 /** @typedef {import("./names.js").State} State */
@@ -110,36 +110,6 @@ function with_field(body, field, text) {
   return { ...body, points: body.points.map((/** @type {any} */ p) => (p.name === name ? { ...p, text } : p)) };
 }
 
-/** The instrument as the run's first event carries it. @param {State} state @param {string | null} name @returns {any} */
-export function instrument(state, name) {
-  if (!state.started || !name) return null;
-  return state.started.instruments.find((/** @type {any} */ one) => one.id === name) ?? null;
-}
-
-/** The instrument that a step's meter means in this run. @param {State} state @param {any} meter @returns {string | null} */
-export function meter_of(state, meter) {
-  if (!meter) return null;
-  if (meter.instrument) return meter.instrument;
-  const meters = state.started ? state.started.meters : {};
-  return Object.hasOwn(meters, meter.role) ? meters[meter.role] : null;
-}
-
-/** The step's own resolution, else the instrument's where it reads in the step's unit.
- * @param {any} control @param {any} meter @returns {string | null} */
-export function resolution_of(control, meter) {
-  if (control.resolution !== null) return control.resolution;
-  return meter !== null && meter.unit === control.unit.symbol ? meter.resolution : null;
-}
-
-/** The limits of a number or result (or `limits`, of a point) as they are shown and applied now.
- * @param {Context} ctx @param {Scope} where @param {any} control @param {any} meter @param {any} [limits] */
-export function bounds(ctx, where, control, meter, limits = null) {
-  const own = limits === null ? control.limits : limits;
-  const typical = limits === null ? control.typical ?? null : null;
-  const resolution = resolution_of(control, meter);
-  return judge.bounds(own, typical, control.unit, resolution, meter, (tree) => names.value(ctx, where, tree));
-}
-
 /** @param {State} state @param {string} name @returns {any} */
 export function person(state, name) {
   return state.started ? state.started.people.find((/** @type {any} */ one) => one.id === name) ?? null : null;
@@ -156,50 +126,10 @@ export function lock_on(state, point) {
   return state.locks.some((/** @type {any} */ lock) => lock.point === point);
 }
 
-/** The exact SI value of a typed number, as decimal text. @param {string} text @param {any} unit */
-export function si_text(text, unit) {
-  const found = typed(text);
-  if (!(found instanceof Dec)) throw new RangeError(text);
-  return to_text(trim(add(mul(found, dec(unit.factor)), dec(unit.offset))));
-}
-
-/** A result now: its SI value (12 digits), its text in the unit, the sentence of a fault (then both are empty).
- * @param {Context} ctx @param {Scope} where @param {any} control @returns {[string, string, string]} */
-export function result_text(ctx, where, control) {
-  const si = names.value(ctx, where, control.value);
-  if (si instanceof Fault) return ["", "", si.says];
-  const text = rows.shown(si, control.unit, control.resolution);
-  return text === null ? ["", "", "It is no number."] : [round12(si), text, ""];
-}
-
-/** What a proof asks for, in order: field of the event, title, limits.
- * @param {any} control @returns {[string, string, any][]} */
-export function proof_fields(control) {
-  return [
-    ["before", control.known_source, control.known],
-    ...control.points.map((/** @type {any} */ p) => [`points.${p.name}`, p.title, p.limits]),
-    ["after", control.known_source, control.known],
-  ];
-}
-
-/** What a wait has counted: texts of least, greatest and needed seconds, and `left`; null before it has begun.
- * @param {Context} ctx @param {Scope} where @param {{clock: string, least: any}} control */
-export function waited(ctx, where, control) {
-  const least = where.names[control.clock];
-  const cut = control.clock.indexOf(":");
-  const [head, rest] = cut < 0 ? [control.clock, ""] : [control.clock.slice(0, cut), control.clock.slice(cut + 1)];
-  const name = `${head === "age" ? "oldest" : "oldest-since"}:${rest}`;
-  const greatest = name in where.names ? where.names[name] : least;
-  const needed = names.value(ctx, where, control.least);
-  if (typeof least !== "number" || typeof needed !== "number" || typeof greatest !== "number") return null;
-  const texts = { least: fixed(least, 3), greatest: fixed(greatest, 3), needed: fixed(needed, 3) };
-  return { texts, left: Math.max(0, needed - least) };
-}
-
 /** @param {any} control @param {string} text @param {any} limits @param {any} meter @param {boolean} protects @param {any} event */
 function judged(control, text, limits, meter, protects, event) {
   const day = clock.day(event.at.wall);
-  return judge.judge(text, control.unit.symbol, limits, resolution_of(control, meter), meter, protects, day);
+  return judge.judge(text, control.unit.symbol, limits, readings.resolution_of(control, meter), meter, protects, day);
 }
 
 /** @param {any} verdict */
@@ -218,8 +148,8 @@ function keep(state, step, text, unit, si, seq) {
 function number(ctx, state, where, event) {
   const { body, seq, step } = event;
   const { control } = step;
-  const meter = instrument(state, body.instrument);
-  const limits = bounds(ctx, where, control, meter);
+  const meter = readings.instrument(state, body.instrument);
+  const limits = readings.bounds(ctx, where, control, meter);
   if (body.unit !== control.unit.symbol) {
     disagree(state, seq, "unit", `Event ${seq} is in '${body.unit}', the step in '${control.unit.symbol}'.`);
   }
@@ -228,7 +158,7 @@ function number(ctx, state, where, event) {
     disagree(state, seq, "no-number", `Event ${seq} holds no number: ${verdict.refused.says}`);
     return ["fail", { text: body.text, unit: body.unit, verdict: "not judged", instrument: body.instrument }];
   }
-  keep(state, step.id, body.text, control.unit.symbol, si_text(body.text, control.unit), seq);
+  keep(state, step.id, body.text, control.unit.symbol, readings.si_text(body.text, control.unit), seq);
   const said = { text: body.text, unit: body.unit, limits, instrument: body.instrument, ...of_verdict(verdict) };
   return [verdict.outcome, said];
 }
@@ -237,7 +167,7 @@ function number(ctx, state, where, event) {
 function result(ctx, state, where, event) {
   const { body, seq, step } = event;
   const { control } = step;
-  const [si, text, fault] = result_text(ctx, where, control);
+  const [si, text, fault] = readings.result_text(ctx, where, control);
   /** @type {any[]} */
   let old = [];
   if (si !== body.value) {
@@ -249,7 +179,7 @@ function result(ctx, state, where, event) {
       old = [{ field: "value", text: body.value, seq: last, reason: "worked out again after the correction" }];
     }
   }
-  const limits = bounds(ctx, where, control, null);
+  const limits = readings.bounds(ctx, where, control, null);
   const unit = control.unit.symbol;
   if (fault) {
     keep(state, step.id, "", unit, null, seq);
@@ -264,15 +194,15 @@ function result(ctx, state, where, event) {
 function prove(ctx, state, where, event) {
   const { body, seq, step } = event;
   const { control } = step;
-  const meter = instrument(state, body.instrument);
+  const meter = readings.instrument(state, body.instrument);
   const named = body.points.map((/** @type {any} */ p) => p.name);
   for (const point of control.points) {
     if (!named.includes(point.name)) disagree(state, seq, "point-missing", `Event ${seq} leaves out the point '${point.name}'.`);
   }
   const points = [];
-  for (const [field, title, own] of proof_fields(control)) {
+  for (const [field, title, own] of readings.proof_fields(control)) {
     const text = field_text(body, field) || "";
-    const limits = bounds(ctx, where, control, meter, own);
+    const limits = readings.bounds(ctx, where, control, meter, own);
     const verdict = judged(control, text, limits, meter, true, event);
     if (verdict.refused) {
       disagree(state, seq, "no-number", `Event ${seq} holds no number at ${title}: ${verdict.refused.says}`);
@@ -377,7 +307,7 @@ function hold(ctx, state, where, event) {
 
 /** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
 function wait(ctx, state, where, event) {
-  const elapsed = waited(ctx, where, event.step.control);
+  const elapsed = readings.waited(ctx, where, event.step.control);
   if (elapsed === null || elapsed.left > 0) {
     disagree(state, event.seq, "too-early", `Event ${event.seq} ends a wait before its time.`);
   }

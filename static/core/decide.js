@@ -12,6 +12,7 @@ import * as judge from "./judge.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
 import * as progress from "./progress.js";
+import * as readings from "./readings.js";
 import * as rules from "./rules.js";
 import * as start from "./start.js";
 import { one as fold_one } from "./state.js";
@@ -175,7 +176,7 @@ function corrected(given) {
   const text = given.need("text", "nothing-typed", "Write the right text.");
   given.need("reason", "reason-needed", "Say what was wrong.");
   if (text === now) throw new Refused("nothing-changed", "It says so already.");
-  if (["read", "proved"].includes(row.kind)) rules.number(text, answers.instrument(state, row.instrument), row.unit);
+  if (["read", "proved"].includes(row.kind)) rules.number(text, readings.instrument(state, row.instrument), row.unit);
   return { ...asked, text, move: corrected_move(given, row, text) };
 }
 
@@ -187,11 +188,11 @@ function corrected_move(given, row, text) {
   if (!pending || pending.seq !== row.seq || row.kind !== "read" || state.phase !== "going") return null;
   const step = ctx.steps[row.step];
   const { control } = step;
-  const meter = answers.instrument(state, row.instrument);
-  const resolution = answers.resolution_of(control, meter);
+  const meter = readings.instrument(state, row.instrument);
+  const resolution = readings.resolution_of(control, meter);
   const verdict = judge.judge(text, row.unit, row.limits, resolution, meter, control.protects);
   if (verdict.outcome !== "pass") return null;
-  const si = answers.si_text(text, control.unit);
+  const si = readings.si_text(text, control.unit);
   const column = Object.hasOwn(state.series, step.id) ? state.series[step.id] : [];
   const after = {
     ...state,

@@ -3,18 +3,18 @@
  * @module
  */
 
-import * as answers from "./answers.js";
+import * as ahead from "./ahead.js";
 import * as clock from "./clock.js";
 import * as judge from "./judge.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
+import * as readings from "./readings.js";
 import * as rows from "./rows.js";
 
 /** @typedef {import("./names.js").Context} Context */
 /** @typedef {import("./names.js").State} State */
 /** @typedef {import("./names.js").Scope} Scope */
 /** @typedef {import("./names.js").Reason} Reason */
-/** @typedef {[string, any][]} Path */
 
 /** @type {Record<string, string>} */
 export const LABELS = { plain: "Go on", again: "Take it again", deviation: "Accept as a deviation", stop: "Stop and make safe" };
@@ -26,9 +26,9 @@ export function progress(sheet, state, now) {
   const step = ctx.steps[state.node] ?? null;
   const reasons = closed(ctx, state, where);
   const ways = offered(ctx, state, where);
-  const path = ahead(ctx, state, where);
+  const path = ahead.ahead(ctx, state, where);
   const meter = meter_of(state, step);
-  const limits = is(step, "number", "result") ? answers.bounds(ctx, where, step.control, meter) : null;
+  const limits = is(step, "number", "result") ? readings.bounds(ctx, where, step.control, meter) : null;
   return {
     node: state.node,
     step,
@@ -40,12 +40,12 @@ export function progress(sheet, state, now) {
     points: points(ctx, where, step, meter),
     instrument: meter,
     plate: plate(ctx, where, step, meter),
-    value: is(step, "result") ? answers.result_text(ctx, where, step.control)[1] || null : null,
+    value: is(step, "result") ? readings.result_text(ctx, where, step.control)[1] || null : null,
     level: step && step.level ? rows.level_text(ctx, where, step) : "",
     judgeable: judgeable(ctx, where, step, meter, limits, now),
-    waits: waits(ctx, where, state, path),
+    waits: ahead.waits(ctx, where, state, path),
     live: Object.keys(state.sources).filter((name) => names.LIVE.includes(state.sources[name].state)),
-    next_change: next_change(state, ctx, path),
+    next_change: ahead.next_change(state, ctx, path),
     may: may(state, reasons.length === 0, ways),
     path: path.slice(1).map(([step_id]) => step_id),
   };
@@ -59,7 +59,7 @@ export function closed(ctx, state, where) {
   const step = ctx.steps[node];
   if (!step) return [{ says: "The last step is done. End the run and sign it.", left: null }];
   if (state.pending) return [{ says: "It is answered. Choose how to go on.", left: null }];
-  const gates = forward(ctx, node).map((move) => names.reasons(ctx, where, move.gate, node));
+  const gates = ahead.forward(ctx, node).map((move) => names.reasons(ctx, where, move.gate, node));
   const shut = gates.length > 0 && gates.every((gate) => gate.length);
   const found = shut ? gates.reduce((a, b) => (b.length < a.length ? b : a)) : [];
   const timed = found.some((one) => one.left !== null);
@@ -83,16 +83,10 @@ const PHASES = {
   voided: "The run was voided.",
 };
 
-/** The moves that an answer of the step is for: not those that a fail offers, and no way round.
- * @param {Context} ctx @param {string} node */
-function forward(ctx, node) {
-  return (ctx.leaving[node] ?? []).filter((m) => m.on !== "fail" && m.manner === "plain" && !moves.is_around(m));
-}
-
 /** @param {Context} ctx @param {Scope} where @param {any} step @returns {Reason[]} */
 function wait_reasons(ctx, where, step) {
   if (step.control.control !== "wait") return [];
-  const elapsed = answers.waited(ctx, where, step.control);
+  const elapsed = readings.waited(ctx, where, step.control);
   if (elapsed === null) return [{ says: "The time has not begun to count.", left: null }];
   if (elapsed.left > 0) return [{ says: "The time is not over.", left: elapsed.left }];
   return [];
@@ -161,17 +155,17 @@ function is(step, ...controls) {
 /** The instrument that the step is read with, as this run carries it. @param {State} state @param {any} step */
 function meter_of(state, step) {
   const control = step ? step.control : {};
-  return answers.instrument(state, answers.meter_of(state, control.meter ?? control.tester ?? null));
+  return readings.instrument(state, readings.meter_of(state, control.meter ?? control.tester ?? null));
 }
 
 /** What a proof asks for, in order, each with its limits.
  * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter */
 function points(ctx, where, step, meter) {
   if (!is(step, "prove")) return [];
-  return answers.proof_fields(step.control).map(([field, title, own]) => ({
+  return readings.proof_fields(step.control).map(([field, title, own]) => ({
     field,
     title,
-    limits: answers.bounds(ctx, where, step.control, meter, own),
+    limits: readings.bounds(ctx, where, step.control, meter, own),
   }));
 }
 
@@ -179,7 +173,7 @@ function points(ctx, where, step, meter) {
 function plate(ctx, where, step, meter) {
   const control = step ? step.control : {};
   if (!control.plate) return null;
-  return rows.shown(names.value(ctx, where, control.plate), control.unit, answers.resolution_of(control, meter));
+  return rows.shown(names.value(ctx, where, control.plate), control.unit, readings.resolution_of(control, meter));
 }
 
 /** Whether a reading could be judged now, and what keeps it from being so.
@@ -189,87 +183,9 @@ function judgeable(ctx, where, step, meter, limits, now) {
   const asked = step.control.meter ?? step.control.tester ?? null;
   let why = "";
   if (asked && meter === null) why = `This run carries no instrument for ${asked.role || asked.instrument}.`;
-  else if (is(step, "result")) why = answers.result_text(ctx, where, step.control)[2];
+  else if (is(step, "result")) why = readings.result_text(ctx, where, step.control)[2];
   if (limits && !why) why = limits.fault || limits.coarse;
   return { ok: !why, why, overdue: judge.overdue(meter, now.wall) };
-}
-
-/** The steps that probably come, the open one first, each with the move that probably leaves it.
- * @param {Context} ctx @param {State} state @param {Scope} where @returns {Path} */
-export function ahead(ctx, state, where) {
-  /** @type {Path} */
-  const path = [];
-  const seen = new Set();
-  let { node } = state;
-  while (node in ctx.steps && !seen.has(node)) {
-    seen.add(node);
-    const pending = state.pending && state.pending.step === node ? state.pending : null;
-    const leaving = pending ? moves.leads(ctx, state, node, pending.outcome) : forward(ctx, node);
-    const plain = leaving.filter((m) => m.manner === "plain" && !seen.has(m.to) && m.to !== moves.SAFE);
-    const likely = plain.filter((m) => !m.gate.some((/** @type {any} */ c) => decided_against(ctx, state, where, c)));
-    const move = likely[0] ?? plain[0] ?? null;
-    path.push([node, move]);
-    if (move === null || move.to === moves.END) break;
-    node = move.to;
-  }
-  return path;
-}
-
-/** The condition speaks only of answered choices and of givens, and does not hold: it never will in this run.
- * @param {Context} ctx @param {State} state @param {Scope} where @param {any} condition */
-function decided_against(ctx, state, where, condition) {
-  const found = [...names.mentioned(condition.tree)];
-  const given = (/** @type {string} */ name) => ctx.sheet.givens.some((/** @type {any} */ one) => one.name === name);
-  const chosen = (/** @type {string} */ name) => name.startsWith("choice:") && Object.hasOwn(state.choices, name.slice(7));
-  const known = found.every((name) => given(name) || chosen(name));
-  return found.length > 0 && known && names.value(ctx, where, condition.tree) !== true;
-}
-
-/** Waits that count now and gate the open step or one that comes.
- * @param {Context} ctx @param {Scope} where @param {State} state @param {Path} path */
-export function waits(ctx, where, state, path) {
-  const found = [];
-  const known = new Set();
-  for (const [step_id, move] of path) {
-    const step = ctx.steps[step_id];
-    const { control } = step;
-    const own = is(step, "wait");
-    const asked = own ? [{ clock: control.clock, least: control.least, says: step.title }] : [];
-    if (move) asked.push(...move.gate.filter((/** @type {any} */ c) => c.clock && c.least));
-    const untimed = move ? move.gate.filter((/** @type {any} */ c) => !c.clock) : [];
-    if (step_id !== state.node && names.reasons(ctx, where, untimed, step_id).length) continue;
-    for (const one of asked) {
-      const elapsed = answers.waited(ctx, where, one);
-      if (elapsed === null || (elapsed.left <= 0 && !(own && step_id === state.node))) continue;
-      const key = `${one.clock} ${elapsed.texts.needed}`;
-      if (known.has(key)) continue;
-      known.add(key);
-      const cut = one.clock.indexOf(":");
-      const [head, rest] = [one.clock.slice(0, cut), one.clock.slice(cut + 1)];
-      found.push({
-        step: step_id,
-        number: step.number,
-        source: head === "age" ? rest : null,
-        since: head === "since" ? rest : null,
-        says: one.says,
-        left: elapsed.left,
-        least: elapsed.texts.needed,
-        elapsed: elapsed.texts.least,
-        greatest: elapsed.texts.greatest,
-      });
-    }
-  }
-  return found;
-}
-
-/** @param {State} state @param {Context} ctx @param {Path} path */
-function next_change(state, ctx, path) {
-  for (const [step_id, move] of path) {
-    const sets = Object.entries(move ? move.effects.sets : {});
-    const changed = sets.filter(([name, to]) => moves.source_state(state, name) !== to);
-    if (changed.length) return { sources: Object.fromEntries(changed), step: step_id, number: ctx.steps[step_id].number };
-  }
-  return null;
 }
 
 /** @type {Record<string, string[]>} */

@@ -7,6 +7,7 @@
 import * as answers from "./answers.js";
 import { Refused } from "./command.js";
 import * as names from "./names.js";
+import * as readings from "./readings.js";
 import { Refusal, compare, dec, typed } from "./values.js";
 
 /** @typedef {import("./command.js").Given} Given */
@@ -77,8 +78,8 @@ export function end_states(ctx, state) {
 
 /** The instrument that was used. @param {Given} given @param {any} asked @param {string} key @returns {any} */
 function meter_used(given, asked, key) {
-  const named = given.text(key) || answers.meter_of(given.state, asked);
-  const meter = answers.instrument(given.state, named);
+  const named = given.text(key) || readings.meter_of(given.state, asked);
+  const meter = readings.instrument(given.state, named);
   if (meter === null && (named || asked)) {
     const wanted = named || (asked || {}).role || "";
     throw new Refused("no-instrument", `This run carries no instrument ${wanted}. Name the one that was used.`);
@@ -138,7 +139,7 @@ export const ANSWERS = {
     const meter = meter_used(given, control.tester, "instrument");
     const written = pairs(given.asked.points, "name", "text");
     const { before = null, after = null } = given.asked;
-    for (const [field, title] of answers.proof_fields(control)) {
+    for (const [field, title] of readings.proof_fields(control)) {
       const text = field === "before" ? before : field === "after" ? after : written.get(field.slice(7));
       if (typeof text !== "string" || !text) throw new Refused("point-missing", `Nothing is written for: ${title}.`);
       number(text, meter, control.unit.symbol);
@@ -214,7 +215,7 @@ export const ANSWERS = {
   },
   "worked-out": (given, step) => {
     const where = names.scope(given.ctx, given.state, given.now);
-    return { value: answers.result_text(given.ctx, where, step.control)[0] };
+    return { value: readings.result_text(given.ctx, where, step.control)[0] };
   },
   waited: () => ({}),
   "people-counted": (given, step) => {
