@@ -4,8 +4,8 @@ import { icon } from "./icons.js";
 import { lanesOf, railHeads, setLanes } from "./rails.js";
 import { personName, time } from "./words.js";
 
-/** Height of a past or coming row, as tablet.css has it. */
-const ROW = 48;
+/** Height of a past or coming row in px, as tokens.css has it: larger in glove mode. */
+const rowHeight = () => Number.parseInt(getComputedStyle(document.documentElement).getPropertyValue("--minor"), 10) || 48;
 
 /** @param {any} sheet @param {{makeSafe: () => void, thisRun: () => void}} acts */
 export function frame(sheet, acts) {
@@ -18,14 +18,15 @@ export function frame(sheet, acts) {
   const strip = h("main", { class: "strip", "data-strip": true, tabindex: "-1" }, past, now, ahead);
   const node = h("div", { class: "tab", "data-frame": true },
     h("header", { class: "head" }, safe, h("div", { class: "title" }, h("div", {}, title, under), h("div", {}, who, saved))),
-    railHeads(sheet), h("div", { class: "live" }, dl, more), mini, strip);
+    railHeads(sheet), h("section", { class: "live", "aria-label": "Energy sources in words" }, dl, more), mini, strip);
   setLanes(node, lanesOf(sheet).length);
   let isOver = false;
 
   /** The open step fills what two past and two coming rows leave free. */
   function settle() {
     const phone = matchMedia("(max-width: 640px)").matches;
-    const above = isOver || phone ? 0 : Math.min(strip.clientHeight < 700 ? 1 : 2, past.children.length), below = isOver || phone ? 0 : Math.min(2, ahead.children.length);
+    const ROW = rowHeight(), most = strip.clientHeight < 700 || ROW > 48 ? 1 : 2;
+    const above = isOver || phone ? 0 : Math.min(most, past.children.length), below = isOver || phone ? 0 : Math.min(ROW > 48 ? 1 : 2, ahead.children.length);
     now.style.setProperty("--open-height", `${Math.max(0, strip.clientHeight - (above + below) * ROW)}px`);
     strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - above * ROW);
   }

@@ -17,17 +17,17 @@ export function holdButton(spec) {
   const small = h("small", {}, spec.small ?? "Press and hold for one second");
   const node = /** @type {HTMLButtonElement} */ (h("button", { type: "button", class: "hold", "data-hold": true },
     h("span", {}, spec.label, small), h("span", { class: "grip", "aria-hidden": "true" }, bars)));
-  let began = 0, frame = 0, held = false, asked = 0;
+  let began = 0, frame = 0, asked = 0;
 
   const fill = (/** @type {number} */ share) => bars.forEach((bar, k) => bar.classList.toggle("dn", share * BARS > k));
   const stop = () => { cancelAnimationFrame(frame); began = 0; fill(0); };
-  const done = () => { stop(); held = true; spec.run(); };
+  const done = () => { stop(); spec.run(); };
   const tick = () => {
     const share = (performance.now() - began) / HOLD_MS;
     fill(share);
     if (share >= 1) done(); else frame = requestAnimationFrame(tick);
   };
-  const start = () => { if (began || node.disabled) return; held = false; began = performance.now(); frame = requestAnimationFrame(tick); };
+  const start = () => { if (began || node.disabled) return; began = performance.now(); frame = requestAnimationFrame(tick); };
 
   node.addEventListener("pointerdown", (e) => { if (e.button === 0) { node.setPointerCapture?.(e.pointerId); start(); } });
   node.addEventListener("pointermove", (e) => {
@@ -40,8 +40,8 @@ export function holdButton(spec) {
   node.addEventListener("keyup", (e) => { if (e.key === " " || e.key === "Enter") { e.preventDefault(); stop(); } });
   node.addEventListener("contextmenu", (e) => e.preventDefault());
   node.addEventListener("click", (e) => {
-    // A click of no pointer and no key is an assistive one: the second within four seconds counts as held.
-    if (e.detail !== 0 || held) { held = false; return; }
+    // A click of no pointer (it has no count) and no key (prevented above) is an assistive one: the second within four seconds counts as held.
+    if (e.detail !== 0) return;
     if (performance.now() - asked < 4000) { asked = 0; spec.run(); return; }
     asked = performance.now();
     alertUser("Activate it once more within four seconds to confirm.");

@@ -9,7 +9,8 @@ function liveWords(sheet, state, progress) {
   const waiting = new Set((progress?.waits ?? []).filter((/** @type {any} */ w) => Number(w.left) > 0).map((/** @type {any} */ w) => w.source));
   const counts = (/** @type {any} */ s) => LIVE.includes(now[s.name]) || (now[s.name] === "unknown" && s.isolable !== false);
   return sheet.sources.filter(counts).map((/** @type {any} */ s) => {
-    const level = progress?.level && s.name === "beam_supply" && now[s.name] === "on" ? ` at ${progress.level}` : "";
+    // A step that asks for the next level is not there yet.
+    const level = progress?.level && progress.step?.control.control !== "confirm" && s.name === "beam_supply" && now[s.name] === "on" ? ` at ${progress.level}` : "";
     const manner = now[s.name] === "unknown" ? " (not known)" : now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) && s.name === "heater" ? " (warming)" : "";
     return `${sourceTitle(sheet, s.name)}${level}${manner}`;
   });

@@ -16,6 +16,7 @@ export function mount(ctx, el) {
   const act = acting(ctx, { held: ctx.step.control.held, run: () => ctx.answer({ do: "confirmed" }) });
   put(part(el.r, "act"), act.node);
   put(part(el.r, "effect"), effectWords(ctx));
+  put(part(el.l, "level"), ctx.progress.level);
   function update() {
     const reasons = ctx.shutReasons();
     put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);

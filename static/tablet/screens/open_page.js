@@ -2,6 +2,7 @@
 import { cloneControl, stepHead, work } from "../step_page.js";
 import { CONTROLS } from "../controls/all.js";
 import { h, put } from "../dom.js";
+import { ladder } from "../ladder.js";
 import { confirmPage, declarePage } from "./states.js";
 import { afterPage, endPage, stoppedPage } from "./ending.js";
 import { waysPage } from "./ways.js";
@@ -12,7 +13,11 @@ function controlPage(ctx) {
   const refused = h("p", { class: "refused", "data-refused": true }), round = h("div", { class: "round", "data-ways-round": true });
   const { node, left, right } = work([stepHead(ctx.sheet, ctx.step, { level: ctx.progress.level, note: noteOf(ctx) })], []);
   left.append(...el.l.childNodes);
+  const rungs = ladder(ctx);
+  // Where there is a keypad the ladder stands below it, so that the reading and its button keep their place.
+  if (rungs && control !== "number") left.append(rungs);
   right.append(refused, round, ...el.r.childNodes);
+  if (rungs && control === "number") right.append(rungs);
   const mounted = /** @type {any} */ (CONTROLS)[control].mount(ctx, { l: left, r: right });
   waysRound(ctx, round);
   return {

@@ -11,6 +11,9 @@ const OVERS = { make_safe: makeSafePage, this_run: thisRunPage, remark: remarkPa
 export function overPage(ctx, name, args) {
   const made = /** @type {any} */ (OVERS)[name](ctx, args ?? {});
   made.node.dataset.over = name;
+  // A dialog that is not modal: MAKE SAFE stays in reach by touch, key and screen reader.
+  made.node.setAttribute("role", "dialog");
+  made.node.setAttribute("aria-label", made.node.querySelector("h1")?.textContent ?? "");
   // Escape leaves the page as its own button does; nothing is recorded by leaving.
   made.node.addEventListener("keydown", (/** @type {KeyboardEvent} */ e) => { if (e.key === "Escape") ctx.shut(); });
   return made;

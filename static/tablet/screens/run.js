@@ -47,7 +47,7 @@ export async function runScreen(app, args) {
   };
   ctx.lastReading = (/** @type {string} */ step) => {
     const row = [...(ctx.state.log ?? [])].reverse().find((/** @type {any} */ r) => r.step === step && r.kind === "read");
-    return row ? { text: row.text, name: "last try" } : null;
+    return row ? { text: row.text, name: row.level && row.level !== ctx.progress.level ? `at ${row.level}` : "last try" } : null;
   };
   /** Whether a person of the run can sign on this tablet. @param {any} person */
   function withKey(person) {

@@ -4,6 +4,7 @@
  */
 import { field, h, picks, put } from "../dom.js";
 import { acting } from "../acting.js";
+import { foundLocks } from "./found_locks.js";
 import { work } from "../step_page.js";
 import { STATE_WORDS, day, lasting, list, minute, personName, sentence, sourceTitle } from "../words.js";
 
@@ -45,11 +46,12 @@ export function declarePage(ctx) {
     row.node.append(age);
     return { source, row, node: row.node, minutes, timed: () => !age.hidden };
   });
-  const board = picks({ legend: "The lock board", many: true, quiet: true, options: [{ value: "seen", label: "I have looked at the board and at the cabinet: this is what is on it" }], onchange: () => act() });
+  const found = foundLocks(ctx, () => act());
+  const board = picks({ legend: "The lock board", many: true, quiet: true, options: [{ value: "seen", label: "I have looked at the board and at the cabinet: these are all the locks and earths" }], onchange: () => act() });
   const refused = h("p", { class: "refused", "data-refused": true });
   const foot = acting(ctx, { side: false, run: () => void record() });
   const { node } = work([head("Energy states as found", "Before the first step"), h("p", { class: "say" }, "Look at the plant, not at the list. What is otherwise than expected is recorded as it is."), h("ul", { class: "states" }, rows.map((/** @type {any} */ r) => r.node))],
-    [h("h2", { class: "part" }, "Locks and earths on the board"), boardList(ctx), h("div", { class: "fields" }, board.node), refused, foot.node]);
+    [h("h2", { class: "part" }, "Locks and earths on the board"), boardList(ctx), found.node, h("div", { class: "fields" }, board.node), refused, foot.node]);
 
   async function record() {
     const states = Object.fromEntries(rows.map((/** @type {any} */ r) => [r.source.name, r.row.state()]));
@@ -60,12 +62,13 @@ export function declarePage(ctx) {
       if (!/^\d+(\.\d+)?$/.test(text)) { r.minutes.wrong("Write the minutes as a number, like 20. Less if you are not sure."); return; }
       ages[r.source.name] = String(Math.floor(Number(text) * 60));
     }
-    const answer = await ctx.send({ do: "states-declared", states, ages, board_seen: board.values().length > 0 });
+    const answer = await ctx.send({ do: "states-declared", states, ages, board_seen: board.values().length > 0, locks: found.locks() });
     put(refused, answer.refused?.says ?? "");
     if (!answer.refused) ctx.shut();
   }
   function act() {
     const open = rows.filter((/** @type {any} */ r) => !r.row.state()).length;
+    if (!open && !found.complete()) { foot.show({ label: "Name the lock that was found", ready: false }); return; }
     foot.show({ label: open ? `${open} source${open === 1 ? "" : "s"} still to say` : board.values().length ? "Record the states as found" : "Look at the board first", ready: !open && board.values().length > 0 });
   }
   act();
