@@ -121,7 +121,12 @@ def lock_on(state: State, point: str) -> bool:
 
 
 def _caution(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
-    return "done", {"names": list(event["body"]["heard"])}
+    heard = list(event["body"]["heard"])
+    present = state["started"]["present"] if state["started"] else []
+    missing = [p for p in present if p not in heard]
+    if missing:
+        disagree(state, event["seq"], "not-heard", f"The caution was not heard by {', '.join(missing)}.")
+    return "done", {"names": heard}
 
 
 def _confirm(ctx: Context, state: State, where: Scope, event: Plain) -> Said:

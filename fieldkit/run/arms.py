@@ -8,12 +8,21 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from fieldkit.run import answers, clock, moves, names, rows
+from fieldkit.errors import Refusal
+from fieldkit.run import answers, clock, moves, names, rows, rules, start
 from fieldkit.run.moves import State, disagree
 from fieldkit.run.names import LIVE, Context
 from fieldkit.sheet.moves import END
 
 Plain = dict[str, Any]
+
+
+def allowed(state: State, seq: int, rule: Callable[[], None]) -> None:
+    """List what a rule refuses: the tablet kept it, or something else made the event."""
+    try:
+        rule()
+    except Refusal as refusal:
+        disagree(state, seq, refusal.code, refusal.sentence)
 
 
 def said_by(ctx: Context, state: State, event: Plain) -> Plain:
@@ -52,9 +61,9 @@ def _states_declared(ctx: Context, state: State, event: Plain, more: Plain) -> N
     if state["phase"] != "declare":
         disagree(state, seq, "not-declaring", "The energy states were declared before.")
         return
+    allowed(state, seq, lambda: start.agrees(ctx, state, names.scope(ctx, state), body))
     for name, to in body["states"].items():
         if name not in state["sources"]:
-            disagree(state, seq, "unknown-source", f"The sheet knows no source '{name}'.")
             continue
         back = max(0, clock.millis(body["ages"].get(name, "0")) or 0)
         made = {"state": to, **moves.mark(state), "seq": seq, "flag": "declared"}
@@ -204,9 +213,19 @@ def _ended(ctx: Context, state: State, event: Plain, more: Plain) -> None:
     body, seq = event["body"], event["seq"]
     if body["outcome"] == "done" and (state["node"] != END or state["phase"] != "going"):
         disagree(state, seq, "not-at-end", "The run says that it is done, and is not at its end.")
+    if body["outcome"] == "done":
+        allowed(state, seq, lambda: rules.end_states(ctx, state))
     if body["outcome"] == "stopped":
         moves.stop(state, seq, body["reason"])
+    states = {name: source["state"] for name, source in state["sources"].items()}
+    if body["states"] != states or _on(body) != _on(state):
+        disagree(state, seq, "end-differs", "The end names other states, locks or earths than the run has.")
     state.update(phase="ended", ended={"outcome": body["outcome"], "seq": seq})
+
+
+def _on(of: Plain) -> list[list[str]]:
+    """Where locks and earths are; the number of a lock may have been corrected since."""
+    return [[lock["point"] for lock in of["locks"]], [earth["stick"] for earth in of["earths"]]]
 
 
 def _voided(ctx: Context, state: State, event: Plain, more: Plain) -> None:

@@ -11,7 +11,8 @@ from fieldkit import values
 from fieldkit.errors import Refusal
 from fieldkit.run import clock, names
 from fieldkit.run.command import Given, checked
-from fieldkit.run.names import Context
+from fieldkit.run.moves import State
+from fieldkit.run.names import Context, Scope
 
 Plain = dict[str, Any]
 
@@ -21,28 +22,34 @@ ISOLATED = ("locked", "proved", "earthed")
 
 def started(given: Given) -> Plain:
     """The body of the first event. `facts` of the command: {"confirmed": the tube's nameplate was entered twice}."""
-    body, sheet = checked(given.kind, given.asked), given.ctx.sheet
+    body = checked(given.kind, given.asked)
+    if given.facts.get("confirmed") is not True:
+        says = "counts only when a second person has entered it again and it has a photograph."
+        raise Refusal("nameplate-not-confirmed", f"The nameplate of {body['tube']} {says}")
+    begins(given.ctx, body, given.by, given.now["wall"])
+    return body
+
+
+def begins(ctx: Context, body: Plain, by: str, wall: str) -> None:
+    """Refuses a start that the sheet does not allow: its crew, its givens, its instruments, the runs before it."""
+    sheet = ctx.sheet
     if body["procedure"] != sheet["procedure"] or body["edition"] != sheet["edition"]:
         raise Refusal(
             "other-sheet", f"This is {sheet['procedure']}, edition {sheet['edition']}. Open the run from its own sheet."
         )
-    _crew(given, body)
-    if given.facts.get("confirmed") is not True:
-        says = "counts only when a second person has entered it again and it has a photograph."
-        raise Refusal("nameplate-not-confirmed", f"The nameplate of {body['tube']} {says}")
+    _crew(sheet, body, by)
     for one in sheet["givens"]:
         _given(one, body["givens"].get(one["name"]))
-    _meters(given.ctx, body)
+    _meters(ctx, body)
     for after in sheet["after"]:
-        _after(after, body, given.now["wall"])
-    return body
+        _after(after, body, wall)
 
 
-def _crew(given: Given, body: Plain) -> None:
-    sheet, known = given.ctx.sheet, {person["id"] for person in body["people"]}
+def _crew(sheet: Plain, body: Plain, by: str) -> None:
+    known = {person["id"] for person in body["people"]}
     present = list(dict.fromkeys(body["present"]))
     unknown = [p for p in present if p not in known]
-    if unknown or given.by not in present:
+    if unknown or by not in present:
         raise Refusal("unknown-person", "Everyone present is named, and whoever records is among them.")
     if len(present) < sheet["crew"]:
         alone = f" {sheet['alone']}" if sheet["alone"] else ""
@@ -110,13 +117,18 @@ def _within_ms(text: str) -> int:
 def declared(given: Given) -> Plain:
     """The energy states as found: against the sheet, and against the lock board. Nothing opens where they differ."""
     body = checked(given.kind, {"ages": {}, **given.asked, "locks": _found(given)})
+    agrees(given.ctx, given.state, names.scope(given.ctx, given.state, given.now), body)
+    return body
+
+
+def agrees(ctx: Context, state: State, where: Scope, body: Plain) -> None:
+    """Refuses declared states that differ from the sheet or from the lock board."""
     if not body["board_seen"]:
         raise Refusal("board-not-seen", "Look at the lock board first.")
-    _complete(given, body["states"])
+    _complete(ctx, body["states"])
     for name in body["states"]:
-        _expected(given, name, body)
-        _board(given, name, body)
-    return body
+        _expected(ctx, where, name, body)
+        _board(ctx, state, name, body)
 
 
 def _found(given: Given) -> list[Plain]:
@@ -138,17 +150,17 @@ def _found(given: Given) -> list[Plain]:
     return found
 
 
-def _complete(given: Given, states: Plain) -> None:
+def _complete(ctx: Context, states: Plain) -> None:
     for name in states:
-        if name not in given.ctx.sources:
+        if name not in ctx.sources:
             raise Refusal("unknown-source", f"The sheet knows no source '{name}'.")
-    for name, source in given.ctx.sources.items():
-        if (source["isolable"] or name in given.ctx.sheet["start"]) and name not in states:
+    for name, source in ctx.sources.items():
+        if (source["isolable"] or name in ctx.sheet["start"]) and name not in states:
             raise Refusal("states-missing", f"Say how {source['title']} is.")
 
 
-def _expected(given: Given, name: str, body: Plain) -> None:
-    expected, title = given.ctx.sheet["start"].get(name), given.ctx.sources[name]["title"]
+def _expected(ctx: Context, where: Scope, name: str, body: Plain) -> None:
+    expected, title = ctx.sheet["start"].get(name), ctx.sources[name]["title"]
     if expected is None:
         return
     allowed = [expected["state"], *expected["accepts"]]
@@ -158,7 +170,7 @@ def _expected(given: Given, name: str, body: Plain) -> None:
         raise Refusal("state-differs", says)
     if expected["least"] is None or body["states"][name] != expected["state"]:
         return
-    least = names.value(given.ctx, names.scope(given.ctx, given.state, given.now), expected["least"])
+    least = names.value(ctx, where, expected["least"])
     age = clock.millis(body["ages"].get(name, "0"))
     if age is None or isinstance(least, bool) or not isinstance(least, float) or age / 1000.0 < least:
         need = clock.spoken(clock.ceil_ms(least)) if isinstance(least, float) else "longer"
@@ -169,11 +181,11 @@ def _written(text: Any) -> bool:
     return isinstance(text, str) and bool(text.strip())
 
 
-def _board(given: Given, name: str, body: Plain) -> None:
+def _board(ctx: Context, run: State, name: str, body: Plain) -> None:
     """The lock board, with the locks that were found, and what is declared say the same."""
-    title, state = given.ctx.sources[name]["title"], body["states"][name]
-    locks = [lock for lock in [*given.state["locks"], *body["locks"]] if name in lock["sources"]]
-    earths = [earth for earth in given.state["earths"] if earth["source"] == name]
+    title, state = ctx.sources[name]["title"], body["states"][name]
+    locks = [lock for lock in [*run["locks"], *body["locks"]] if name in lock["sources"]]
+    earths = [earth for earth in run["earths"] if earth["source"] == name]
     if locks and state not in ISOLATED:
         told = "; ".join(
             f"lock {one['lock']} on {one['point']}, held by {one['holder_name'] or one['holder']}" for one in locks
@@ -194,7 +206,7 @@ def _board(given: Given, name: str, body: Plain) -> None:
 def confirmed(given: Given) -> Plain:
     """The energy states after a pause. A state that differs is not refused: it is recorded, and stops the run."""
     body = checked(given.kind, {"unbroken": [], **given.asked})
-    _complete(given, body["states"])
+    _complete(given.ctx, body["states"])
     for name, to in body["states"].items():
         kept = given.state["sources"][name]
         if to == "proved" and kept["state"] == "locked":

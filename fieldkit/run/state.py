@@ -16,7 +16,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass, field, replace
 from typing import Any
 
-from fieldkit.run import answers, arms, clock, events, moves, rows
+from fieldkit.run import answers, arms, clock, events, moves, rows, start
 from fieldkit.run.moves import State, disagree
 from fieldkit.run.names import Context, context
 from fieldkit.sheet.model import Sheet
@@ -209,11 +209,11 @@ def _run_started(ctx: Context, state: State, event: Plain) -> None:
     if state["started"] is not None:
         disagree(state, seq, "started-twice", "The run was started before.")
         return
-    sheet = ctx.sheet
-    if body["procedure"] != sheet["procedure"] or body["edition"] != sheet["edition"] or event["prev"] != body["sheet"]:
-        disagree(state, seq, "other-sheet", "The run was started on another sheet than this one.")
+    if event["prev"] != body["sheet"]:
+        disagree(state, seq, "other-sheet", "The run's first event follows another sheet than it names.")
     state.update(phase="declare", run=event["run"], chain=event["chain"], sheet=body["sheet"], started=body)
     state.update(recorder=event["by"], recorders=[event["by"]], locks=list(body["locks"]), earths=list(body["earths"]))
     for name in ctx.sources:
         state["sources"][name] = {"state": "unknown", **moves.mark(state), "seq": seq, "flag": ""}
     rows.add(ctx, state, event, who=event["by"], names=list(body["present"]))
+    arms.allowed(state, seq, lambda: start.begins(ctx, body, event["by"], event["at"]["wall"]))

@@ -328,9 +328,18 @@ function people(ctx, state, where, event) {
   return ["done", { names: [...named], note: `${way}: ${place}` }];
 }
 
+/** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
+function caution(ctx, state, where, event) {
+  const heard = [...event.body.heard];
+  const present = state.started ? state.started.present : [];
+  const missing = present.filter((/** @type {string} */ p) => !heard.includes(p));
+  if (missing.length) disagree(state, event.seq, "not-heard", `The caution was not heard by ${missing.join(", ")}.`);
+  return ["done", { names: heard }];
+}
+
 /** @type {Record<string, (ctx: Context, state: State, where: Scope, event: any) => Said>} */
 const ARMS = {
-  caution: (ctx, state, where, event) => ["done", { names: [...event.body.heard] }],
+  caution,
   confirm: () => ["done", {}],
   number,
   prove,

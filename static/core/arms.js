@@ -5,9 +5,12 @@
 
 import * as answers from "./answers.js";
 import * as clock from "./clock.js";
+import { Refused } from "./command.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
 import * as rows from "./rows.js";
+import * as rules from "./rules.js";
+import * as start from "./start.js";
 
 /** @typedef {import("./names.js").Context} Context */
 /** @typedef {import("./names.js").State} State */
@@ -15,6 +18,29 @@ import * as rows from "./rows.js";
 /** @typedef {{passed: clock.Passed | null, stop: string}} More */
 
 const { disagree } = moves;
+
+/** List what a rule refuses: the tablet kept it, or something else made the event.
+ * @param {State} state @param {number} seq @param {() => void} rule */
+export function allowed(state, seq, rule) {
+  try {
+    rule();
+  } catch (problem) {
+    if (!(problem instanceof Refused)) throw problem;
+    disagree(state, seq, problem.code, problem.says);
+  }
+}
+
+/** Equal JSON values, whatever the order of their keys. @param {any} a @param {any} b @returns {boolean} */
+function same(a, b) {
+  if (typeof a !== "object" || typeof b !== "object" || a === null || b === null) return a === b;
+  const keys = Object.keys(a);
+  return keys.length === Object.keys(b).length && keys.every((key) => Object.hasOwn(b, key) && same(a[key], b[key]));
+}
+
+/** Where locks and earths are; the number of a lock may have been corrected since. @param {any} of @returns {string[][]} */
+function on(of) {
+  return [of.locks.map((/** @type {any} */ lock) => lock.point), of.earths.map((/** @type {any} */ earth) => earth.stick)];
+}
 
 /** What the row of an event that answers no step says.
  * @param {Context} ctx @param {Event} event @returns {{step?: any, row: Record<string, any>}} */
@@ -55,11 +81,9 @@ function states_declared(ctx, state, event) {
     disagree(state, seq, "not-declaring", "The energy states were declared before.");
     return;
   }
+  allowed(state, seq, () => start.agrees(ctx, state, names.scope(ctx, state), body));
   for (const [name, to] of Object.entries(body.states)) {
-    if (!Object.hasOwn(state.sources, name)) {
-      disagree(state, seq, "unknown-source", `The sheet knows no source '${name}'.`);
-      continue;
-    }
+    if (!Object.hasOwn(state.sources, name)) continue;
     const age = Object.hasOwn(body.ages, name) ? body.ages[name] : "0";
     const back = Math.max(0, clock.millis(age) ?? 0);
     state.sources[name] = earlier({ state: to, ...moves.mark(state), seq, flag: "declared" }, back, back);
@@ -197,7 +221,12 @@ function ended(ctx, state, event) {
   if (body.outcome === "done" && (state.node !== moves.END || state.phase !== "going")) {
     disagree(state, seq, "not-at-end", "The run says that it is done, and is not at its end.");
   }
+  if (body.outcome === "done") allowed(state, seq, () => rules.end_states(ctx, state));
   if (body.outcome === "stopped") moves.stop(state, seq, body.reason);
+  const states = Object.fromEntries(Object.entries(state.sources).map(([name, source]) => [name, source.state]));
+  if (!same(body.states, states) || !same(on(body), on(state))) {
+    disagree(state, seq, "end-differs", "The end names other states, locks or earths than the run has.");
+  }
   Object.assign(state, { phase: "ended", ended: { outcome: body.outcome, seq } });
 }
 

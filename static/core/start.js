@@ -17,29 +17,34 @@ const ISOLATED = Object.freeze(["locked", "proved", "earthed"]);
 /** The body of the first event. @param {Given} given */
 export function started(given) {
   const body = checked(given.kind, given.asked);
-  const { sheet } = given.ctx;
-  if (body.procedure !== sheet.procedure || body.edition !== sheet.edition) {
-    throw new Refused("other-sheet", `This is ${sheet.procedure}, edition ${sheet.edition}. Open the run from its own sheet.`);
-  }
-  crew(given, body);
   if (given.facts.confirmed !== true) {
     const says = "counts only when a second person has entered it again and it has a photograph.";
     throw new Refused("nameplate-not-confirmed", `The nameplate of ${body.tube} ${says}`);
   }
-  for (const one of sheet.givens) {
-    check_given(one, Object.hasOwn(body.givens, one.name) ? body.givens[one.name] : null);
-  }
-  meters(given.ctx, body);
-  for (const one of sheet.after) after(one, body, given.now.wall);
+  begins(given.ctx, body, given.by, given.now.wall);
   return body;
 }
 
-/** @param {Given} given @param {any} body */
-function crew(given, body) {
-  const { sheet } = given.ctx;
+/** Refuses a start that the sheet does not allow: its crew, its givens, its instruments, the runs before it.
+ * @param {names.Context} ctx @param {any} body @param {string} by @param {string} wall */
+export function begins(ctx, body, by, wall) {
+  const { sheet } = ctx;
+  if (body.procedure !== sheet.procedure || body.edition !== sheet.edition) {
+    throw new Refused("other-sheet", `This is ${sheet.procedure}, edition ${sheet.edition}. Open the run from its own sheet.`);
+  }
+  crew(sheet, body, by);
+  for (const one of sheet.givens) {
+    check_given(one, Object.hasOwn(body.givens, one.name) ? body.givens[one.name] : null);
+  }
+  meters(ctx, body);
+  for (const one of sheet.after) after(one, body, wall);
+}
+
+/** @param {any} sheet @param {any} body @param {string} by */
+function crew(sheet, body, by) {
   const known = new Set(body.people.map((/** @type {any} */ person) => person.id));
   const present = [...new Set(body.present)];
-  if (present.some((p) => !known.has(p)) || !present.includes(given.by)) {
+  if (present.some((p) => !known.has(p)) || !present.includes(by)) {
     throw new Refused("unknown-person", "Everyone present is named, and whoever records is among them.");
   }
   if (present.length < sheet.crew) {
@@ -102,13 +107,19 @@ function after(asked, body, wall) {
 /** The energy states as found: against the sheet, and against the lock board. @param {Given} given */
 export function declared(given) {
   const body = checked(given.kind, { ages: {}, ...given.asked, locks: found_locks(given) });
-  if (!body.board_seen) throw new Refused("board-not-seen", "Look at the lock board first.");
-  complete(given, body.states);
-  for (const name of Object.keys(body.states)) {
-    expected(given, name, body);
-    board(given, name, body);
-  }
+  agrees(given.ctx, given.state, names.scope(given.ctx, given.state, given.now), body);
   return body;
+}
+
+/** Refuses declared states that differ from the sheet or from the lock board.
+ * @param {names.Context} ctx @param {names.State} state @param {names.Scope} where @param {any} body */
+export function agrees(ctx, state, where, body) {
+  if (!body.board_seen) throw new Refused("board-not-seen", "Look at the lock board first.");
+  complete(ctx, body.states);
+  for (const name of Object.keys(body.states)) {
+    expected(ctx, where, name, body);
+    board(ctx, state, name, body);
+  }
 }
 
 /** Locks that are on the cabinet and not on the board, as named now: point, sources, lock, holder. @param {Given} given */
@@ -136,9 +147,8 @@ function found_locks(given) {
   return found;
 }
 
-/** @param {Given} given @param {Record<string, string>} states */
-function complete(given, states) {
-  const { ctx } = given;
+/** @param {names.Context} ctx @param {Record<string, string>} states */
+function complete(ctx, states) {
   for (const name of Object.keys(states)) {
     if (!ctx.sources[name]) throw new Refused("unknown-source", `The sheet knows no source '${name}'.`);
   }
@@ -149,18 +159,18 @@ function complete(given, states) {
   }
 }
 
-/** @param {Given} given @param {string} name @param {any} body */
-function expected(given, name, body) {
-  const asked = Object.hasOwn(given.ctx.sheet.start, name) ? given.ctx.sheet.start[name] : null;
+/** @param {names.Context} ctx @param {names.Scope} where @param {string} name @param {any} body */
+function expected(ctx, where, name, body) {
+  const asked = Object.hasOwn(ctx.sheet.start, name) ? ctx.sheet.start[name] : null;
   if (asked === null) return;
-  const { title } = given.ctx.sources[name];
+  const { title } = ctx.sources[name];
   const allowed = [asked.state, ...asked.accepts];
   if (!allowed.includes(body.states[name])) {
     const begins = `this procedure begins with it ${allowed.join(" or ")}`;
     throw new Refused("state-differs", `${title} is ${body.states[name]}; ${begins}. Nothing opens until it is so.`);
   }
   if (asked.least === null || body.states[name] !== asked.state) return;
-  const least = names.value(given.ctx, names.scope(given.ctx, given.state, given.now), asked.least);
+  const least = names.value(ctx, where, asked.least);
   const age = clock.millis(Object.hasOwn(body.ages, name) ? body.ages[name] : "0");
   if (age === null || typeof least !== "number" || age / 1000 < least) {
     const need = typeof least === "number" ? clock.spoken(clock.ceil_ms(least)) : "longer";
@@ -169,12 +179,12 @@ function expected(given, name, body) {
 }
 
 /** The lock board, with the locks that were found, and what is declared say the same.
- * @param {Given} given @param {string} name @param {any} body */
-function board(given, name, body) {
-  const { title } = given.ctx.sources[name];
+ * @param {names.Context} ctx @param {names.State} run @param {string} name @param {any} body */
+function board(ctx, run, name, body) {
+  const { title } = ctx.sources[name];
   const state = body.states[name];
-  const locks = [...given.state.locks, ...body.locks].filter((/** @type {any} */ lock) => lock.sources.includes(name));
-  const earths = given.state.earths.filter((/** @type {any} */ earth) => earth.source === name);
+  const locks = [...run.locks, ...body.locks].filter((/** @type {any} */ lock) => lock.sources.includes(name));
+  const earths = run.earths.filter((/** @type {any} */ earth) => earth.source === name);
   if (locks.length && !ISOLATED.includes(state)) {
     const told = locks.map(
       (/** @type {any} */ one) => `lock ${one.lock} on ${one.point}, held by ${one.holder_name || one.holder}`,
@@ -197,7 +207,7 @@ function board(given, name, body) {
 /** The energy states after a pause. A state that differs is recorded, and stops the run. @param {Given} given */
 export function confirmed(given) {
   const body = checked(given.kind, { unbroken: [], ...given.asked });
-  complete(given, body.states);
+  complete(given.ctx, body.states);
   for (const [name, to] of Object.entries(body.states)) {
     if (to === "proved" && given.state.sources[name].state === "locked") {
       const { title } = given.ctx.sources[name];

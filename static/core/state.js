@@ -15,6 +15,7 @@ import * as clock from "./clock.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
 import * as rows from "./rows.js";
+import * as start from "./start.js";
 
 /** @typedef {import("./names.js").Context} Context */
 /** @typedef {import("./names.js").State} State */
@@ -188,13 +189,13 @@ function run_started(ctx, state, event) {
     disagree(state, seq, "started-twice", "The run was started before.");
     return;
   }
-  const { sheet } = ctx;
-  if (body.procedure !== sheet.procedure || body.edition !== sheet.edition || event.prev !== body.sheet) {
-    disagree(state, seq, "other-sheet", "The run was started on another sheet than this one.");
+  if (event.prev !== body.sheet) {
+    disagree(state, seq, "other-sheet", "The run's first event follows another sheet than it names.");
   }
   Object.assign(state, { phase: "declare", run: event.run, chain: event.chain, sheet: body.sheet, started: body });
   Object.assign(state, { recorder: event.by, recorders: [event.by], locks: [...body.locks], earths: [...body.earths] });
   for (const name of Object.keys(ctx.sources)) state.sources[name] = { state: "unknown", ...moves.mark(state), seq, flag: "" };
   rows.add(ctx, state, event, null, { who: event.by, names: [...body.present] });
+  arms.allowed(state, seq, () => start.begins(ctx, body, event.by, event.at.wall));
 }
 
