@@ -23,6 +23,8 @@ class Base(DeclarativeBase):
     pass
 
 
+# Rows are forgotten at every commit and rollback (SQLAlchemy's default): with that switched off a check inside the next
+# transaction would be made on an older copy, and updates were lost when it was tried.
 db = SQLAlchemy(model_class=Base)
 
 if TYPE_CHECKING:
@@ -115,8 +117,6 @@ def writing() -> Iterator[Session]:
     if session.info.get("writing"):
         raise RuntimeError("an operation was called inside another one's transaction")
     session.rollback()
-    # a rollback forgets nothing where no transaction was open, and a check must not be made on an older copy
-    session.expire_all()
     session.info["writing"] = True
     try:
         connection = session.connection(execution_options={"fieldkit_write": True})
