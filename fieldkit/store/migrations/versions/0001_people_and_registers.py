@@ -1,4 +1,4 @@
-"""The first tables, and the fences around what is received."""
+"""People, tablets, registers, sheets and pictures, and the fences around what is received."""
 
 from __future__ import annotations
 
@@ -12,8 +12,8 @@ down_revision = None
 branch_labels = None
 depends_on = None
 
-FENCED = ("sources", "sheets", "blobs", "events", "pictures", "receipts", "signatures", "returns", "notices")
-KEPT = ("people", "person_keys", "devices", "kept", "records", "runs")
+FENCED = ("sources", "sheets", "blobs", "pictures")
+KEPT = ("people", "person_keys", "devices")
 
 
 def upgrade() -> None:
@@ -36,66 +36,17 @@ def upgrade() -> None:
         sa.PrimaryKeyConstraint("id"),
     )
     op.create_table(
-        "events",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("sha256", sa.String(length=64), nullable=False),
-        sa.Column("kind", sa.String(length=32), nullable=False),
-        sa.Column("by", sa.String(length=32), nullable=False),
-        sa.Column("data", sa.LargeBinary(), nullable=False),
-        sa.Column("received", sa.String(length=32), nullable=False),
-        sa.PrimaryKeyConstraint("run", "chain", "seq"),
-        sa.UniqueConstraint("sha256"),
-    )
-    op.create_table(
         "instruments",
         sa.Column("id", sa.String(length=64), nullable=False),
         sa.Column("data", sa.Text(), nullable=False),
         sa.PrimaryKeyConstraint("id"),
     )
     op.create_table(
-        "kept",
-        sa.Column("id", sa.Integer(), autoincrement=True, nullable=False),
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=True),
-        sa.Column("sha256", sa.String(length=64), nullable=False),
-        sa.Column("code", sa.String(length=40), nullable=False),
-        sa.Column("says", sa.Text(), nullable=False),
-        sa.Column("data", sa.LargeBinary(), nullable=False),
-        sa.Column("device", sa.String(length=64), nullable=False),
-        sa.Column("received", sa.String(length=32), nullable=False),
-        sa.Column("settled", sa.String(length=32), nullable=True),
-        sa.PrimaryKeyConstraint("id"),
-        sa.UniqueConstraint("run", "chain", "sha256", "code"),
-    )
-    op.create_index(op.f("ix_kept_run"), "kept", ["run"], unique=False)
-    op.create_table(
         "misses",
         sa.Column("key", sa.String(length=200), nullable=False),
         sa.Column("count", sa.Integer(), nullable=False),
         sa.Column("last", sa.String(length=32), nullable=False),
         sa.PrimaryKeyConstraint("key"),
-    )
-    op.create_table(
-        "notices",
-        sa.Column("id", sa.Integer(), autoincrement=True, nullable=False),
-        sa.Column("code", sa.String(length=40), nullable=False),
-        sa.Column("says", sa.Text(), nullable=False),
-        sa.Column("about", sa.String(length=200), nullable=False),
-        sa.Column("time", sa.String(length=32), nullable=False),
-        sa.PrimaryKeyConstraint("id"),
-    )
-    op.create_table(
-        "pending",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("sha256", sa.String(length=64), nullable=False),
-        sa.Column("data", sa.LargeBinary(), nullable=False),
-        sa.Column("received", sa.String(length=32), nullable=False),
-        sa.PrimaryKeyConstraint("run", "chain", "seq"),
     )
     op.create_table(
         "people",
@@ -123,41 +74,10 @@ def upgrade() -> None:
         sa.PrimaryKeyConstraint("sha256"),
     )
     op.create_table(
-        "receipts",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("store", sa.String(length=64), nullable=False),
-        sa.Column("head", sa.String(length=64), nullable=False),
-        sa.Column("jws", sa.Text(), nullable=False),
-        sa.Column("time", sa.String(length=32), nullable=False),
-        sa.PrimaryKeyConstraint("run", "chain", "seq", "store"),
-    )
-    op.create_table(
-        "run_pictures",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("sha256", sa.String(length=64), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.PrimaryKeyConstraint("run", "sha256"),
-    )
-    op.create_index("ix_run_pictures_sha256", "run_pictures", ["sha256"], unique=False)
-    op.create_table(
         "settings",
         sa.Column("name", sa.String(length=64), nullable=False),
         sa.Column("value", sa.Text(), nullable=False),
         sa.PrimaryKeyConstraint("name"),
-    )
-    op.create_table(
-        "signatures",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("person", sa.String(length=32), nullable=False),
-        sa.Column("meaning", sa.String(length=32), nullable=False),
-        sa.Column("kid", sa.String(length=64), nullable=False),
-        sa.Column("holds", sa.Boolean(), nullable=False),
-        sa.Column("says", sa.Text(), nullable=False),
-        sa.PrimaryKeyConstraint("run", "chain", "seq"),
     )
     op.create_table(
         "sites",
@@ -183,20 +103,6 @@ def upgrade() -> None:
             ["sites.id"],
         ),
         sa.PrimaryKeyConstraint("id"),
-    )
-    op.create_table(
-        "chains",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("id", sa.String(length=160), nullable=False),
-        sa.Column("device", sa.String(length=64), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("head", sa.String(length=64), nullable=False),
-        sa.Column("alarm", sa.Text(), nullable=False),
-        sa.ForeignKeyConstraint(
-            ["device"],
-            ["devices.id"],
-        ),
-        sa.PrimaryKeyConstraint("run", "id"),
     )
     op.create_table(
         "enrolments",
@@ -247,33 +153,6 @@ def upgrade() -> None:
     )
     op.create_index(op.f("ix_person_keys_person"), "person_keys", ["person"], unique=False)
     op.create_table(
-        "runs",
-        sa.Column("id", sa.String(length=80), nullable=False),
-        sa.Column("chain", sa.String(length=160), nullable=False),
-        sa.Column("device", sa.String(length=64), nullable=False),
-        sa.Column("sheet", sa.String(length=64), nullable=False),
-        sa.Column("procedure", sa.String(length=120), nullable=False),
-        sa.Column("edition", sa.Integer(), nullable=False),
-        sa.Column("site", sa.String(length=64), nullable=False),
-        sa.Column("cabinet", sa.String(length=64), nullable=False),
-        sa.Column("tube", sa.String(length=64), nullable=False),
-        sa.Column("recorder", sa.String(length=32), nullable=False),
-        sa.Column("started", sa.String(length=40), nullable=False),
-        sa.Column("rehearsal", sa.Boolean(), nullable=False),
-        sa.Column("phase", sa.String(length=16), nullable=False),
-        sa.Column("ended", sa.String(length=40), nullable=True),
-        sa.Column("ended_seq", sa.Integer(), nullable=True),
-        sa.Column("signed_seq", sa.Integer(), nullable=True),
-        sa.ForeignKeyConstraint(
-            ["device"],
-            ["devices.id"],
-        ),
-        sa.PrimaryKeyConstraint("id"),
-    )
-    op.create_index(op.f("ix_runs_cabinet"), "runs", ["cabinet"], unique=False)
-    op.create_index(op.f("ix_runs_procedure"), "runs", ["procedure"], unique=False)
-    op.create_index(op.f("ix_runs_tube"), "runs", ["tube"], unique=False)
-    op.create_table(
         "sessions",
         sa.Column("id", sa.String(length=64), nullable=False),
         sa.Column("person", sa.String(length=32), nullable=False),
@@ -302,48 +181,6 @@ def upgrade() -> None:
     )
     op.create_index(op.f("ix_sheets_procedure"), "sheets", ["procedure"], unique=False)
     op.create_table(
-        "preparations",
-        sa.Column("id", sa.String(length=40), nullable=False),
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("person", sa.String(length=32), nullable=False),
-        sa.Column("kid", sa.String(length=64), nullable=False),
-        sa.Column("head", sa.String(length=64), nullable=False),
-        sa.Column("record", sa.LargeBinary(), nullable=False),
-        sa.Column("pdf", sa.LargeBinary(), nullable=False),
-        sa.Column("state", sa.LargeBinary(), nullable=False),
-        sa.Column("created", sa.String(length=32), nullable=False),
-        sa.ForeignKeyConstraint(
-            ["person"],
-            ["people.id"],
-        ),
-        sa.ForeignKeyConstraint(
-            ["run"],
-            ["runs.id"],
-        ),
-        sa.PrimaryKeyConstraint("id"),
-    )
-    op.create_table(
-        "records",
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("state", sa.String(length=16), nullable=False),
-        sa.Column("since", sa.String(length=32), nullable=False),
-        sa.Column("record", sa.LargeBinary(), nullable=True),
-        sa.Column("pdf", sa.LargeBinary(), nullable=True),
-        sa.Column("pdf_sha256", sa.String(length=64), nullable=True),
-        sa.Column("countersigned_by", sa.String(length=32), nullable=True),
-        sa.Column("countersigned", sa.String(length=32), nullable=True),
-        sa.ForeignKeyConstraint(
-            ["countersigned_by"],
-            ["people.id"],
-        ),
-        sa.ForeignKeyConstraint(
-            ["run"],
-            ["runs.id"],
-        ),
-        sa.PrimaryKeyConstraint("run"),
-    )
-    op.create_index(op.f("ix_records_state"), "records", ["state"], unique=False)
-    op.create_table(
         "releases",
         sa.Column("procedure", sa.String(length=120), nullable=False),
         sa.Column("sheet", sa.String(length=64), nullable=False),
@@ -356,25 +193,6 @@ def upgrade() -> None:
         ),
         sa.PrimaryKeyConstraint("procedure"),
     )
-    op.create_table(
-        "returns",
-        sa.Column("id", sa.Integer(), autoincrement=True, nullable=False),
-        sa.Column("run", sa.String(length=80), nullable=False),
-        sa.Column("by", sa.String(length=32), nullable=False),
-        sa.Column("reason", sa.Text(), nullable=False),
-        sa.Column("seq", sa.Integer(), nullable=False),
-        sa.Column("time", sa.String(length=32), nullable=False),
-        sa.ForeignKeyConstraint(
-            ["by"],
-            ["people.id"],
-        ),
-        sa.ForeignKeyConstraint(
-            ["run"],
-            ["runs.id"],
-        ),
-        sa.PrimaryKeyConstraint("id"),
-    )
-    op.create_index(op.f("ix_returns_run"), "returns", ["run"], unique=False)
     op.create_table(
         "tubes",
         sa.Column("id", sa.String(length=64), nullable=False),
