@@ -100,13 +100,15 @@ def look() -> str:
 
 def html(record: Record) -> str:
     """The record's HTML, the same on every paper. Needs no typesetting library."""
+    blocks = _blocks(record.signatures)
     return (
         _templates()
         .get_template("record/record.html")
         .render(
             r=record,
             sections=sections.printed(record),
-            blocks=_blocks(record.signatures),
+            blocks=blocks,
+            columns=max([len(row) for row in blocks] + [len(blocks[-1]) + 2]),
             titles=_titles(record),
             first=FIRST,
             roomy=plots.ROOMY,

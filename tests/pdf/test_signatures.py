@@ -12,13 +12,12 @@ import subprocess
 
 import pikepdf
 import pytest
+from pdf_station import NOW
 from pyhanko.pdf_utils.reader import PdfFileReader
 
 from fieldkit.errors import Refusal
 from fieldkit.pdf import appearance, assemble, countersign, seal, signed, text
 from fieldkit.trust import certificates
-
-from .conftest import NOW
 
 
 def _code(function, *arguments):
@@ -75,14 +74,14 @@ def test_what_is_signed_commits_to_the_file_that_is_shown(sealed, station):
 
 def test_a_signature_that_is_not_this_persons_over_this_file_is_refused(sealed, station):
     prepared = countersign.prepare(sealed, station.certificates["p.ardin"], station.authority.certificate, NOW)
-    assert _code(countersign.finish, prepared, station.sign("s.quill", prepared.to_sign)) == "bad-signature"
+    assert _code(countersign.finish, prepared, station.sign("quill", prepared.to_sign)) == "bad-signature"
     assert _code(countersign.finish, prepared, station.sign("p.ardin", b"something else")) == "bad-signature"
     assert _code(countersign.finish, prepared, b"short") == "bad-signature"
 
 
 def test_who_is_no_supervisor_or_not_enrolled_now_cannot_prepare(sealed, station):
     ca = station.authority.certificate
-    assert _code(countersign.prepare, sealed, station.certificates["j.vell"], ca, NOW) == "not-a-supervisor"
+    assert _code(countersign.prepare, sealed, station.certificates["vell"], ca, NOW) == "not-a-supervisor"
     late = NOW + dt.timedelta(days=6 * 366)
     assert _code(countersign.prepare, sealed, station.certificates["p.ardin"], ca, late) == "expired"
 
@@ -108,10 +107,10 @@ def test_a_seal_whose_certificate_ran_out_seals_nothing(plain, station):
 def test_putting_together_gives_the_same_bytes_every_time(plain, station):
     from fieldkit.pdf import typeset
 
-    from .conftest import _CSS, _HTML
+    html = "<html lang='en'><head><title>Plain</title></head><body><h1 id='seal'>Plain page</h1></body></html>"
 
     def make():
-        pages = typeset.pages(_HTML, _CSS, identifier=b"plain")
+        pages = typeset.pages(html, '@page{size:A4} body{font:400 10pt "Plex Sans"}', identifier=b"plain")
         field = assemble.Field(assemble.SEAL, "Seal", pages.boxes["seal"], locks=False)
         files = [assemble.Attached(n, n.encode(), "text/plain", "Data", n) for n in ("b", "a")]
         return assemble.assemble(pages, files, [field], NOW)

@@ -60,7 +60,8 @@ def countersignature(subject: Subject) -> str:
     if not signature.locks:
         raise Wrong("The supervisor's signature does not close the file to later changes.")
     holder = _holder(signature)
-    recorders = {e.head.by for e in subject.events}
+    # whoever only signed (a release, a deviation) may countersign; the record then says so
+    recorders = {e.head.by for e in subject.events if e.head.kind != "signed"}
     if holder.id in recorders:
         raise Wrong(f"{holder.name} recorded this run and countersigned it; that takes another person.")
     return f"“{signature.reason}” {holder.name}, {_when(signature)}."

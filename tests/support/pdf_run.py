@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 import played_run as play
+from pdf_station import NOW, Station
 from PIL import Image
 
 from fieldkit.pdf import assemble, render, seal, typeset
@@ -18,8 +19,6 @@ from fieldkit.record.model import Record
 from fieldkit.run import events
 from fieldkit.sheet import model as sheets
 from fieldkit.trust import certificates, jws
-
-from .conftest import NOW, Station
 
 PROCEDURE = b"procedure: played\nedition: 3\n"
 
