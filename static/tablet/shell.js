@@ -11,6 +11,7 @@ import { Refused } from "./refusal.js";
 
 const HOURLY_MS = 3_600_000;
 const PATIENCE_MS = 5_000;
+const TRIES = 20;
 
 /** @type {ServiceWorkerRegistration | null} */
 let registration = null;
@@ -76,12 +77,24 @@ export async function runIsOpen() {
 }
 
 /**
- * Takes the waiting version and reloads this page. Throws Refused run-open while any window has a run open.
+ * Takes the waiting version and reloads this page.
+ * Throws Refused run-open while any window has a run open, update-later when the browser does not let go of the old version.
  */
 export async function update() {
   if (await runIsOpen()) throw new Refused("run-open", "A run is open on this tablet. Close it in every window, then take the update.");
   const next = registration?.waiting;
   if (!next) return;
-  navigator.serviceWorker.addEventListener("controllerchange", () => location.reload(), { once: true });
+  let taken = false;
+  navigator.serviceWorker.addEventListener("controllerchange", () => {
+    taken = true;
+    location.reload();
+  });
   next.postMessage({ ask: "take over" });
+  // An old worker that has nothing to do may not notice that it is to go; a question wakes it, and then it goes.
+  for (let tries = 0; tries < TRIES && !taken; tries += 1) {
+    const old = registration?.active;
+    if (old && old !== next) await question(old, "ready");
+    await new Promise((go) => setTimeout(go, 500));
+  }
+  if (!taken) throw new Refused("update-later", "The browser has not let go of the old version. Close every window of fieldkit and open it again.");
 }

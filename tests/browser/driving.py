@@ -176,6 +176,14 @@ class Tablet:
             self.page.wait_for_timeout(100)
         raise AssertionError("the app files did not come aboard")
 
+    def until(self, script: str, arg: Any = None) -> None:
+        """Until an async script gives something true. (wait_for_function takes a promise for true.)"""
+        for _ in range(150):
+            if self.page.evaluate(script, arg):
+                return
+            self.page.wait_for_timeout(100)
+        raise AssertionError(f"never came true: {script}")
+
     def host(self, name: str, *args: Any) -> Any:
         return self._told(self.page.evaluate(CALL, [name, list(args)]))
 

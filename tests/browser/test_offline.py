@@ -149,15 +149,20 @@ def test_a_new_version_waits_while_a_run_is_open_in_any_window(tablet, server, t
     build = tablet.page.evaluate("() => document.documentElement.dataset.build")
     publish_changed(server, tmp_path)
     tablet.page.evaluate("async () => { await (await navigator.serviceWorker.ready).update(); }")
-    tablet.page.wait_for_function("async () => Boolean((await navigator.serviceWorker.ready).waiting)")
+    tablet.until("async () => Boolean((await navigator.serviceWorker.ready).waiting)")
     other = tablet.tab()
     assert other.page.evaluate("() => document.documentElement.dataset.build") == build
     with pytest.raises(Exception, match="run-open"):
         other.host("update")
     tablet.run(run, "close")
     other.page.evaluate("() => { window.marked = true; }")
+    take = """() => {
+      const host = document.querySelector("script[type=module]").src.replace("main.js", "host.js");
+      void import(host).then((made) => made.update());
+    }"""
     with other.page.expect_navigation():
-        other.host("update")
+        other.page.evaluate(take)
+    other.host("open")
     assert other.page.evaluate("() => document.documentElement.dataset.build") != build
     assert other.host("open")["runs"][0]["run"] == run
 

@@ -273,12 +273,12 @@ def test_a_second_window_reads_along_and_takes_over(tablet):
     assert other.refused(run, do="remarked", step="look", text="no")["code"] == "read-only"
     tablet.command(run, do="remarked", step="look", text="from the first")
     tablet.run(run, "close")
-    other.page.wait_for_function(
+    other.until(
         """async (run) => {
           const host = await import(document.querySelector("script[type=module]").src.replace("main.js", "host.js"));
           return !(await host.openRun(run)).readonly;
         }""",
-        arg=run,
+        run,
     )
     other.command(run, do="remarked", step="look", text="from the second")
     kinds = [kind for _, kind, _ in texts(other, run)]
