@@ -16,7 +16,7 @@ from fieldkit import __version__
 from fieldkit.errors import Refusal
 from fieldkit.operations import runs, settings
 from fieldkit.operations.runs import Loaded
-from fieldkit.record import build, words
+from fieldkit.record import build, model, words
 from fieldkit.record.context import Check, Context, KeptEvent, LastRun, Returned, Reviewer
 from fieldkit.record.model import Record
 from fieldkit.run.events import Event
@@ -26,7 +26,10 @@ from fieldkit.store.tables import EventRow, Person, Picture, RecordRow, Release,
 
 @dataclass(frozen=True)
 class Dossier:
-    """One run with its record. `state`: open, arriving, waiting, returned, countersigned."""
+    """One run with its record. `state`: open, arriving, waiting, returned, countersigned.
+
+    A countersigned run's record is the one that was signed, as it is in the file.
+    """
 
     run: str
     state: str
@@ -40,14 +43,20 @@ class Dossier:
     countersigned_by: str
     countersigned: str
     pdf_sha256: str
+    #: events that arrived after the countersignature; they are not in the file
+    later: int
 
 
-def dossier(run: str, reviewer: Reviewer | None = None) -> Dossier:
-    """The run's record as it stands now. Raises Refusal not-found, damaged-sheet, unknown-version."""
+def dossier(run: str, reviewer: Reviewer | None = None, as_received: bool = False) -> Dossier:
+    """The run with its record; with `as_received` built from all its events, even after countersigning.
+
+    Raises Refusal not-found, damaged-sheet, unknown-version.
+    """
     loaded = runs.load(run)
     row = db.session.get(RecordRow, run)
     names = {p.id: p.name for p in db.session.scalars(select(Person))}
-    made = build.build(loaded.sheet, loaded.events, _context(loaded, names, reviewer))
+    signed = None if as_received else _signed(row)
+    made = signed or build.build(loaded.sheet, loaded.events, _context(loaded, names, reviewer))
     by = (row.countersigned_by if row else None) or ""
     return Dossier(
         run=run,
@@ -61,7 +70,18 @@ def dossier(run: str, reviewer: Reviewer | None = None) -> Dossier:
         countersigned_by=names.get(by, by),
         countersigned=(row.countersigned if row else None) or "",
         pdf_sha256=(row.pdf_sha256 if row else None) or "",
+        later=max(0, len(loaded.events) - made.chain.count),
     )
+
+
+def _signed(row: RecordRow | None) -> Record | None:
+    """The record that was countersigned; None where none was, or its version is not known here any more."""
+    if row is None or row.state != "countersigned" or row.record is None:
+        return None
+    try:
+        return model.from_bytes(row.record)
+    except Refusal:
+        return None
 
 
 def _context(loaded: Loaded, names: dict[str, str], reviewer: Reviewer | None) -> Context:

@@ -47,7 +47,7 @@ def record(run: str) -> ResponseReturnValue:
 @blueprint.get("/records/<run>/events")
 @READER
 def events(run: str) -> ResponseReturnValue:
-    found = dossier(run)
+    found = dossier(run, as_received=True)
     kept = runs.kept(run)
     return render_template("desk/events.html", r=found.record, kept=kept, day=desk_view.day)
 

@@ -86,6 +86,8 @@ class Page:
     countersigned: str
     pdf_sha256: str
     returned: str
+    #: what arrived after the countersignature, in words; "" when nothing did
+    later: str
 
 
 def day(at: str) -> str:
@@ -120,6 +122,9 @@ def page(actor: Actor, found: Dossier, kept: list[KeptLine]) -> Page:
         countersigned_by=found.countersigned_by,
         countersigned=found.countersigned,
         pdf_sha256=found.pdf_sha256,
+        later=f"{words.count(found.later, 'event')} arrived after this record was countersigned."
+        if found.later
+        else "",
         returned=r.context.returns[-1].reason if r.context.returns else "",
     )
 

@@ -167,7 +167,7 @@ class Script:
 
 
 def test_countersigning_over_the_wire_and_downloading_the_file(desk, supervisor):
-    desk.waiting()
+    pen = desk.waiting()
     with desk.app.app_context():
         key, kid = desk.key(ORME)
     script = Script(supervisor, f"{PAGE}/countersign")
@@ -183,6 +183,11 @@ def test_countersigning_over_the_wire_and_downloading_the_file(desk, supervisor)
     assert "attachment" in file.headers["Content-Disposition"]
     text = words(supervisor.get(PAGE).text)
     assert "Countersigned K. Orme" in text and "Download the PDF" in text
+    assert "arrived after this record" not in text
+    late = pen.write("remarked", {"step": "remark", "text": "Late.", "move": None})
+    desk.arrive(late, picture=None, texts=late.texts[-1:])
+    assert "1 event arrived after this record was countersigned." in words(supervisor.get(PAGE).text)
+    assert "Late." in supervisor.get(f"{PAGE}/events").text
 
 
 @pytest.mark.parametrize(

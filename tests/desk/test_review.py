@@ -150,6 +150,20 @@ def test_the_supervisor_who_allowed_the_deviation_may_countersign_and_the_record
     assert stored.review.both and "both" in [a.code for a in stored.attention]
 
 
+def test_a_countersigned_record_is_shown_as_signed_and_what_comes_later_is_counted(desk, inside):
+    pen = desk.waiting(eventful=True)
+    made, signature = ready(desk, QUILL)
+    review.finish(QUILL, made.id, signature)
+    before = dossier(RUN)
+    assert before.later == 0 and before.record.review.name == "S. Quill"
+    sent = len(pen.texts)
+    pen.write("remarked", {"step": "remark", "text": "Late.", "move": None})
+    desk.arrive(pen, picture=None, texts=pen.texts[sent:])
+    after = dossier(RUN)
+    assert after.later == 1 and after.record == before.record and after.state == "countersigned"
+    assert dossier(RUN, as_received=True).record.remarks[-1].says == "Late."
+
+
 def test_a_signature_by_another_key_is_refused_and_nothing_changes(desk, inside):
     desk.waiting()
     made, _ = ready(desk)
