@@ -50,6 +50,8 @@ export function frame(sheet, acts) {
     live: (words, short) => { put(dl, words); put(mini, short); },
     /** @param {HTMLElement} lanes @param {HTMLElement} page @param {boolean} over */
     open: (lanes, page, over) => { isOver = over; past.hidden = ahead.hidden = over; now.classList.toggle("over", over); put(now, lanes, page); },
+    /** @param {HTMLElement} lanes */
+    lanes: (lanes) => now.firstElementChild?.replaceWith(lanes),
     /** @param {HTMLElement[]} rows @param {HTMLElement[]} coming */
     rows: (rows, coming) => {
       const at = strip.scrollTop, before = past.offsetHeight;

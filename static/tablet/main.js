@@ -19,8 +19,9 @@ const SCREENS = { home: homeScreen, enrol: enrolScreen, kit: kitScreen, start: s
 
 /**
  * @typedef {object} App
- * @property {any} host @property {any} held what host.open last said @property {any} sync how sending stands
+ * @property {any} host @property {any} held what host.open last said @property {boolean} newer a newer version stands ready @property {any} sync how sending stands
  * @property {(name: string, args?: Record<string, string>) => void} go @property {() => Promise<any>} refresh
+ * @property {(says: string) => void} trouble
  * @property {() => DocumentFragment} templates @property {(cb: (sync: any) => void) => () => void} onsync
  */
 
@@ -33,7 +34,7 @@ let shown = 0;
 
 /** @type {App} */
 const app = {
-  host, held: null, sync: { state: "idle", says: "", oldestUnsynced: null },
+  host, held: null, newer: false, sync: { state: "idle", says: "", oldestUnsynced: null },
   go: (name, args = {}) => {
     const query = new URLSearchParams(args).toString();
     const hash = `#${name}${query ? `?${query}` : ""}`;
@@ -46,6 +47,7 @@ const app = {
     holder.innerHTML = app.held?.kit?.controls ?? "";
     return holder.content;
   },
+  trouble: (says) => trouble(says),
   onsync: (cb) => { listeners.add(cb); return () => listeners.delete(cb); },
 };
 
@@ -82,6 +84,13 @@ function fault(problem) {
   alertUser(says);
 }
 
+/** Trouble with keeping what is recorded stays on screen until it was read; it pushes the page down and covers nothing. @param {string} says */
+function trouble(says) {
+  const bar = part(document, "trouble");
+  put(bar, h("p", {}, says), h("button", { type: "button", class: "close", on: { click: () => put(bar) } }, "I have read it"));
+  alertUser(says);
+}
+
 async function begin() {
   dress();
   try {
@@ -91,7 +100,8 @@ async function begin() {
     return;
   }
   host.onsync?.((/** @type {any} */ sync) => { app.sync = sync; for (const cb of listeners) cb(sync); });
-  host.ontrouble?.((/** @type {any} */ what) => { if (what.says) alertUser(what.says); });
+  host.ontrouble?.((/** @type {any} */ what) => { if (what.says) trouble(what.says); });
+  host.onupdate?.(() => { app.newer = true; if (wanted().name === "home") void show(); });
   addEventListener("hashchange", () => void show());
   await show();
 }

@@ -36,12 +36,19 @@ function kitBand(app) {
     h("div", { class: "buttons" }, h("button", { type: "button", class: "act", "data-take-kit": true, disabled: !enrolled && !app.held.device, on: { click: () => app.go("kit") } }, "Take the kit again")));
 }
 
+/** What is wrong with a run, or with what the server made of it. @param {any} run */
+function runTrouble(run) {
+  if (run.broken) return run.broken;
+  if (run.kept?.length) return `The server kept ${run.kept.length} event${run.kept.length === 1 ? "" : "s"} of this run that it cannot place; ask at the desk.`;
+  return run.trouble?.says ?? "";
+}
+
 /** @param {any} app @param {any} run */
 function runRow(app, run) {
   const sent = run.synced ? "received by the server" : `saved on this tablet, ${run.seq - run.acked} event${run.seq - run.acked === 1 ? "" : "s"} not received by the server`;
   const over = ["ended", "voided"].includes(run.phase);
   return h("li", {}, h("button", { type: "button", class: "run-row", "data-run": run.run, on: { click: () => app.go("run", { run: run.run }) } },
-    h("span", {}, h("b", {}, `${run.title}, ${run.cabinet}, tube ${run.tube}`), h("br"), h("span", {}, `${run.run}: ${/** @type {any} */ (PHASES)[run.phase] ?? run.phase}; ${sent}`)),
+    h("span", {}, h("b", {}, `${run.title}, ${run.cabinet}, tube ${run.tube}`), h("br"), h("span", {}, `${run.run}: ${/** @type {any} */ (PHASES)[run.phase] ?? run.phase}; ${sent}`), runTrouble(run) ? h("span", {}, h("br"), h("b", {}, runTrouble(run))) : null),
     h("span", { class: "v" }, h("span", {}, `${day(run.updated)} ${minute(run.updated)} `), h("span", { class: "go" }, over ? "Read it" : "Go on"))));
 }
 
@@ -50,6 +57,14 @@ function runsBand(app) {
   const { runs, health } = app.held;
   const says = health.storage !== "ok" ? "None can be read. See above: this is a loss, not an empty list." : app.held.device ? "None has been recorded on this tablet since it was enrolled." : "Nothing is held here: this tablet was never enrolled, or the browser has removed everything.";
   return band({ title: "Runs on this tablet", name: "runs" }, runs.length ? h("ul", { class: "runs" }, runs.map((/** @type {any} */ r) => runRow(app, r))) : h("p", { class: "say" }, says));
+}
+
+/** Words on events that the server has not received for long. @param {string | null} oldest */
+function unsentWords(oldest) {
+  const hours = oldest ? (Date.now() - Date.parse(oldest)) / 3600000 : 0;
+  if (hours < 24) return null;
+  const days = Math.floor(hours / 24), said = `The oldest event here that the server has not received is ${days} day${days === 1 ? "" : "s"} old.`;
+  return h("p", { class: "heed" }, hours < 72 ? `${said} Connect when you can.` : h("b", {}, `${said} Connect before you record more: until then this tablet holds the only copy.`));
 }
 
 /** @param {any} app */
@@ -63,9 +78,11 @@ function healthBand(app) {
     ["Storage", [yes(health.persisted, "kept by the browser", "the browser does not promise to keep it"), health.probe ? `; ${health.probe}` : ""]],
     ["Enrolled", enrolled ? `${here.map((/** @type {any} */ p) => p.name).join(", ") || "nobody has a certificate yet"}${device?.name ? `; this is ${device.name}` : ""}${waiting.length ? `; waiting for the signing authority: ${waiting.map((/** @type {any} */ p) => p.name).join(", ")}` : ""}` : h("b", {}, "nobody")],
     ["Sending", [app.sync.says || "nothing to send", app.sync.oldestUnsynced ? `; oldest event not received: ${day(app.sync.oldestUnsynced)} ${minute(app.sync.oldestUnsynced)}` : ""]]]),
+    unsentWords(app.sync.oldestUnsynced),
     health.storage === "ok" ? health.says.map((/** @type {string} */ s) => h("p", { class: "heed" }, s)) : null,
     h("div", { class: "buttons" }, h("button", { type: "button", class: "act", "data-enrol": true, on: { click: () => app.go("enrol") } }, enrolled ? "Enrol another person" : "Enrol a person"),
-      h("button", { type: "button", class: "act", "data-send": true, on: { click: () => { void Promise.resolve(app.host.sync()).catch(() => undefined).then(() => app.go("home")); } } }, "Send now")));
+      h("button", { type: "button", class: "act", "data-send": true, on: { click: () => { void Promise.resolve(app.host.sync()).catch(() => undefined).then(() => app.go("home")); } } }, "Send now"),
+      app.newer ? h("button", { type: "button", class: "act", "data-update": true, on: { click: () => { void Promise.resolve(app.host.update()).catch((/** @type {any} */ problem) => app.trouble(problem.says ?? String(problem))); } } }, "Take the newer version") : null));
 }
 
 /** The one thing to do next. @param {any} app @param {any[]} returned */

@@ -7,7 +7,8 @@ export async function kitScreen(app) {
   const fill = h("i"), bar = h("div", { class: "progress", role: "progressbar", "aria-label": "Parts of the kit taken", "aria-valuemin": "0", "aria-valuemax": "1", "aria-valuenow": "0", hidden: true }, fill);
   const says = h("p", { class: "say", role: "status", "data-kit-says": true });
   const wrong = h("p", { class: "refused", role: "alert" });
-  const take = h("button", { type: "button", class: "act first", "data-kit-take": true, on: { click: () => void fetchIt() } }, "Take the kit now");
+  const take = h("button", { type: "button", class: "act first", "data-kit-take": true, on: { click: () => { if (aboard) app.go("home"); else void fetchIt(); } } }, "Take the kit now");
+  let aboard = false;
 
   async function fetchIt() {
     take.setAttribute("disabled", "");
@@ -25,7 +26,7 @@ export async function kitScreen(app) {
       put(says, `The kit is aboard: ${(kit ?? app.held.kit)?.procedures?.length ?? 0} procedures. Everything from here works without a network.`);
       put(take, "Done");
       take.removeAttribute("disabled");
-      take.onclick = () => app.go("home");
+      aboard = true;
     } catch (problem) {
       put(wrong, `${/** @type {any} */ (problem).says ?? problem} The kit that was aboard is unchanged.`);
       take.removeAttribute("disabled");

@@ -20,6 +20,7 @@ export function makeSafePage(ctx) {
   async function record(item, done) {
     const r = await ctx.send({ do: "safe-step-done", item: item.id, done });
     put(refused, r.refused?.says ?? "");
+    ctx.repaint();
     paint();
   }
   /** @param {any} item @param {number} k */

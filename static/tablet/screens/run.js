@@ -30,6 +30,7 @@ function progressOf(run) {
 export async function runScreen(app, args) {
   const run = await app.host.openRun(args.run);
   const sheet = run.sheet;
+  const drafts = /** @type {Map<string, any>} */ (new Map());
   let over = /** @type {{name: string, args: any} | null} */ (null), page = /** @type {any} */ (null), key = "", busy = false, drawn = "";
   const view = frame(sheet, { makeSafe: () => ctx.over("make_safe"), thisRun: () => ctx.over("this_run") });
 
@@ -38,7 +39,7 @@ export async function runScreen(app, args) {
     app, host: app.host, run, sheet, templates: app.templates(), state: run.state, progress: progressOf(run), step: null, draft: {},
     over: (/** @type {string} */ name, /** @type {any} */ more = {}) => { over = { name, args: more }; key = ""; void draw(); },
     shut: (/** @type {boolean} */ toHead = true) => { over = null; key = ""; void draw(toHead); },
-    answer, send, keep,
+    answer, send, keep, repaint,
     shutReasons: () => (ctx.progress.open === false ? ctx.progress.reasons ?? [] : []),
     people: () => (ctx.state.started?.people ?? []).filter((/** @type {any} */ p) => ctx.state.started.present.includes(p.id)).map(withKey),
     everyone: () => (ctx.state.started?.people ?? []).map(withKey),
@@ -57,7 +58,9 @@ export async function runScreen(app, args) {
   /** Drafts are kept while typing, never at unload. @param {Record<string, any>} patch */
   function keep(patch) {
     ctx.draft = { ...ctx.draft, ...patch };
-    if (ctx.step) void Promise.resolve(run.saveDraft(ctx.step.id, ctx.draft)).catch(() => undefined);
+    if (!ctx.step) return;
+    drafts.set(ctx.step.id, ctx.draft);
+    void Promise.resolve(run.saveDraft(ctx.step.id, ctx.draft)).catch(() => undefined);
   }
   /** Send a command; "saved" is said only once it is on disk. @param {any} command @param {string} [statement] what the person who is spoken for signs */
   async function send(command, statement) {
@@ -81,7 +84,7 @@ export async function runScreen(app, args) {
       setTimeout(() => page?.refuse?.(result.refused.says), 0);
       await draw();
     } else {
-      if (step) { ctx.draft = {}; await Promise.resolve(run.saveDraft(step, null)).catch(() => undefined); }
+      if (step) { ctx.draft = {}; drafts.delete(step); await Promise.resolve(run.saveDraft(step, null)).catch(() => undefined); }
       await draw(true);
       say("Saved on this tablet");
     }
@@ -113,6 +116,14 @@ export async function runScreen(app, args) {
     return rails(sheet, now, after ?? now, { planned: true, at: changes ? 88 : 100, standing: true, warming: waits });
   }
 
+  /** Head and rails after a record that leaves its page open. */
+  function repaint() {
+    ctx.state = run.state;
+    ctx.progress = progressOf(run);
+    view.lanes(openRails());
+    paintHead();
+  }
+
   async function draw(toHead = false) {
     ctx.state = run.state;
     ctx.progress = progressOf(run);
@@ -120,7 +131,7 @@ export async function runScreen(app, args) {
     const fresh = over ? `over:${over.name}` : pageKey(ctx.state);
     if (fresh !== key) {
       key = fresh;
-      if (ctx.step && !over) ctx.draft = (await Promise.resolve(run.draft(ctx.step.id)).catch(() => null)) ?? {};
+      if (ctx.step && !over) ctx.draft = drafts.get(ctx.step.id) ?? (await Promise.resolve(run.draft(ctx.step.id)).catch(() => null)) ?? {};
       page?.stop?.();
       page = over ? overPage(ctx, over.name, over.args) : openPage(ctx);
       view.open(openRails(), page.node, Boolean(over));

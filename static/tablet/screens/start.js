@@ -38,7 +38,8 @@ export async function startScreen(app) {
   function update() {
     const p = usable.find((/** @type {any} */ u) => u.procedure === procedure.values()[0]), here = present.values().length;
     const ready = Boolean(p && cabinet.values()[0] && tube?.values()[0] && recorder?.values()[0]);
-    put(rest, here === 1 ? h("p", { class: "heed" }, "You work alone; the record will say so.") : null,
+    put(rest, app.held.health.installed ? null : h("p", { class: "heed" }, h("b", {}, "This is a browser window, not the app on the home screen."), " The browser may remove what it holds after some days. Install it, enrol there, and start the run there."),
+      here === 1 ? h("p", { class: "heed" }, "You work alone; the record will say so.") : null,
       p?.sheet ? h("p", { class: "heed" }, "This edition is checked; it is not proved: no proof of its every path exists yet. The record says so.") : null);
     put(wrong);
     put(start, p ? `Start ${p.title.toLowerCase()}` : "Choose a procedure");
