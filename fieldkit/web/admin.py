@@ -70,7 +70,7 @@ def set_roles(person: str) -> ResponseReturnValue:
     try:
         people.set_roles(actor(), person, tuple(form.roles.data or ()))
         flash(
-            "The roles are changed. Certificates already issued keep the roles they say; issue new ones if need be.",
+            "The roles are changed. Certificates already issued keep the roles that they say.",
             "done",
         )
     except Refusal as bad:
@@ -81,7 +81,9 @@ def set_roles(person: str) -> ResponseReturnValue:
 @blueprint.post("/people/<person>/out")
 @ADMIN
 def put_out(person: str) -> ResponseReturnValue:
-    return _active(person, False, "is out of use; what they signed stays. Their keys are revoked below, tablet by tablet.")
+    return _active(
+        person, False, "is out of use; what they signed stays. Their keys are revoked below, tablet by tablet."
+    )
 
 
 @blueprint.post("/people/<person>/back")
