@@ -428,7 +428,7 @@ FOCUS = """() => {
   if (!node || node === document.body) return null;
   const box = node.getBoundingClientRect();
   const top = document.elementFromPoint(box.x + box.width / 2, box.y + box.height / 2);
-  const ring = getComputedStyle(node.closest(".well, .pick, [data-field=picture]") ?? node);
+  const ring = getComputedStyle(node.matches(".pick input") ? node.nextElementSibling : node.matches("[data-field=picture] input") ? node.parentElement.querySelector("label") : node.closest(".well") ?? node);
   return { what: node.outerHTML.slice(0, 100), clear: Boolean(top && (node.contains(top) || top.contains(node))), ring: ring.outlineStyle };
 }"""
 
@@ -439,15 +439,16 @@ def test_focus_is_visible_and_never_hidden_under_anything(page: Any, server: Loo
     w, h = WIDTHS[width]
     page.set_viewport_size({"width": w, "height": h})
     opened(page, server, name)
-    page.evaluate("() => document.activeElement.blur()")
     seen = set()
+    page.evaluate("() => document.querySelector('[data-make-safe]').focus()")
+    page.keyboard.press("Shift+Tab")
     for _ in range(60):
         page.keyboard.press("Tab")
         found = page.evaluate(FOCUS)
         if found is None:
             break
         seen.add(found["what"])
-        assert found["clear"], (name, width, found)
+        assert found["clear"] and found["ring"] == "solid", (name, width, found)
     assert len(seen) > 5
     assert any("makesafe" in one for one in seen)
 
