@@ -35,8 +35,10 @@ let store = null;
 let starting = null;
 /** @type {ReturnType<typeof syncing.loop> | null} */
 let loop = null;
-/** @type {Map<string, any>} */
+/** @type {Map<string, Promise<any>>} runs that this window has open, or is opening */
 const opened = new Map();
+/** @type {Map<string, Promise<void>>} runs that this window is letting go of */
+const closing = new Map();
 /** @type {{sync: ((s: syncing.SyncState) => void)[], trouble: ((t: {code: string, says: string}) => void)[], update: (() => void)[]}} */
 const listeners = { sync: [], trouble: [], update: [] };
 /** @type {{storage: "ok"|"lost"|"damaged", says: string[]}} */
@@ -176,9 +178,19 @@ export async function startRun({ procedure, cabinet, tube, present, recorder }) 
  * Opens a run that lies on this tablet; the same object again while it is open in this window.
  * @param {string} run
  */
-export async function openRun(run) {
-  const held = opened.get(run);
-  if (held) return held;
+export function openRun(run) {
+  let held = opened.get(run);
+  if (!held) {
+    held = openFresh(run);
+    opened.set(run, held);
+    held.catch(() => opened.delete(run));
+  }
+  return held;
+}
+
+/** @param {string} run */
+async function openFresh(run) {
+  await closing.get(run);
   const here = ready();
   const row = /** @type {RunRow | undefined} */ (await get(here, "runs", run));
   if (!row) throw new Refused("no-such-run", `Run ${run} is not on this tablet.`);
@@ -206,12 +218,12 @@ export async function openRun(run) {
     close: () => {
       opened.delete(run);
       letSleep();
-      open_.close();
+      const done = open_.close().finally(() => closing.delete(run));
+      closing.set(run, done);
+      return done;
     },
   };
-  const whole = Object.create(Object.prototype, { ...Object.getOwnPropertyDescriptors(open_), ...Object.getOwnPropertyDescriptors(more) });
-  opened.set(run, whole);
-  return whole;
+  return Object.create(Object.prototype, { ...Object.getOwnPropertyDescriptors(open_), ...Object.getOwnPropertyDescriptors(more) });
 }
 
 /**

@@ -140,11 +140,11 @@ export function writer(store, start) {
 }
 
 /**
- * Holds the run for this tab, or waits for it. `mine` is called once the run is this tab's; the returned function lets go.
+ * Holds the run for this tab, or waits for it. The returned function lets go and resolves once it has.
  * @param {string} run
  * @param {(taken: boolean) => void} first whether it was free at once
  * @param {() => void} mine called later, when another tab let go
- * @returns {() => void}
+ * @returns {() => Promise<void>}
  */
 export function hold(run, first, mine) {
   /** @type {() => void} */
@@ -153,20 +153,23 @@ export function hold(run, first, mine) {
     letGo = () => resolve(undefined);
   });
   const stop = new AbortController();
-  void navigator.locks.request(OPEN_LOCK, { mode: "shared" }, () => until);
-  void navigator.locks.request(lockOf(run), { ifAvailable: true }, async (lock) => {
+  const open = navigator.locks.request(OPEN_LOCK, { mode: "shared" }, () => until);
+  /** @type {Promise<unknown>} */
+  let later = Promise.resolve();
+  const now = navigator.locks.request(lockOf(run), { ifAvailable: true }, (lock) => {
     first(lock !== null);
     if (lock) return until;
-    navigator.locks
-      .request(lockOf(run), { signal: stop.signal }, () => {
-        mine();
-        return until;
-      })
-      .catch(() => undefined);
+    const wait = navigator.locks.request(lockOf(run), { signal: stop.signal }, () => {
+      mine();
+      return until;
+    });
+    later = wait.catch(() => undefined); // aborted: let go before it was this tab's turn
     return undefined;
   });
-  return () => {
+  return async () => {
     stop.abort();
     letGo();
+    await Promise.all([open, now]);
+    await later;
   };
 }

@@ -57,7 +57,7 @@ export async function open(store, start, sheet, app, hooks) {
   /** @type {Promise<unknown>} */
   let line = Promise.resolve();
 
-  const why = () => pen.broken || (mine ? "" : "This run is open in another window of this tablet. Here it can only be read.");
+  const why = () => pen.broken || (closed ? "This run was closed here. Open it again." : mine ? "" : "This run is open in another window of this tablet. Here it can only be read.");
   const change = (/** @type {any} */ more = {}) => listeners.forEach((cb) => cb({ state: folded.state, readonly: why() !== "", says: why(), ...more }));
 
   /** @template T @param {() => Promise<T>} work @returns {Promise<T>} */
@@ -185,8 +185,8 @@ export async function open(store, start, sheet, app, hooks) {
   }
 
   const stopWatch = clockwatch.watch(clockSaid);
-  /** @type {() => void} */
-  let letGo = () => undefined;
+  /** @type {() => Promise<void>} */
+  let letGo = async () => undefined;
   const taken = await new Promise((resolve) => {
     letGo = journal.hold(start.run, resolve, () => {
       void inLine(async () => {
@@ -228,11 +228,13 @@ export async function open(store, start, sheet, app, hooks) {
       listeners.push(cb);
       return () => listeners.splice(listeners.indexOf(cb), 1);
     },
-    close() {
+    /** Lets go of the run; resolves once another window, or this one again, may take it. */
+    async close() {
       if (closed) return;
       closed = true;
       stopWatch();
-      letGo();
+      await line;
+      await letGo();
     },
   };
 }

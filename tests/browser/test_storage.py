@@ -285,6 +285,25 @@ def test_a_second_window_reads_along_and_takes_over(tablet):
     assert kinds == ["run-started", "states-declared", "remarked", "resumed", "remarked"]
 
 
+def test_a_run_that_is_left_and_opened_again_at_once_is_still_this_windows(tablet):
+    tablet.enrol()
+    run = tablet.begin()
+    answer = tablet.page.evaluate(
+        """async (run) => {
+          const host = await import(document.querySelector("script[type=module]").src.replace("main.js", "host.js"));
+          const [a, b] = await Promise.all([host.openRun(run), host.openRun(run)]);
+          const same = a === b;
+          a.close();
+          const again = await host.openRun(run);
+          const made = await again.command({ do: "remarked", step: "look", text: "back" });
+          return [same, again === a, again.readonly, made.ok];
+        }""",
+        run,
+    )
+    assert answer == [True, False, False, True]
+    assert [kind for _, kind, _ in texts(tablet, run)] == ["run-started", "states-declared", "remarked"]
+
+
 def test_of_two_windows_only_the_one_that_holds_the_run_writes(tablet):
     tablet.enrol()
     run = tablet.begin()

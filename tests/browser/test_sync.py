@@ -288,6 +288,71 @@ def test_a_wrong_server_is_not_taken_for_ours(tablet, server, station_folder, tm
     assert server.events(run) == []
 
 
+def test_what_the_desk_returned_stays_readable_without_the_server(tablet, server):
+    run = begun(tablet, remarks=1)
+    quiet(tablet)
+    returned = {
+        "run": run,
+        "reason": "Reading 2 is not in the log.",
+        "by": "quill",
+        "by_name": "S. Quill",
+        "time": "2026-07-31T15:00:00Z",
+    }
+    answer = {"returned": [returned], "received": [], "countersigned": []}
+    headers = {"X-Fieldkit": "1", "Content-Type": "application/json"}
+    tablet.context.route(
+        "**/api/inbox", partial(fulfil, {"status": 200, "headers": headers, "body": json.dumps(answer)})
+    )
+    tablet.host("sync")
+    tablet.context.unroute_all()
+    server.stop()
+    tablet.reopen_page()
+    assert [(r["run"], r["reason"], r["by_name"]) for r in tablet.host("inbox")] == [
+        (run, returned["reason"], "S. Quill")
+    ]
+
+
+def test_a_page_that_is_too_old_sends_but_begins_nothing(tablet, server):
+    from driving import Refused
+
+    run = begun(tablet, remarks=1)
+    with server.inside():
+        from fieldkit.operations import settings
+        from fieldkit.store.db import writing
+
+        with writing() as session:
+            settings.put(session, "min_app", "99.0")
+    tablet.host("fetchKit")
+    with pytest.raises(Refused, match="app-too-old"):
+        tablet.begin("B1", "T-01")
+    tablet.command(run, do="remarked", step="look", text="goes on")
+    assert tablet.host("sync")["state"] == "received"
+    assert there(server, run) == local(tablet, run)
+
+
+def test_a_run_begins_only_in_the_installed_app_where_a_tab_forgets(tablet, server):
+    from driving import Refused
+
+    tablet.close()
+    tablet.launch("Object.defineProperty(Navigator.prototype, 'standalone', { get: () => false });")
+    tablet.open()
+    tablet.enrol()
+    with pytest.raises(Refused, match="not-installed"):
+        tablet.begin()
+
+
+def test_a_cabinet_with_an_open_run_gets_no_second_one(tablet, server):
+    from driving import Refused
+
+    first = begun(tablet, remarks=0)
+    with pytest.raises(Refused, match="cabinet-has-run"):
+        tablet.begin()
+    tablet.begin("B1", "T-01")
+    states = {"heater": "on", "beam_supply": "off"}
+    tablet.command(first, do="ended", outcome="stopped", reason="enough", states=states, locks=[], earths=[])
+    assert tablet.begin() != first
+
+
 # ---- people and clocks ----------------------------------------------------------------------------------------------
 
 
