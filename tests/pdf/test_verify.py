@@ -303,7 +303,20 @@ def test_a_file_of_another_version_of_the_templates_is_compared_reading_by_readi
     pdf = run.countersigned()
     monkeypatch.setattr(render, "look", lambda: "another")
     report = ask(pdf)
-    assert report.holds and "found on the pages, in order" in _says(report, "pages")
+    assert report.holds and "were found on them" in _says(report, "pages")
+
+
+def test_under_other_templates_a_changed_name_and_a_changed_reading_are_named(run, ask, monkeypatch):
+    def forge(opened):
+        for number, old, new in ((1, "6.62", "6.26"), (1, "S. Quill", "P. Arkle")):
+            page = opened.pages[number].obj
+            ops = pikepdf.parse_content_stream(page)
+            page.Contents.write(pikepdf.unparse_content_stream(_swap(ops, page.Resources, old, new)))
+
+    forged = run.countersigned(_rewritten(run.render().pdf, forge))
+    monkeypatch.setattr(render, "look", lambda: "another")
+    report = ask(forged)
+    assert _failing(report) == {"pages"} and "do not show “6.62”" in _says(report, "pages")
 
 
 def test_a_record_of_another_version_is_not_checked_rather_than_called_false(run, ask, monkeypatch):
@@ -359,6 +372,16 @@ def test_a_recorder_who_countersigns_is_named(run, station, ask):
     made = pdf_run.run(station, pen)
     report = ask(station.countersign(made.sealed(), "quill"))
     assert "countersignature" in _failing(report) and "takes another person" in _says(report, "countersignature")
+
+
+def test_another_supervisor_than_the_record_was_made_ready_for_is_named(run, station, ask):
+    from fieldkit.record.context import Reviewer
+
+    record = run.record(reviewer=Reviewer(id="orme", name="K. Orme"))
+    sealed = run.sealed(run.render(record=record).pdf)
+    assert ask(station.countersign(sealed, "orme")).holds
+    report = ask(station.countersign(sealed, "p.ardin"))
+    assert _failing(report) == {"countersignature"} and "made ready for K. Orme" in _says(report, "countersignature")
 
 
 def test_a_technician_in_the_supervisors_field_is_named(run, station, ask, monkeypatch):

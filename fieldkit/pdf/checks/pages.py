@@ -30,9 +30,38 @@ _CATALOGUE = {
     "/Type", "/Pages", "/Names", "/Lang", "/Metadata", "/OutputIntents", "/StructTreeRoot", "/MarkInfo", "/Outlines",
     "/ViewerPreferences", "/AF", "/AcroForm", "/Perms", "/Extensions", "/Version",
 }  # fmt: skip
+#: what a record shows under any layout, beside its readings: field of the record -> fields of its lines
+_PRINTED: dict[str, tuple[str, ...]] = {
+    "summary": (),
+    "before_says": (),
+    "after_says": (),
+    "next_person": (),
+    "attention": ("title", "value", "unit", "says"),
+    "deviations": ("title", "value", "unit", "reason", "under", "authority_name"),
+    "corrections": ("title", "old", "new", "unit", "reason", "by_name"),
+    "retakes": ("title", "reason", "by_name"),
+    "locks": ("point", "lock", "holder_name", "on_time", "off_time", "off_by"),
+    "earths": ("stick", "point", "on_time", "off_time"),
+    "proofs": ("title", "instrument", "known_source", "verdict"),
+    "waits": ("title", "says", "flag"),
+    "holds": ("title", "statement", "name"),
+    "cautions": ("says",),
+    "people": ("says",),
+    "trips": ("says",),
+    "gaps": ("says",),
+    "safe": ("says",),
+    "remarks": ("says",),
+    "choices": ("says",),
+    "signatures": ("name", "role", "meaning", "statement"),
+    "instruments": ("id", "range", "accuracy", "calibrated_to", "certificate"),
+    "givens": ("name", "value", "unit", "source"),
+    "log": ("time", "says", "by_name"),
+}
 _NAMES = {"/Dests", "/EmbeddedFiles"}
 #: characters shown around the first difference
 _AROUND = 30
+#: characters within which the parts of one reading follow each other, a corrected value and its reason included
+_AWAY = 600
 
 
 def pages(subject: Subject) -> str:
@@ -50,7 +79,7 @@ def pages(subject: Subject) -> str:
             how = "text and glyphs compared"
         else:
             wrong += _values(texts.said(subject.pdf), record)
-            how = "made by another version of the templates: the readings were found on the pages, in order"
+            how = "made with other templates: the record's words and its readings in order were found on them"
         if not wrong and made == _here(str(made.get("paper"))):
             wrong += _drawing(subject, record, html, str(made["paper"]))
             how = "made again here, and drawn the same"
@@ -141,16 +170,30 @@ def _parting(shown: str, written: str) -> str:
 
 
 def _values(said: Said, record: model.Record) -> list[str]:
-    """Every reading in order: its title, value and verdict are somewhere after those of the one before."""
+    """What every layout must show: the readings in order, and each of the printed words somewhere."""
     body, at, wrong = squeeze(said.body), 0, []
     for reading in record.readings:
-        for part in (reading.title, reading.text.replace("-", "−"), reading.unit, reading.verdict):
-            found = body.find(squeeze(part), at)
+        limits = reading.limits.says if reading.limits else ""
+        found = body.find(squeeze(reading.title), at)
+        for part in (reading.text, reading.unit, limits, reading.verdict):
+            near = found + _AWAY
+            found = max((body.find(form, found, near) for form in _forms(part)), default=-1) if found >= 0 else -1
             if found < 0:
                 wrong.append(f"Event {reading.seq}: the pages do not show “{part}” of {reading.title} in its place.")
                 break
-            at = found + len(squeeze(part))
+        at = max(at, found)
+    for name, fields in _PRINTED.items():
+        rows = getattr(record, name)
+        for row in rows if isinstance(rows, tuple) else (rows,):
+            for word in (row,) if isinstance(row, str) else (str(getattr(row, f)) for f in fields):
+                if not any(form in body for form in _forms(word)):
+                    wrong.append(f"The pages do not show “{word}”, which the record has under {name}.")
     return wrong
+
+
+def _forms(word: str) -> set[str]:
+    """A word as it may be printed: with a hyphen, or with a minus sign."""
+    return {squeeze(word), squeeze(word.replace("-", "−"))}
 
 
 def _drawing(subject: Subject, record: model.Record, html: str, paper: str) -> list[str]:

@@ -64,6 +64,9 @@ def countersignature(subject: Subject) -> str:
     recorders = {e.head.by for e in subject.events if e.head.kind != "signed"}
     if holder.id in recorders:
         raise Wrong(f"{holder.name} recorded this run and countersigned it; that takes another person.")
+    reviewer = (subject.record.get("context") or {}).get("reviewer")
+    if reviewer and reviewer.get("id") != holder.id:
+        raise Wrong(f"The record was made ready for {reviewer.get('name')}, but {holder.name} countersigned it.")
     return f"“{signature.reason}” {holder.name}, {_when(signature)}."
 
 
