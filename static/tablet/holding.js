@@ -17,7 +17,7 @@ export function holdButton(spec) {
   const small = h("small", {}, spec.small ?? "Press and hold for one second");
   const node = /** @type {HTMLButtonElement} */ (h("button", { type: "button", class: "hold", "data-hold": true },
     h("span", {}, spec.label, small), h("span", { class: "grip", "aria-hidden": "true" }, bars)));
-  let began = 0, frame = 0, asked = 0;
+  let began = 0, frame = 0, asked = Number.NEGATIVE_INFINITY;
 
   const fill = (/** @type {number} */ share) => bars.forEach((bar, k) => bar.classList.toggle("dn", share * BARS > k));
   const stop = () => { cancelAnimationFrame(frame); began = 0; fill(0); };
@@ -42,7 +42,7 @@ export function holdButton(spec) {
   node.addEventListener("click", (e) => {
     // A click of no pointer (it has no count) and no key (prevented above) is an assistive one: the second within four seconds counts as held.
     if (e.detail !== 0) return;
-    if (performance.now() - asked < 4000) { asked = 0; spec.run(); return; }
+    if (performance.now() - asked < 4000) { asked = Number.NEGATIVE_INFINITY; spec.run(); return; }
     asked = performance.now();
     alertUser("Activate it once more within four seconds to confirm.");
   });
