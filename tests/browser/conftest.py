@@ -18,8 +18,9 @@ sys.path.insert(0, str(HERE))
 from driving import CHROMIUM, ROOT, Server, Tablet  # noqa: E402
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture(scope="module")
 def playwright_here() -> Any:
+    """The driver, for one file: while it is there an event loop runs in this thread, which other tests cannot have."""
     if not Path(CHROMIUM).exists():
         pytest.skip(f"no browser at {CHROMIUM}: apt-get install chromium")
     from playwright.sync_api import sync_playwright
