@@ -53,6 +53,8 @@ class Returned:
     by: str
     by_name: str
     time: str
+    #: the run's last event here when it was returned; what was recorded after it answers the return
+    seq: int
 
 
 @dataclass(frozen=True)
@@ -81,7 +83,8 @@ def inbox(device: str) -> Inbox:
         if record.state == "returned":
             last = db.session.scalar(select(Return).where(Return.run == run.id).order_by(Return.id.desc()))
             if last is not None:
-                made.returned.append(Returned(run.id, last.reason, last.by, names.get(last.by, last.by), last.time))
+                name = names.get(last.by, last.by)
+                made.returned.append(Returned(run.id, last.reason, last.by, name, last.time, last.seq))
         elif record.state == "countersigned":
             by = record.countersigned_by or ""
             made.countersigned.append(Stands(run.id, by, names.get(by, by), record.countersigned or record.since))

@@ -119,19 +119,27 @@ class Screens:
             if node == until:
                 return
             left = [reason["left"] for reason in seen["progress"]["reasons"]]
-            if left:
+            if left and not seen["state"]["pending"]:
                 assert all(one is not None for one in left), seen["progress"]["reasons"]
-                self.page.clock.fast_forward(int(max(float(one) for one in left) * 1000) + 1500)
+                self.wait(max(float(one) for one in left) + 1.5)
                 continue
             self.answer(seen, picture)
-            self.page.wait_for_function(
-                """async ([run, seq]) => {
-              const host = await import(document.querySelector("script[type=module]").src.replace("main.js", "host.js"));
-              return (await host.openRun(run)).state.seq > seq;
-            }""",
-                arg=[self.run, seen["state"]["seq"]],
-            )
+            self.moved_on(seen["state"]["seq"])
         raise AssertionError(f"{until} was not reached; the run stands at {self.look()['state']['node']}")
+
+    def wait(self, seconds: float) -> None:
+        """Time passes with the tablet awake: never more at once than it would take for sleep."""
+        while seconds > 0:
+            self.page.clock.fast_forward(int(min(seconds, 60) * 1000))
+            seconds -= 60
+
+    def moved_on(self, seq: int) -> None:
+        """Until something was recorded after event `seq`."""
+        for _ in range(200):
+            if self.look()["state"]["seq"] > seq:
+                return
+            self.page.wait_for_timeout(50)
+        raise AssertionError(f"nothing was recorded after event {seq}: {self.page.inner_text('body')[:600]}")
 
     def answer(self, seen: dict[str, Any], picture: Path | None) -> None:
         page, step = self.page, seen["progress"]["step"]

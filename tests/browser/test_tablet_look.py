@@ -119,7 +119,7 @@ def stopped() -> dict[str, Any]:
 
 LOST = {"runs": [], "health": {"storage": "lost", "says": ["Run 0731-B2-2 had reached event 212."]}}
 BARE = {"enrolled": False, "device": None, "kit": None, "runs": [], "health": {"offline_ready": False, "says": ["Nothing is stored on this tablet."]}}
-RETURNED = [{"run": "0731-B2-2", "reason": "Which meters does the picture show?", "by": "quill", "by_name": "S. Quill", "time": "2026-08-01T09:10:00+01:00"}]
+RETURNED = [{"run": "0731-B2-2", "reason": "Which meters does the picture show?", "by": "quill", "by_name": "S. Quill", "time": "2026-08-01T09:10:00+01:00", "seq": 9999}]
 HV = "hv-bring-up"
 #: name -> (scene, hash, what is done before looking)
 PAGES: dict[str, tuple[Callable[[], dict[str, Any]], str, Act | None]] = {

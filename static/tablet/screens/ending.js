@@ -57,7 +57,7 @@ export function afterPage(ctx) {
   if ((ctx.progress.may ?? []).includes("sign") && !ctx.run.readonly) return signPage(ctx);
   const holder = h("div"), made = readPage(ctx, "Ended and signed", state.ended?.outcome === "stopped" ? "Ended as stopped, and signed" : "Ended and signed", holder);
   void Promise.resolve(ctx.host.inbox?.()).catch(() => []).then((rows) => {
-    const back = (rows ?? []).find((/** @type {any} */ r) => r.run === state.run && Date.parse(r.time) > Date.parse(state.clock?.wall ?? 0));
+    const back = (rows ?? []).find((/** @type {any} */ r) => r.run === state.run && r.seq >= state.seq);
     if (back) put(holder, returnedBlock(ctx, back));
   });
   return made;
