@@ -11,7 +11,7 @@ import { check } from "./checks.js";
 import * as holder from "./holder.js";
 
 const page = /** @type {HTMLElement} */ (document.querySelector("[data-countersign]"));
-const { person = "", prepare = "", csrf = "" } = page.dataset;
+const { person = "", prepare = "", ask = "", csrf = "" } = page.dataset;
 
 /** @param {string} name @returns {HTMLElement} */
 function part(name) {
@@ -79,9 +79,11 @@ async function signIt(store) {
 
 async function begin() {
   const store = await holder.store();
-  const record = await holder.find(store, person);
+  const { record } = await holder.current(store, person, ask);
   if (record?.status !== "issued") {
-    say("key", record?.status === "waiting" ? "Your key waits for its certificate." : "Your key is made in this browser and never leaves it.");
+    const waits = record?.status === "waiting";
+    say("key", waits ? "Your key is made; its certificate waits for an administrator, who opens the signing authority. Load this page again after that." : "Your key is made in this browser and never leaves it.");
+    inside("key", "[data-key-link]").textContent = waits ? "Look at this browser’s key" : "Make this browser’s key";
     part("key").hidden = false;
     return;
   }

@@ -47,6 +47,18 @@ export async function look(at, record, ask) {
 }
 
 /**
+ * The key as it stands now: where its certificate is still waited for, the desk is asked first.
+ * @param {Store} at @param {string} person @param {string} ask
+ * @returns {Promise<{record: PersonKey | undefined, note: string}>}
+ */
+export async function current(at, person, ask) {
+  const record = await find(at, person);
+  if (record?.status !== "waiting" || !record.enrolment) return { record, note: "" };
+  const { note } = await look(at, record, ask);
+  return { record: await find(at, person), note };
+}
+
+/**
  * A raw 64-byte signature over `data` by the person's key, opened for this one signature. Throws Refused as keys.unlock.
  * @param {Store} at @param {string} person @param {string} passphrase @param {BufferSource} data
  */

@@ -24,12 +24,7 @@ function show(name) {
 
 /** @param {import("../tablet/db.js").Store} store @param {boolean} [asked] */
 async function present(store, asked = false) {
-  let record = await holder.find(store, person);
-  let note = "";
-  if (record?.status === "waiting" && record.enrolment) {
-    note = (await holder.look(store, record, ask)).note;
-    record = await holder.find(store, person);
-  }
+  const { record, note } = await holder.current(store, person, ask);
   const status = record?.status ?? "none";
   says.textContent = SAYS[status] + (status === "refused" && note ? ` “${note}”` : "") + (asked && status === "waiting" ? " Nothing new yet." : "");
   show(status === "none" || status === "refused" ? "make" : status);
