@@ -172,7 +172,7 @@ def test_server_time_to_accept_a_run_of_500_events(long: Long, tmp_path: Path, s
         floor.wall,
     )
     told.add("device-signed requests, to the receipt", requests.wall)
-    told.add("of that, the operation that accepts", operation.wall)
+    told.add("the operation alone, without the request", operation.wall)
     show(told)
     same = Ratios("The same in processor time, without what the disk takes", "bare sqlite3 inserts", floor.processor)
     same.add("device-signed requests, to the receipt", requests.processor)

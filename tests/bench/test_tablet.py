@@ -93,8 +93,9 @@ def tablet(playwright_here: Any, tmp_path: Path) -> Iterator[Tablet]:
     server.stop()
 
 
-@pytest.fixture(scope="session")
+@pytest.fixture
 def playwright_here() -> Iterator[Any]:
+    """Let go after the test: the driver holds this thread's event loop, which other tests need."""
     if not Path(CHROMIUM).exists():
         pytest.skip(f"no browser at {CHROMIUM}: apt-get install chromium")
     from playwright.sync_api import sync_playwright
