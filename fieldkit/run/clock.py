@@ -118,6 +118,11 @@ def passed(clock: dict[str, Any], at: dict[str, Any]) -> dict[str, Any]:
     }
 
 
+def away(passed: dict[str, Any]) -> bool:
+    """Away for longer than a moment, or nobody can tell: a `resumed` or `clock-changed` says so first."""
+    return bool(passed["boot"]) or passed["out"] is None or passed["out"] > PAUSE_MS
+
+
 def advance(clock: dict[str, Any], at: dict[str, Any]) -> dict[str, Any]:
     """The clock after an event at `at`."""
     step = passed(clock, at)

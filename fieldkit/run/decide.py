@@ -150,14 +150,14 @@ def _move(given: Given, body: Plain) -> str | None:
     with_answer = pending["outcome"] in answers.WITH_ANSWER
     where = names.scope(ctx, after) if with_answer else names.scope(ctx, given.state, given.now)
     leaving = [m for m in moves.leads(ctx, after, pending["step"], pending["outcome"]) if m["manner"] == "plain"]
+    leaving = [m for m in leaving if not moves.is_around(m)]
     free = [m for m in leaving if not names.reasons(ctx, where, m["gate"])]
     picked = given.asked.get("move")
     if picked is not None:
         if not any(m["id"] == picked for m in free):
             raise Refusal("not-open", "That way on is not open.")
         return str(picked)
-    alone = [m for m in free if not moves.is_around(m)]
-    return alone[0]["id"] if len(alone) == 1 else None
+    return free[0]["id"] if len(free) == 1 else None
 
 
 def _went_on(given: Given) -> Plain:
@@ -269,8 +269,7 @@ def _gap(given: Given) -> tuple[str, str | None]:
 
 def _person_changed(given: Given) -> Plain:
     to = given.text("to")
-    if answers.person(given.state, to) is None:
-        raise Refusal("unknown-person", "This run knows no such person.")
+    rules.records(given.state, to)
     if to == given.state["recorder"]:
         raise Refusal("same-person", "This person records already.")
     return given.asked

@@ -71,6 +71,33 @@ def deviation(given: Given) -> None:
         )
 
 
+def records(state: State, who: str) -> None:
+    """Refuses to let somebody record who is unknown, or who allowed a deviation of this run."""
+    known(state, who)
+    if any(one["person"] == who and one["meaning"] == "allowed" for one in state["signatures"]):
+        says = f"{name_of(state, who)} allowed a deviation in this run, and cannot record in it."
+        raise Refusal("allowed-before", says)
+
+
+def releases(state: State, control: Plain, who: str) -> None:
+    """Refuses the release of a hold point by its recorder, or by somebody who does not work at transmitters."""
+    known(state, who)
+    if who == state["recorder"]:
+        raise Refusal("same-person", f"{name_of(state, who)} records. Another person releases this hold point.")
+    if control["by"] == "supervisor" and not answers.has_role(state, who, "supervisor"):
+        raise Refusal("not-supervisor", f"{name_of(state, who)} is no supervisor.")
+    if not any(answers.has_role(state, who, role) for role in ("technician", "supervisor")):
+        raise Refusal("no-role", f"{name_of(state, who)} is neither technician nor supervisor.")
+
+
+def tester(state: State, control: Plain, used: str) -> None:
+    """Refuses a proof that was not made with the tester that the step names: a panel meter never proves."""
+    meant = readings.meter_of(state, control["tester"])
+    if meant is not None and used != meant:
+        says = f"This proof is made with {meant}, proved before and after; no other meter proves."
+        raise Refusal("other-tester", says)
+
+
 def end_states(ctx: Context, state: State) -> None:
     """At the end everyone is out, and every source is as the procedure leaves it."""
     inside = [name for people in state["hands"].values() for name in people]
@@ -120,6 +147,7 @@ def _read(given: Given, step: Plain) -> Plain:
 def _proved(given: Given, step: Plain) -> Plain:
     control = step["control"]
     meter = _meter(given, control["tester"], "instrument")
+    tester(given.state, control, meter["id"] if meter else "")
     points = given.asked.get("points")
     typed = (
         {p.get("name"): p.get("text") for p in points if isinstance(p, dict)}
@@ -160,12 +188,13 @@ def _unlocked(given: Given, step: Plain) -> Plain:
         )
     who = known(state, given.text("who") or state["recorder"])
     body: Plain = {"point": point, "lock": lock["lock"], "who": who}
-    return body if who == lock["holder"] else {**body, **_exception(given, lock, who)}
+    if who == lock["holder"]:
+        return body
+    return {**body, **exception(state, lock, who, given.asked.get("checks"), given.text("second"))}
 
 
-def _exception(given: Given, lock: Plain, who: str) -> Plain:
-    """Somebody else's lock: the three checks, each with how it was made, and a second person."""
-    asked = given.asked.get("checks")
+def exception(state: State, lock: Plain, who: str, asked: Any, second: str | None) -> Plain:
+    """Somebody else's lock: three checks, each with how it was made, a second person, a supervisor among the two."""
     made = (
         {c.get("name"): c.get("how") for c in asked if isinstance(c, dict)} if isinstance(asked, list | tuple) else {}
     )
@@ -175,11 +204,14 @@ def _exception(given: Given, lock: Plain, who: str) -> Plain:
         checks = ", ".join(lacking)
         says = f"Lock {lock['lock']} is held by {holder}, who takes it off. Otherwise three checks: {checks}."
         raise Refusal("not-holder", says)
-    second = known(
-        given.state, given.need("second", "second-needed", "A second person is needed to take off this lock.")
-    )
+    if not second:
+        raise Refusal("second-needed", "A second person is needed to take off this lock.")
+    known(state, who)
+    known(state, second)
     if second in (who, lock["holder"]):
         raise Refusal("second-needed", "The second person is neither the holder nor who takes the lock off.")
+    if not any(answers.has_role(state, one, "supervisor") for one in (who, second)):
+        raise Refusal("supervisor-needed", f"A supervisor takes part when the lock of {holder} is taken off.")
     return {"checks": [{"name": name, "how": made[name]} for name in CHECKS], "second": second}
 
 
@@ -206,11 +238,8 @@ def _chosen(given: Given, step: Plain) -> Plain:
 
 def _released(given: Given, step: Plain) -> Plain:
     state, control = given.state, step["control"]
-    who = known(state, given.need("who", "second-needed", "Another person releases this, with their own passphrase."))
-    if who == state["recorder"]:
-        raise Refusal("same-person", f"{name_of(state, who)} records. Another person releases this hold point.")
-    if control["by"] == "supervisor" and not answers.has_role(state, who, "supervisor"):
-        raise Refusal("not-supervisor", f"{name_of(state, who)} is no supervisor.")
+    who = given.need("who", "second-needed", "Another person releases this, with their own passphrase.")
+    releases(state, control, who)
     return {"who": who, "statement": control["statement"]}
 
 

@@ -182,8 +182,10 @@ def _written(text: Any) -> bool:
 
 
 def _board(ctx: Context, run: State, name: str, body: Plain) -> None:
-    """The lock board, with the locks that were found, and what is declared say the same."""
+    """The lock board, with the locks that were found, and what is declared say the same; no proof is declared."""
     title, state = ctx.sources[name]["title"], body["states"][name]
+    if state == "proved":
+        raise Refusal("proof-expired", f"{title} is locked at best: a proof counts only in the run that made it.")
     locks = [lock for lock in [*run["locks"], *body["locks"]] if name in lock["sources"]]
     earths = [earth for earth in run["earths"] if earth["source"] == name]
     if locks and state not in ISOLATED:
@@ -206,15 +208,20 @@ def _board(ctx: Context, run: State, name: str, body: Plain) -> None:
 def confirmed(given: Given) -> Plain:
     """The energy states after a pause. A state that differs is not refused: it is recorded, and stops the run."""
     body = checked(given.kind, {"unbroken": [], **given.asked})
-    _complete(given.ctx, body["states"])
+    goes_on(given.ctx, given.state, body)
+    return body
+
+
+def goes_on(ctx: Context, state: State, body: Plain) -> None:
+    """Refuses confirmed states that leave a source out, keep a proof through the pause, or claim what did not hold."""
+    _complete(ctx, body["states"])
     for name, to in body["states"].items():
-        kept = given.state["sources"][name]
+        kept = state["sources"][name]
         if to == "proved" and kept["state"] == "locked":
-            title = given.ctx.sources[name]["title"]
+            title = ctx.sources[name]["title"]
             raise Refusal(
                 "proof-expired", f"The proof that {title} is dead ended with the pause. It is locked; prove it again."
             )
     for name in body["unbroken"]:
-        if name not in given.state["sources"] or body["states"].get(name) != given.state["sources"][name]["state"]:
+        if name not in state["sources"] or body["states"].get(name) != state["sources"][name]["state"]:
             raise Refusal("not-unbroken", f"{name} did not hold through the pause as it was.")
-    return body

@@ -16,7 +16,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass, field, replace
 from typing import Any
 
-from fieldkit.run import answers, arms, clock, events, moves, rows, start
+from fieldkit.run import answers, arms, clock, events, moves, recheck, rows, start
 from fieldkit.run.moves import State, disagree
 from fieldkit.run.names import Context, context
 from fieldkit.sheet.model import Sheet
@@ -171,6 +171,8 @@ def _step(
         disagree(state, seq, "not-started", f"Event {seq} ({kind}) stands before the run was started.")
     elif state["phase"] in ("ended", "voided") and kind not in _AFTER_END:
         disagree(state, seq, "after-end", f"Event {seq} ({kind}) stands after the end of the run.")
+    if state["started"] is not None:
+        recheck.event(ctx, state, event, step)
     if kind in answers.CONTROLS and answers.is_answer(ctx, state, event):
         answers.answer(ctx, state, event, corrections.get(seq, []))
     else:
@@ -199,7 +201,8 @@ def _signature_due(state: State, event: Plain) -> None:
     """A release, a deviation and a lock taken off are followed by that person's signature at once."""
     due = state["unsigned"]
     state["unsigned"] = None
-    if due and not (event["kind"] == "signed" and event["body"]["person"] == due["person"]):
+    wanted = {"person": due["person"], "meaning": due["meaning"]} if due else {}
+    if due and not (event["kind"] == "signed" and wanted.items() <= event["body"].items()):
         says = f"Event {due['seq']} is not followed by the signature of {due['person']}."
         disagree(state, due["seq"], "not-signed", says)
 

@@ -97,6 +97,12 @@ export function passed(clock, at) {
   };
 }
 
+/** The tablet was away for longer than a moment, or nobody can tell: a `resumed` or `clock-changed` says so first.
+ * @param {Passed} passed */
+export function away(passed) {
+  return passed.boot || passed.out === null || passed.out > PAUSE_MS;
+}
+
 /** @param {Clock} clock @param {At} at @returns {Clock} */
 export function advance(clock, at) {
   const step = passed(clock, at);

@@ -132,15 +132,14 @@ function move_of(given, body) {
   if (pending === null || pending.outcome === "fail") return null;
   const with_answer = answers.WITH_ANSWER.includes(pending.outcome);
   const where = with_answer ? names.scope(ctx, after) : names.scope(ctx, given.state, given.now);
-  const leaving = moves.leads(ctx, after, pending.step, pending.outcome).filter((m) => m.manner === "plain");
+  const leaving = moves.leads(ctx, after, pending.step, pending.outcome).filter((m) => m.manner === "plain" && !moves.is_around(m));
   const free = leaving.filter((m) => names.reasons(ctx, where, m.gate).length === 0);
   const picked = given.asked.move ?? null;
   if (picked !== null) {
     if (!free.some((m) => m.id === picked)) throw new Refused("not-open", "That way on is not open.");
     return picked;
   }
-  const alone = free.filter((m) => !moves.is_around(m));
-  return alone.length === 1 ? alone[0].id : null;
+  return free.length === 1 ? free[0].id : null;
 }
 
 /** @param {Given} given */
@@ -265,7 +264,7 @@ const HANDLERS = {
   },
   "person-changed": (given) => {
     const to = given.text("to");
-    rules.known(given.state, to);
+    rules.records(given.state, to);
     if (to === given.state.recorder) throw new Refused("same-person", "This person records already.");
     return given.asked;
   },

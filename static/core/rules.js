@@ -63,6 +63,37 @@ export function deviation(given) {
   }
 }
 
+/** Refuses to let somebody record who is unknown, or who allowed a deviation of this run. @param {State} state @param {string} who */
+export function records(state, who) {
+  known(state, who);
+  if (state.signatures.some((/** @type {any} */ one) => one.person === who && one.meaning === "allowed")) {
+    throw new Refused("allowed-before", `${name_of(state, who)} allowed a deviation in this run, and cannot record in it.`);
+  }
+}
+
+/** Refuses the release of a hold point by its recorder, or by somebody who does not work at transmitters.
+ * @param {State} state @param {any} control @param {string} who */
+export function releases(state, control, who) {
+  known(state, who);
+  const name = name_of(state, who);
+  if (who === state.recorder) throw new Refused("same-person", `${name} records. Another person releases this hold point.`);
+  if (control.by === "supervisor" && !answers.has_role(state, who, "supervisor")) {
+    throw new Refused("not-supervisor", `${name} is no supervisor.`);
+  }
+  if (!["technician", "supervisor"].some((role) => answers.has_role(state, who, role))) {
+    throw new Refused("no-role", `${name} is neither technician nor supervisor.`);
+  }
+}
+
+/** Refuses a proof that was not made with the tester that the step names: a panel meter never proves.
+ * @param {State} state @param {any} control @param {string} used */
+export function tester(state, control, used) {
+  const meant = readings.meter_of(state, control.tester);
+  if (meant !== null && used !== meant) {
+    throw new Refused("other-tester", `This proof is made with ${meant}, proved before and after; no other meter proves.`);
+  }
+}
+
 /** At the end everyone is out, and every source is as the procedure leaves it.
  * @param {import("./names.js").Context} ctx @param {State} state */
 export function end_states(ctx, state) {
@@ -98,18 +129,24 @@ function pairs(list, key, value) {
   return found;
 }
 
-/** @param {Given} given @param {any} lock @param {string} who */
-function exception(given, lock, who) {
-  const made = pairs(given.asked.checks, "name", "how");
+/** Somebody else's lock: the three checks, each with how it was made, a second person, and a supervisor of the two.
+ * @param {State} state @param {any} lock @param {string} who @param {any} asked @param {string | null} second */
+export function exception(state, lock, who, asked, second) {
+  const made = pairs(asked, "name", "how");
   const lacking = CHECKS.filter((name) => !String(made.get(name) || "").trim());
   const holder = lock.holder_name || lock.holder;
   if (lacking.length) {
     const says = `Lock ${lock.lock} is held by ${holder}, who takes it off. Otherwise three checks: ${lacking.join(", ")}.`;
     throw new Refused("not-holder", says);
   }
-  const second = known(given.state, given.need("second", "second-needed", "A second person is needed to take off this lock."));
+  if (!second) throw new Refused("second-needed", "A second person is needed to take off this lock.");
+  known(state, who);
+  known(state, second);
   if (second === who || second === lock.holder) {
     throw new Refused("second-needed", "The second person is neither the holder nor who takes the lock off.");
+  }
+  if (![who, second].some((one) => answers.has_role(state, one, "supervisor"))) {
+    throw new Refused("supervisor-needed", `A supervisor takes part when the lock of ${holder} is taken off.`);
   }
   return { checks: CHECKS.map((name) => ({ name, how: made.get(name) })), second };
 }
@@ -137,6 +174,7 @@ export const ANSWERS = {
   proved: (given, step) => {
     const { control } = step;
     const meter = meter_used(given, control.tester, "instrument");
+    tester(given.state, control, meter ? meter.id : "");
     const written = pairs(given.asked.points, "name", "text");
     const { before = null, after = null } = given.asked;
     for (const [field, title] of readings.proof_fields(control)) {
@@ -168,7 +206,8 @@ export const ANSWERS = {
     }
     const who = known(state, given.text("who") || state.recorder);
     const body = { point, lock: lock.lock, who };
-    return who === lock.holder ? body : { ...body, ...exception(given, lock, who) };
+    if (who === lock.holder) return body;
+    return { ...body, ...exception(state, lock, who, given.asked.checks, given.text("second")) };
   },
   earthed: (given, step) => {
     const { stick, point } = step.control;
@@ -194,14 +233,8 @@ export const ANSWERS = {
   released: (given, step) => {
     const { state } = given;
     const { control } = step;
-    const who = known(state, given.need("who", "second-needed", "Another person releases this, with their own passphrase."));
-    const name = name_of(state, who);
-    if (who === state.recorder) {
-      throw new Refused("same-person", `${name} records. Another person releases this hold point.`);
-    }
-    if (control.by === "supervisor" && !answers.has_role(state, who, "supervisor")) {
-      throw new Refused("not-supervisor", `${name} is no supervisor.`);
-    }
+    const who = given.need("who", "second-needed", "Another person releases this, with their own passphrase.");
+    releases(state, control, who);
     return { who, statement: control.statement };
   },
   pictured: (given) => {

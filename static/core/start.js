@@ -178,11 +178,14 @@ function expected(ctx, where, name, body) {
   }
 }
 
-/** The lock board, with the locks that were found, and what is declared say the same.
+/** The lock board, with the locks that were found, and what is declared say the same; no proof is older than the run.
  * @param {names.Context} ctx @param {names.State} run @param {string} name @param {any} body */
 function board(ctx, run, name, body) {
   const { title } = ctx.sources[name];
   const state = body.states[name];
+  if (state === "proved") {
+    throw new Refused("proof-expired", `${title} is locked at best: a proof counts only in the run that made it.`);
+  }
   const locks = [...run.locks, ...body.locks].filter((/** @type {any} */ lock) => lock.sources.includes(name));
   const earths = run.earths.filter((/** @type {any} */ earth) => earth.source === name);
   if (locks.length && !ISOLATED.includes(state)) {
@@ -207,18 +210,24 @@ function board(ctx, run, name, body) {
 /** The energy states after a pause. A state that differs is recorded, and stops the run. @param {Given} given */
 export function confirmed(given) {
   const body = checked(given.kind, { unbroken: [], ...given.asked });
-  complete(given.ctx, body.states);
+  goes_on(given.ctx, given.state, body);
+  return body;
+}
+
+/** Refuses confirmed states that leave a source out, keep a proof through the pause, or claim what did not hold.
+ * @param {names.Context} ctx @param {names.State} state @param {any} body */
+export function goes_on(ctx, state, body) {
+  complete(ctx, body.states);
   for (const [name, to] of Object.entries(body.states)) {
-    if (to === "proved" && given.state.sources[name].state === "locked") {
-      const { title } = given.ctx.sources[name];
+    if (to === "proved" && state.sources[name].state === "locked") {
+      const { title } = ctx.sources[name];
       throw new Refused("proof-expired", `The proof that ${title} is dead ended with the pause. It is locked; prove it again.`);
     }
   }
   for (const name of body.unbroken) {
-    const kept = Object.hasOwn(given.state.sources, name) ? given.state.sources[name] : null;
+    const kept = Object.hasOwn(state.sources, name) ? state.sources[name] : null;
     if (kept === null || body.states[name] !== kept.state) {
       throw new Refused("not-unbroken", `${name} did not hold through the pause as it was.`);
     }
   }
-  return body;
 }

@@ -14,6 +14,7 @@ import * as arms from "./arms.js";
 import * as clock from "./clock.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
+import * as recheck from "./recheck.js";
 import * as rows from "./rows.js";
 import * as start from "./start.js";
 
@@ -149,6 +150,7 @@ function step(ctx, before, event, corrections, stops) {
   else if ((state.phase === "ended" || state.phase === "voided") && !AFTER_END.includes(kind)) {
     disagree(state, seq, "after-end", `Event ${seq} (${kind}) stands after the end of the run.`);
   }
+  if (state.started !== null) recheck.event(ctx, state, event, passed);
   if (Object.hasOwn(answers.CONTROLS, kind) && answers.is_answer(ctx, state, event)) {
     answers.answer(ctx, state, event, corrections[seq] ?? []);
   } else {
@@ -177,7 +179,8 @@ function chain(state, event) {
 function signature_due(state, event) {
   const due = state.unsigned;
   state.unsigned = null;
-  if (due && !(event.kind === "signed" && event.body.person === due.person)) {
+  const { person = "", meaning = "" } = event.kind === "signed" ? event.body : {};
+  if (due && (person !== due.person || meaning !== due.meaning)) {
     disagree(state, due.seq, "not-signed", `Event ${due.seq} is not followed by the signature of ${due.person}.`);
   }
 }

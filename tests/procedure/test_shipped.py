@@ -3,17 +3,11 @@
 from __future__ import annotations
 
 import pytest
-from walker import Walk, shipped
+from walker import HIGH, WARM, Walk, shipped
 
 from fieldkit.sheet import controls, model
 from fieldkit.sheet.model import Sheet
 
-#: what the meters of the invented station show (its model), where the middle of the limits will not do
-WARM = {"dew_point": "12.0", "coolant_inlet": "24.0", "heater_amps_10": "9.82", "heater_amps_warm": "9.80"}
-HIGH = {
-    "dew_point": "12.0", "ready_inlet": "24.0", "ready_outlet": "29.0", "ready_focus_volts": "27.0", "top_kv": "32.0",
-    "stop_kv": "18.0", "kv_10s": "5.2", "panel_zero": "0.0",
-}  # fmt: skip
 SMALL = HIGH | {"top_kv": "30.0", "stop_kv": "30.9", "kv_10s": "2.1"}
 
 

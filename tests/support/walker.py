@@ -21,6 +21,13 @@ from fieldkit.run import decide, events, progress, state
 from fieldkit.sheet import model
 from fieldkit.sheet.model import Sheet
 
+#: what the meters of the invented station show (its model), where the middle of the limits will not do
+WARM = {"dew_point": "12.0", "coolant_inlet": "24.0", "heater_amps_10": "9.82", "heater_amps_warm": "9.80"}
+HIGH = {
+    "dew_point": "12.0", "ready_inlet": "24.0", "ready_outlet": "29.0", "ready_focus_volts": "27.0", "top_kv": "32.0",
+    "stop_kv": "18.0", "kv_10s": "5.2", "panel_zero": "0.0",
+}  # fmt: skip
+
 BEGIN = datetime(2026, 7, 31, 9, 0, tzinfo=UTC)
 STATION = Path(__file__).resolve().parents[2] / "fieldkit" / "demo" / "station.json"
 
