@@ -20,6 +20,7 @@ from PIL import Image, ImageDraw
 
 from fieldkit.demo.tablet import Run
 from fieldkit.errors import Refusal
+from fieldkit.record.basis import STATEMENTS
 
 Plain = dict[str, Any]
 Answers = Mapping[str, str | Sequence[str]]
@@ -27,6 +28,7 @@ Answers = Mapping[str, str | Sequence[str]]
 #: seconds that a person takes over a step, by control; the rest takes 15
 PACE = {"caution": 25, "number": 12, "prove": 90, "lock": 60, "picture": 20, "remark": 30, "hold": 40}
 RETAKE = "The meter had not settled."
+FALL_BACK = "A burst of gas; the pump recovers."
 
 
 @dataclass
@@ -63,7 +65,8 @@ def _step(walk: Walk) -> None:
         way = next((m for m in seen["moves"] if m["open"] and m["manner"] in ("plain", "again")), None)
         if way is None:
             raise Refusal("not-played", f"At {seen['node']} only stopping is open.")
-        walk.run.command(walk.recorder, do="went-on", move=way["move"], reason=RETAKE)
+        reason = RETAKE if way["manner"] == "again" else FALL_BACK
+        walk.run.command(walk.recorder, do="went-on", move=way["move"], reason=reason)
         return
     if not seen["open"]:
         left = [reason["left"] for reason in seen["reasons"]]
@@ -78,7 +81,7 @@ def _step(walk: Walk) -> None:
     walk.run.command(walk.recorder, **_ANSWERS[control](walk, step, seen))
     due = walk.run.state["unsigned"]
     if due:
-        walk.run.sign(due["person"], due["meaning"], due.get("statement") or f"I {due['meaning']} this.")
+        walk.run.sign(due["person"], due["meaning"], step["control"].get("statement") or STATEMENTS[due["meaning"]])
 
 
 def inside(step: Plain, seen: Plain) -> str:

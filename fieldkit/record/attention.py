@@ -12,8 +12,8 @@ from dataclasses import dataclass
 from decimal import Decimal
 from typing import Any
 
-from fieldkit.record import course, lanes, readings, words
-from fieldkit.record.frame import Frame
+from fieldkit.record import course, lanes, summary, words
+from fieldkit.record.frame import Frame, titled
 from fieldkit.record.lines import Chain, Correction, Deviation, EarthLine, LockLine, Note, Reading, Signature
 from fieldkit.record.model import Attention, Review, Scale
 
@@ -56,6 +56,7 @@ def attention(frame: Frame, lists: Lists) -> tuple[Attention, ...]:
 def _item(frame: Frame, code: str, tag: str, title: str, says: str, seq: int, **more: Any) -> Attention:
     event = next((e for e in frame.events if e["seq"] == seq), frame.events[-1])
     step = more.pop("step", event["body"].get("step") or "")
+    lane = lanes.lane_of(frame, step, seq, more.pop("source", ""))
     return Attention(
         n=0,
         code=code,
@@ -69,7 +70,7 @@ def _item(frame: Frame, code: str, tag: str, title: str, says: str, seq: int, **
         struck=more.pop("struck", ""),
         by=more.pop("by", ""),
         second=frame.second(event),
-        lane=lanes.lane_of(frame, step, seq),
+        lane=lane,
         **more,
     )
 
@@ -78,7 +79,7 @@ def _of(frame: Frame, code: str, tag: str, r: Reading, tone: str = "", by: str =
     """An item about a reading: its own sentence without the value, its scale, the last run."""
     body = r.words.partition(": ")[2] or r.words
     last = next((f"Last run {words.minus(p.value)} {r.unit}." for p in r.pointers if p.name == "last run"), "")
-    title = ", ".join(p for p in (readings.titled(r.title, r.level), r.part) if p)
+    title = ", ".join(p for p in (titled(r.title, r.level), r.part) if p)
     return _item(
         frame,
         code,
@@ -192,11 +193,13 @@ def lock_on(frame: Frame, lists: Lists) -> Iterator[Attention]:
     for lock in lists.locks:
         if lock.left_on:
             says = f"On {lock.point} ({words.listed(lock.sources)}) since {lock.on_time}, held by {lock.holder_name}."
-            yield _item(frame, "lock-on", "Lock still on", f"Lock {lock.lock}", says, lock.on_seq or last)
+            seq, source = lock.on_seq or last, lock.sources[0] if lock.sources else ""
+            yield _item(frame, "lock-on", "Lock still on", f"Lock {lock.lock}", says, seq, source=source)
     for earth in lists.earths:
         if earth.left_on:
             says = f"On {earth.point} since {earth.on_time}."
-            yield _item(frame, "earth-on", "Earth still on", f"Stick {earth.stick}", says, earth.on_seq or last)
+            seq, source = earth.on_seq or last, earth.source
+            yield _item(frame, "earth-on", "Earth still on", f"Stick {earth.stick}", says, seq, source=source)
 
 
 def exception(frame: Frame, lists: Lists) -> Iterator[Attention]:
@@ -214,10 +217,20 @@ def exception(frame: Frame, lists: Lists) -> Iterator[Attention]:
 def failed(frame: Frame, lists: Lists) -> Iterator[Attention]:
     for r in lists.readings:
         if r.verdict in ("fail", "conditional fail") and r.deviation is None and not r.retaken:
-            move = frame.index.moves.get(frame.rows[r.seq]["move"] or "") or {}
-            label = str(move.get("label") or "").replace("{level}", r.level)
-            then = words.sentence(f"Then: {label}") if label else ""
-            yield _of(frame, "failed", words.first_up(r.verdict), r, "dev", then)
+            yield _of(frame, "failed", words.first_up(r.verdict), r, "dev", _then(frame, r))
+
+
+def _then(frame: Frame, r: Reading) -> str:
+    """What followed a fail: the way that the procedure itself lays down for it, and why it was taken."""
+    row = frame.rows[r.seq]
+    move = frame.index.moves.get(row["move"] or "") or {}
+    label = str(move.get("label") or "").replace("{level}", r.level)
+    if not label:
+        return ""
+    met = summary.met(frame, r)
+    says = f"Then, as the procedure lays down: {label[:1].lower()}{label[1:]}" if met else f"Then: {label}"
+    reason = f" {r.by_name} {r.time[:5]}: {words.quoted(row['reason'])}" if row["reason"] else ""
+    return words.sentence(says) + reason
 
 
 def trip(frame: Frame, lists: Lists) -> Iterator[Attention]:

@@ -8,7 +8,10 @@ disagrees with stands in `chain.disagree` and leads the attention list.
 
 from __future__ import annotations
 
+import functools
+import hashlib
 from collections.abc import Iterable
+from pathlib import Path
 from typing import Literal
 
 from fieldkit.record import attention, basis, course, isolation, lanes, readings, summary, words
@@ -25,6 +28,15 @@ VERIFY = (
     "of events, every verdict again from the sheet and the events inside, and the text of these pages.",
     "Any PDF reader that checks signatures shows the seal and the countersignature once that certificate is trusted.",
 )
+
+
+@functools.cache
+def code() -> str:
+    """SHA-256 over what decides how a run becomes a record: the modules of the record, of the run and of values."""
+    digest, root = hashlib.sha256(), Path(__file__).parents[1]
+    for path in [*sorted((root / "record").glob("*.py")), *sorted((root / "run").glob("*.py")), root / "values.py"]:
+        digest.update(path.name.encode() + b"\0" + path.read_bytes())
+    return digest.hexdigest()
 
 
 def build(sheet: Sheet, events: Iterable[Event], context: Context) -> Record:

@@ -8,7 +8,7 @@ from __future__ import annotations
 from typing import Any
 
 from fieldkit.record import words
-from fieldkit.record.frame import Frame
+from fieldkit.record.frame import Frame, titled
 from fieldkit.record.lines import Correction, Hold, LogLine, Note, Picture, Wait
 
 Plain = dict[str, Any]
@@ -29,7 +29,7 @@ def waits(frame: Frame) -> tuple[Wait, ...]:
                 seq=event["seq"],
                 time=frame.time(event),
                 number=row["number"],
-                title=row["title"],
+                title=titled(row["title"], row["level"]),
                 least=least,
                 counted=counted,
                 greatest=elapsed.get("greatest", ""),
@@ -83,7 +83,10 @@ def cautions(frame: Frame) -> tuple[Note, ...]:
         heard = words.listed([frame.name(n) for n in e["body"]["heard"]])
         if step is not None and step["control"]["control"] == "caution":
             control = step["control"]
-            found.append(frame.note(e, f"{control['signal']}: {control['hazard']} Read to {heard or 'nobody'}."))
+            title = frame.row(e)["title"]
+            hazard = control["hazard"].removesuffix(".")
+            hazard = "" if hazard == title.removesuffix(".") else f": {hazard}"
+            found.append(frame.note(e, f"{control['signal']}{hazard}, read to {heard or 'nobody'}."))
     return tuple(found)
 
 
@@ -210,7 +213,7 @@ def pictures(frame: Frame) -> tuple[Picture, ...]:
                 by_name=frame.name(e["by"]),
                 number=row["number"],
                 title=row["title"] or of,
-                note=body["note"] or of,
+                note="" if body["note"] == row["title"] else body["note"],
                 sha256=body["sha256"],
                 width=body["width"],
                 height=body["height"],
@@ -228,7 +231,7 @@ def log(frame: Frame) -> tuple[LogLine, ...]:
             by_name=frame.name(e["by"]),
             kind=e["kind"],
             number=frame.row(e)["number"],
-            title=frame.row(e)["title"],
+            title=titled(frame.row(e)["title"], frame.row(e)["level"]),
             says=_line(frame, e),
             sha256=e["sha256"],
         )
@@ -250,7 +253,8 @@ def _line(frame: Frame, e: Plain) -> str:
             return "Done."
         case "read" | "worked-out":
             old = "".join(f"(was {words.minus(o['text'])}) " for o in row["old"])
-            return f"{old}{words.minus(row['text'])} {frame.unit(row['unit'])}, {row['verdict']}".strip()
+            value = f"{words.minus(row['text'])} {frame.unit(row['unit'])}".strip()
+            return f"{old}{value}, {row['verdict']}"
         case "proved":
             points = words.count(len(body["points"]), "point")
             return f"{words.first_up(row['verdict'] or 'not judged')}: tester before, {points}, tester after."
@@ -307,6 +311,8 @@ def _went(frame: Frame, e: Plain) -> str:
     body = e["body"]
     move = frame.index.moves.get(body["move"])
     manner = move["manner"] if move else ""
-    what = {"again": "Taken again", "deviation": "Accepted as a deviation", "stop": "Stopped"}.get(manner, "Went on")
+    label = str(move["label"] or "").replace("{level}", frame.row(e)["level"]) if move else ""
+    told = {"again": "Taken again", "deviation": "Accepted as a deviation", "stop": "Stopped"}
+    what = told.get(manner, label or "Went on")
     by = f" under {frame.name(body['authority'])}" if body["authority"] else ""
     return words.sentence(f"{what}{by}: {body['reason']}" if body["reason"] else f"{what}{by}")

@@ -103,6 +103,11 @@ class Frame:
         )
 
 
+def titled(title: str, level: str) -> str:
+    """A step's title, with the rung that it was at where the title does not say it."""
+    return title if not level or level in title else f"{title}, {level}"
+
+
 def frame(sheet: Sheet, happened: Iterable[run_events.Event], context: Context) -> Frame:
     """The run laid out. Raises ValueError where there is no event, or the first one starts no run."""
     events = tuple(run_events.plain(e) for e in happened)

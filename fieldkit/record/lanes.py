@@ -96,12 +96,13 @@ def _mark(source: str, spans: list[Span], at: int, seq: int) -> list[Span]:
     return out
 
 
-def lane_of(frame: Frame, step: str, seq: int) -> int:
-    """Which lane a thing belongs to: by its meter, else by the sources it names, else by what changed last."""
+def lane_of(frame: Frame, step: str, seq: int, title: str = "") -> int:
+    """Which lane a thing belongs to: that of the title, else by its meter, the sources it names, what changed last."""
     order = [s.name for s in frame.sheet.sources if s.isolable]
-    for source in (*_named(frame.index.steps.get(step)), *_changed(frame, seq)):
-        if source in order:
-            return order.index(source)
+    titled = [s.name for s in frame.sheet.sources if title and s.title == title]
+    for name in (*titled, *_named(frame.index.steps.get(step)), *_changed(frame, seq)):
+        if name in order:
+            return order.index(name)
     return 0
 
 

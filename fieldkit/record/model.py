@@ -85,7 +85,9 @@ class Counts(Piece):
     deviations: int
     #: failed, and taken again
     retaken: int
-    #: failed, and neither
+    #: failed, and the procedure's own way for it was taken
+    met: int = 0
+    #: failed, and none of these
     failed: int
     not_judged: int
     events: int
@@ -201,8 +203,11 @@ def digest(data: bytes) -> str:
     return hashlib.sha256(data).hexdigest()
 
 
-def from_bytes(data: bytes) -> Record:
-    """The record in `data`. Raises Refusal unknown-version or damaged-record, naming what is wrong."""
+def from_bytes(data: bytes, lenient: bool = False) -> Record:
+    """The record in `data`. Raises Refusal unknown-version or damaged-record, naming what is wrong.
+
+    Lenient: a key that this fieldkit does not know, of a later one, is passed over.
+    """
     try:
         raw: Any = json.loads(data)
     except (ValueError, RecursionError) as exc:
@@ -211,7 +216,7 @@ def from_bytes(data: bytes) -> Record:
     if found != VERSION:
         raise Refusal("unknown-version", f"Record version {found!r} is not known here ({VERSION} is). Update fieldkit.")
     try:
-        return Record.model_validate(raw)
+        return Record.model_validate(raw, extra="ignore" if lenient else None)
     except ValidationError as exc:
         first = exc.errors()[0]
         where = ".".join(str(p) for p in first["loc"])

@@ -10,7 +10,7 @@ from typing import Any
 
 from fieldkit import values
 from fieldkit.record import words
-from fieldkit.record.frame import Frame
+from fieldkit.record.frame import Frame, titled
 from fieldkit.record.lines import Deviation, FormulaLine, Limits, OldValue, Pointer, Reading, Retake
 from fieldkit.run import judge, names
 
@@ -113,11 +113,6 @@ def _proof(frame: Frame, event: Plain, row: Plain) -> list[Reading]:
     return found
 
 
-def titled(title: str, level: str) -> str:
-    """A step's title, with the rung that it was at where the title does not say it."""
-    return title if not level or level in title else f"{title}, {level}"
-
-
 def _judged(row: Plain, symbol: str, unit: str) -> Plain:
     margin, u = row.get("margin"), row.get("u")
     return {
@@ -160,7 +155,10 @@ def _limits(row: Plain | None, unit: str) -> Limits | None:
     if row is None or (row["low"] is None and row["high"] is None):
         return None
     low, high = row["low"], row["high"]
-    said = f"{low} to {high}" if low and high else f"at least {low}" if low else f"at most {high}"
+    if low and high:
+        said = f"exactly {low}" if low == high else f"{low} to {high}"
+    else:
+        said = f"at least {low}" if low else f"at most {high}"
     return Limits(**{k: row[k] for k in _LIMIT_KEYS}, says=words.minus(f"{said} {unit}".strip()))
 
 
@@ -250,7 +248,7 @@ def retakes(frame: Frame) -> tuple[Retake, ...]:
                 seq=event["seq"],
                 time=frame.time(event),
                 number=row["number"],
-                title=row["title"],
+                title=titled(row["title"], row["level"]),
                 reason=event["body"]["reason"],
                 by_name=frame.name(event["by"]),
             )

@@ -22,10 +22,17 @@ def counts(frame: Frame, readings: tuple[Reading, ...]) -> Counts:
         conditional=sum(r.verdict == "conditional pass" for r in taken),
         deviations=sum(r.deviation is not None for r in failed),
         retaken=sum(r.retaken and r.deviation is None for r in failed),
-        failed=sum(not r.retaken and r.deviation is None for r in failed),
+        met=sum(met(frame, r) for r in failed),
+        failed=sum(not r.retaken and r.deviation is None and not met(frame, r) for r in failed),
         not_judged=sum(r.verdict == "not judged" for r in taken),
         events=len(frame.events),
     )
+
+
+def met(frame: Frame, r: Reading) -> bool:
+    """Whether a fail led to the way that the procedure itself lays down for it: a fall-back, another arm."""
+    move = frame.index.moves.get(frame.rows[r.seq]["move"] or "")
+    return bool(move and move["on"] == "fail" and move["manner"] == "plain") and r.deviation is None
 
 
 def steps_say(head: Head, n: Counts, stop: str) -> str:
@@ -60,6 +67,7 @@ def readings_say(n: Counts) -> str:
     for many, one, more in (
         (n.retaken, "failed and was taken again", "failed and were taken again"),
         (n.deviations, "failed and was accepted as a deviation", "failed and were accepted as deviations"),
+        (n.met, "failed and was met as the procedure lays down", "failed and were met as the procedure lays down"),
         (n.failed, "failed", "failed"),
     ):
         if many:

@@ -17,9 +17,10 @@ from fieldkit.operations.review import Line
 from fieldkit.operations.runs import KeptLine
 from fieldkit.record import words
 from fieldkit.record.attention import scale
+from fieldkit.record.frame import titled
 from fieldkit.record.lines import Reading
 from fieldkit.record.model import Attention, Record
-from fieldkit.record.readings import by_margin, titled
+from fieldkit.record.readings import by_margin
 
 #: as many things that deserve attention stand in a list
 FEW = 3
@@ -169,7 +170,10 @@ def _point(item: Attention) -> Point:
 
 
 def _row(reading: Reading) -> Row:
-    title = ", ".join(p for p in (titled(reading.title, reading.level), reading.part) if p)
+    named = titled(reading.title, reading.level)
+    if reading.level:
+        named = named.replace(reading.level, reading.level.replace(" ", "\N{NO-BREAK SPACE}"))
+    title = ", ".join(p for p in (named, reading.part) if p)
     if reading.margin_u is not None:
         margin = words.minus(reading.margin_u)
     else:

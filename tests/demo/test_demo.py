@@ -13,6 +13,7 @@ import pytest
 
 from fieldkit.demo import build, registers
 from fieldkit.operations import review, runs
+from fieldkit.operations.dossier import dossier
 from fieldkit.pdf.verify import verify
 
 NOW = dt.datetime.now(dt.UTC)
@@ -55,15 +56,37 @@ def test_the_bring_up_fell_back_once_for_gas_and_ended_locked(made):
     climbed = made[3]
     failed = [row for row in climbed.state["log"] if row["outcome"] == "fail"]
     assert [row["step"] for row in failed] == ["climb_ion"]
-    levels = [row["level"] for row in climbed.state["log"] if row["step"] == "climb_ion"]
+    levels = [row["level"] for row in climbed.state["log"] if (row["kind"], row["step"]) == ("read", "climb_ion")]
     assert levels == [f"{kv} kV" for kv in (18, 20, 22, 24, 26, 24, 26, 28, 30, 32)]
     assert {lock["point"] for lock in climbed.state["locks"]} == {"Q1", "S4"}
 
 
+def test_the_bring_ups_record_says_what_a_supervisor_asks(made):
+    r = dossier(made[3].run).record
+    ends = "Of 87 readings 83 pass, 3 are not judged and 1 failed and was met as the procedure lays down."
+    assert r.summary.endswith(ends)
+    fail, rf, q1, wait = r.attention
+    assert (fail.title, fail.value, fail.unit) == ("Ion-pump current, 26 kV", "5.8", "µA")
+    assert fail.by.startswith("Then, as the procedure lays down: back one level. J. Vell ") and "gas" in fail.by
+    lanes = [lane.source for lane in r.lanes]
+    assert [(a.title, lanes[a.lane]) for a in (rf, q1, wait)] == [
+        ("Lock 42", "rf_drive"),
+        ("Lock 44", "beam_supply"),
+        ("Heater at rated volts, without a break", "heater"),
+    ]
+    assert [n.says for n in r.cautions[:1]] == ["DANGER, read to J. Vell and P. Arkle."]
+    lines = {line.seq: (line.title, line.says) for line in r.log}
+    seq = fail.seq
+    assert lines[seq] == ("Ion-pump current, 26 kV", "5.8 µA, fail")
+    assert lines[seq + 1] == ("Ion-pump current, 26 kV", "Back one level: A burst of gas; the pump recovers.")
+    assert r.waits[1].title == "Beam voltage, one level at a time: settle, 18 kV"
+    assert next(x for x in r.readings if x.title == "Earthing sticks on their rests").limits.says == "exactly 3"
+
+
 def test_the_countersigned_record_holds_with_its_authority_and_not_without(made):
     demo, _, pdf, _, _ = made
-    assert verify(pdf, demo.held.authority_pem).holds
-    assert not verify(pdf, None).holds
+    assert verify(pdf, demo.held.authority_pem, dt.datetime.now(dt.UTC)).holds
+    assert not verify(pdf, None, dt.datetime.now(dt.UTC)).holds
 
 
 def test_dates_of_the_registers_move_with_the_day_and_one_meter_stays_overdue():

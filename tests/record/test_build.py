@@ -15,8 +15,9 @@ import pytest
 from fieldkit.errors import Refusal
 from fieldkit.record import build, lanes, model, sections
 from fieldkit.record.context import Check, Context, LastRun
+from fieldkit.record.frame import titled
 from fieldkit.record.model import Record
-from fieldkit.record.readings import by_margin, titled
+from fieldkit.record.readings import by_margin
 
 HERE = Path(__file__).parent
 
