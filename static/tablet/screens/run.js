@@ -113,7 +113,7 @@ export async function runScreen(app, args) {
     const now = current(ctx.state.sources), waits = (ctx.progress.waits ?? []).filter((/** @type {any} */ w) => Number(w.left) > 0 && ["on", "standby"].includes(now[w.source])).map((/** @type {any} */ w) => w.source);
     const after = ctx.step && !ctx.state.pending ? coming(sheet, [ctx.step.id, ...(ctx.progress.path ?? []).filter((/** @type {string} */ p) => p !== ctx.step.id)].slice(0, 2), now)[0]?.after : now;
     const changes = Object.entries(after ?? {}).some(([k, v]) => now[k] !== v);
-    return rails(sheet, now, after ?? now, { planned: true, at: changes ? 88 : 100, standing: true, warming: waits });
+    return rails(sheet, now, after ?? now, { planned: true, at: changes ? 88 : 100, standing: true, warming: waits.filter((/** @type {string} */ s) => s === "heater") });
   }
 
   /** Head and rails after a record that leaves its page open. */
