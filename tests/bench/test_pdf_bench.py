@@ -1,6 +1,6 @@
 """Time to a sealed PDF against bare typesetting of the same HTML, and the rest of a record's way, printed as ratios.
 
-pytest tests/bench/test_pdf_bench.py -s
+pytest tests/bench/test_pdf_bench.py
 """
 
 from __future__ import annotations
@@ -12,13 +12,14 @@ import pdf_run
 import pdf_station
 import pytest
 import weasyprint
+from bench import Ratios
 
 from fieldkit import files
 from fieldkit.pdf import countersign, render, seal, typeset, verify
 from fieldkit.record import model
 
 pytestmark = pytest.mark.bench
-TIMES = 5
+TIMES = 2
 
 
 def _best(work) -> float:
@@ -39,7 +40,7 @@ def _bare(html: str) -> bytes:
     return weasyprint.HTML(string=html).write_pdf(stylesheets=[weasyprint.CSS(string=faces + "@page{size:A4}" + css)])
 
 
-def test_time_to_a_sealed_pdf_against_bare_typesetting(tmp_path, capsys):
+def test_time_to_a_sealed_pdf_against_bare_typesetting(tmp_path, show):
     station = pdf_station.make(tmp_path)
     run = pdf_run.run(station)
     record = pdf_records.record(3)
@@ -57,16 +58,19 @@ def test_time_to_a_sealed_pdf_against_bare_typesetting(tmp_path, capsys):
     raw = station.sign("p.ardin", prepared.to_sign)
     done = countersign.finish(prepared, raw)
     rows = [
-        ("bare typesetting, untagged", bare),
         ("tagged PDF/A pages", pages),
         ("sealed PDF", sealed),
         ("prepare a countersignature", _best(lambda: countersign.prepare(made, person, ca, pdf_station.NOW))),
         ("finish a countersignature", _best(lambda: countersign.finish(prepared, raw))),
         ("verify", _best(lambda: verify.verify(done, station.pem, pdf_station.NOW))),
     ]
-    with capsys.disabled():
-        print()
-        for name, seconds in rows:
-            print(f"{name:28} {seconds * 1000:8.1f} ms  {seconds / bare:6.2f} x bare")
+    show(
+        Ratios(
+            "A record's way to paper and back, in processor time",
+            "bare typesetting of the same HTML, untagged",
+            bare,
+            rows,
+        )
+    )
     assert verify.verify(done, station.pem, pdf_station.NOW).holds
     assert sealed < 2.5 * bare, "a sealed PDF took 1.2 times bare typesetting when this was written"
