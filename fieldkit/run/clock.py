@@ -17,6 +17,8 @@ from typing import Any
 PAUSE_MS = 120_000
 #: The two clocks may part by this much before it counts as a changed clock. Milliseconds.
 SLACK_MS = 2_000
+#: What a gap that nobody can tell (another boot, the wall clock set back) counts for greatest times: at least a day.
+UNTOLD_MS = 86_400_000
 
 _WALL = re.compile(r"^(\d{4})-(\d\d)-(\d\d)T(\d\d):(\d\d):(\d\d)(?:\.(\d{1,9}))?(Z|[+-]\d\d:\d\d)$", re.ASCII)
 _MONO = re.compile(r"^(\d{1,13})(?:\.\d+)?$", re.ASCII)
@@ -110,7 +112,7 @@ def passed(clock: dict[str, Any], at: dict[str, Any]) -> dict[str, Any]:
         }
     return {
         "least": 0,
-        "greatest": max(d_wall, mono_b or 0),
+        "greatest": max(d_wall if d_wall >= 0 else UNTOLD_MS, mono_b or 0),
         "out": d_wall if d_wall >= 0 else None,
         "boot": True,
         "moved": d_wall < 0,

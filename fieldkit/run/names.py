@@ -25,6 +25,8 @@ from fieldkit.values import Fault
 DEAD = ("proved", "earthed")
 #: states of a source that is not isolated and not off
 LIVE = ("on", "standby", "cut-off", "unknown")
+#: sources that follow another and are never locked, as registers name them
+FOLLOWS = {"stored_charge": "beam_supply", "x_rays": "beam_supply", "heat": "heater"}
 
 
 @dataclass
@@ -141,7 +143,7 @@ def scope(ctx: Context, state: dict[str, Any], at: dict[str, Any] | None = None)
             if found is not None:
                 names[name] = found
     for name, source in state["sources"].items():
-        names[f"state:{name}"] = source["state"]
+        names[f"state:{name}"] = stands(ctx, state, name)
         names[f"age:{name}"] = _age(least, source["least"])
         names[f"oldest:{name}"] = _age(greatest, source["greatest"])
     for name, done in state["done"].items():
@@ -225,26 +227,42 @@ def safe(ctx: Context, state: dict[str, Any], place: str) -> bool:
     """Every isolable source that reaches the place is proved dead, and earthed where this sheet earths it.
 
     The cabinet's register says what reaches a place; an unmapped place is reached by all. A source that reaches it
-    and that the sheet does not know makes it unsafe.
+    and that the sheet does not know makes it unsafe. Of what follows another source stored charge and X-rays are
+    asked, where the sheet knows the beam supply; heat is not: a hand thermometer tells.
     """
     places = state["started"]["places"] if state["started"] else {}
     reaching = places.get(place)
     if reaching is None:
-        reaching = [name for name, source in ctx.sources.items() if source["isolable"]]
-    for name in reaching:
-        source = ctx.sources.get(name)
-        if source is not None and not source["isolable"]:
-            continue
-        held = state["sources"].get(name)
-        if source is None and name in FOLLOWING:
-            continue
-        if held is None or held["state"] not in (("earthed",) if name in ctx.earthed else DEAD):
-            return False
-    return True
+        known = [name for name, source in ctx.sources.items() if source["isolable"]]
+        reaching = [*known, *(name for names in places.values() for name in names)]
+    return all(_harmless(ctx, state, name) for name in reaching)
 
 
-#: sources that follow others and are never locked, as registers name them
-FOLLOWING = ("stored_charge", "x_rays", "heat")
+def _harmless(ctx: Context, state: dict[str, Any], name: str) -> bool:
+    """The source cannot hurt hands that it reaches."""
+    followed = FOLLOWS.get(name)
+    if followed is not None and (name == "heat" or followed not in ctx.sources):
+        return True
+    if name == "x_rays":
+        return stands(ctx, state, name) == "off"
+    asked = followed or name
+    held = state["sources"].get(asked)
+    return held is not None and held["state"] in (("earthed",) if asked in ctx.earthed else DEAD)
+
+
+def stands(ctx: Context, state: dict[str, Any], name: str) -> str:
+    """The state of a source; of what follows another, as far as that one tells it.
+
+    X-rays are on while the beam supply is; charge is stored from then until the beam supply is proved dead.
+    """
+    if name not in FOLLOWS or ctx.sources.get(name, {}).get("isolable"):
+        return str(state["sources"][name]["state"])
+    beam = state["sources"].get("beam_supply", {}).get("state", "unknown")
+    if name == "heat" or beam == "on":
+        return "unknown" if name == "heat" else "on"
+    if name == "x_rays":
+        return "unknown" if beam in LIVE else "off"
+    return "off" if beam in DEAD else "unknown"
 
 
 def value(ctx: Context, where: Scope, tree: dict[str, Any]) -> Any:

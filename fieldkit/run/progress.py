@@ -48,7 +48,7 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) 
         "level": rows.level_text(ctx, where, step) if step and step["level"] else "",
         "judgeable": _judgeable(ctx, where, step, meter, limits, now),
         "waits": ahead.waits(ctx, where, state, path),
-        "live": [name for name, source in state["sources"].items() if source["state"] in LIVE],
+        "live": [name for name in state["sources"] if names.stands(ctx, state, name) in LIVE],
         "next_change": ahead.next_change(state, ctx, path),
         "may": may(state, not reasons, ways),
         "path": [step_id for step_id, _ in path[1:]],

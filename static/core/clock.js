@@ -10,6 +10,8 @@
 
 export const PAUSE_MS = 120000;
 export const SLACK_MS = 2000;
+/** What a gap that nobody can tell counts for greatest times: at least a day. */
+const UNTOLD_MS = 86400000;
 
 const WALL = /^(\d{4})-(\d\d)-(\d\d)T(\d\d):(\d\d):(\d\d)(?:\.(\d{1,9}))?(Z|[+-]\d\d:\d\d)$/;
 const MONO = /^(\d{1,13})(?:\.\d+)?$/;
@@ -89,7 +91,7 @@ export function passed(clock, at) {
   }
   return {
     least: 0,
-    greatest: Math.max(d_wall, mono_b ?? 0),
+    greatest: Math.max(d_wall >= 0 ? d_wall : UNTOLD_MS, mono_b ?? 0),
     out: d_wall >= 0 ? d_wall : null,
     boot: true,
     moved: d_wall < 0,

@@ -18,7 +18,8 @@ export const DEAD = Object.freeze(["proved", "earthed"]);
 /** States of a source that is not isolated and not off. */
 export const LIVE = Object.freeze(["on", "standby", "cut-off", "unknown"]);
 /** Sources that follow others and are never locked, as registers name them. */
-export const FOLLOWING = Object.freeze(["stored_charge", "x_rays", "heat"]);
+/** @type {Readonly<Record<string, string>>} */
+export const FOLLOWS = Object.freeze({ stored_charge: "beam_supply", x_rays: "beam_supply", heat: "heater" });
 
 /** @type {WeakMap<object, Context>} */
 const KEPT = new WeakMap();
@@ -99,7 +100,7 @@ export function scope(ctx, state, at = null) {
     if (found !== null) names[name] = found;
   }
   for (const [name, source] of Object.entries(state.sources)) {
-    names[`state:${name}`] = source.state;
+    names[`state:${name}`] = stands(ctx, state, name);
     names[`age:${name}`] = age(least, source.least);
     names[`oldest:${name}`] = age(greatest, source.greatest);
   }
@@ -187,14 +188,31 @@ export function safe(ctx, state, place) {
   const places = state.started ? state.started.places : {};
   /** @type {string[]} */
   let reaching = Object.hasOwn(places, place) ? places[place] : null;
-  if (reaching === null) reaching = Object.keys(ctx.sources).filter((name) => ctx.sources[name].isolable);
-  for (const name of reaching) {
-    const source = ctx.sources[name];
-    if (source ? !source.isolable : FOLLOWING.includes(name)) continue;
-    const held = Object.hasOwn(state.sources, name) ? state.sources[name] : null;
-    if (held === null || !(ctx.earthed.has(name) ? ["earthed"] : DEAD).includes(held.state)) return false;
+  if (reaching === null) {
+    const known = Object.keys(ctx.sources).filter((name) => ctx.sources[name].isolable);
+    reaching = [...known, .../** @type {string[][]} */ (Object.values(places)).flat()];
   }
-  return true;
+  return reaching.every((name) => harmless(ctx, state, name));
+}
+
+/** The source cannot hurt hands that it reaches. @param {Context} ctx @param {State} state @param {string} name */
+function harmless(ctx, state, name) {
+  const followed = Object.hasOwn(FOLLOWS, name) ? FOLLOWS[name] : null;
+  if (followed !== null && (name === "heat" || !ctx.sources[followed])) return true;
+  if (name === "x_rays") return stands(ctx, state, name) === "off";
+  const asked_for = followed ?? name;
+  const held = Object.hasOwn(state.sources, asked_for) ? state.sources[asked_for] : null;
+  return held !== null && (ctx.earthed.has(asked_for) ? ["earthed"] : DEAD).includes(held.state);
+}
+
+/** The state of a source; of what follows another, as far as that one tells it: X-rays are on while the beam supply is,
+ * charge is stored from then until the beam supply is proved dead. @param {Context} ctx @param {State} state @param {string} name */
+export function stands(ctx, state, name) {
+  if (!Object.hasOwn(FOLLOWS, name) || ctx.sources[name]?.isolable) return state.sources[name].state;
+  const beam = Object.hasOwn(state.sources, "beam_supply") ? state.sources.beam_supply.state : "unknown";
+  if (name === "heat" || beam === "on") return name === "heat" ? "unknown" : "on";
+  if (name === "x_rays") return LIVE.includes(beam) ? "unknown" : "off";
+  return DEAD.includes(beam) ? "off" : "unknown";
 }
 
 /** The value of a tree: number, boolean, text, or a Fault. @param {Context} ctx @param {Scope} where @param {any} tree @returns {any} */

@@ -44,7 +44,7 @@ export function progress(sheet, state, now) {
     level: step && step.level ? rows.level_text(ctx, where, step) : "",
     judgeable: judgeable(ctx, where, step, meter, limits, now),
     waits: ahead.waits(ctx, where, state, path),
-    live: Object.keys(state.sources).filter((name) => names.LIVE.includes(state.sources[name].state)),
+    live: Object.keys(state.sources).filter((name) => names.LIVE.includes(names.stands(ctx, state, name))),
     next_change: ahead.next_change(state, ctx, path),
     may: may(state, reasons.length === 0, ways),
     path: path.slice(1).map(([step_id]) => step_id),

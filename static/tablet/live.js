@@ -7,11 +7,14 @@ import { current } from "./timeline.js";
 function liveWords(sheet, state, progress) {
   const now = current(state.sources);
   const waiting = new Set((progress?.waits ?? []).filter((/** @type {any} */ w) => Number(w.left) > 0).map((/** @type {any} */ w) => w.source));
-  const counts = (/** @type {any} */ s) => LIVE.includes(now[s.name]) || (now[s.name] === "unknown" && s.isolable !== false);
+  // What follows the beam supply: X-rays, and its charge until it is proved dead. Where it is locked, its own word says so.
+  const live = progress?.live ?? [];
+  const follows = (/** @type {any} */ s) => s.name !== "heat" && live.includes(s.name) && !SHUT.includes(now.beam_supply);
+  const counts = (/** @type {any} */ s) => (s.isolable === false ? follows(s) : LIVE.includes(now[s.name]) || now[s.name] === "unknown");
   return sheet.sources.filter(counts).map((/** @type {any} */ s) => {
     // A step that asks for the next level is not there yet.
     const level = progress?.level && progress.step?.control.control !== "confirm" && s.name === "beam_supply" && now[s.name] === "on" ? ` at ${progress.level}` : "";
-    const manner = now[s.name] === "unknown" ? " (not known)" : now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) && s.name === "heater" ? " (warming)" : "";
+    const manner = s.isolable === false ? (now.beam_supply === "on" ? "" : s.name === "stored_charge" ? " (not proved gone)" : " (not known)") : now[s.name] === "unknown" ? " (not known)" : now[s.name] === "standby" ? " (standby volts)" : now[s.name] === "cut-off" ? " (at cut-off)" : waiting.has(s.name) && s.name === "heater" ? " (warming)" : "";
     return `${sourceTitle(sheet, s.name)}${level}${manner}`;
   });
 }

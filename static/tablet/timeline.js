@@ -3,6 +3,8 @@
  * What a source is now is the fold's word (state.sources); the last row ends there.
  */
 
+/** Making safe never takes a lock off: "off" leaves a source that is shut so. */
+const SHUT = ["locked", "proved", "earthed"];
 /** Events that put *proved* back to *locked*. */
 const LOSES_PROOF = ["paused", "trip-recorded", "resumed"];
 
@@ -16,13 +18,14 @@ function after(sheet, event, states) {
   if (LOSES_PROOF.includes(kind)) return Object.fromEntries(Object.entries(states).map(([k, v]) => [k, v === "proved" ? "locked" : v]));
   if (kind === "safe-step-done") {
     const item = sheet.make_safe.find((/** @type {any} */ s) => s.id === body.item);
-    return item ? settle(states, item.sets) : states;
+    const live = item ? Object.entries(item.sets).filter(([source]) => !SHUT.includes(states[source])) : [];
+    return settle(states, Object.fromEntries(live));
   }
   const move = body?.move && sheet.moves.find((/** @type {any} */ m) => m.id === body.move);
   return move ? settle(states, move.effects?.sets ?? {}) : states;
 }
 
-/** Making safe never takes a lock off: "off" leaves a locked source locked. @param {Record<string, string>} states @param {Record<string, string>} sets */
+/** @param {Record<string, string>} states @param {Record<string, string>} sets */
 function settle(states, sets) {
   const next = { ...states };
   for (const [source, state] of Object.entries(sets)) next[source] = state;

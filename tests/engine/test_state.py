@@ -9,8 +9,18 @@ from typing import Any
 
 import run_driver as drive
 import run_walker as walking
+from run_twin import Twin
 
 from fieldkit.run import events, names, progress, state
+
+
+def followed() -> dict[str, Any]:
+    """The tiny sheet with its beam named as the registers name it, and what follows it."""
+    text = json.dumps(drive.tiny().model_dump(mode="json")).replace('"beam"', '"beam_supply"')
+    sheet: dict[str, Any] = json.loads(text.replace("state:beam", "state:beam_supply"))
+    for name in ("stored_charge", "x_rays", "heat"):
+        sheet["sources"].append({"name": name, "title": name, "short": name, "isolable": False})
+    return sheet
 
 
 def test_apply_leaves_the_run_before_it_as_it_was() -> None:
@@ -123,3 +133,54 @@ def test_make_safe_and_trip_are_open_wherever_a_run_can_be() -> None:
             {"do": "trip-recorded", "indicator": "I6", "done": "Beam off."},
         ):
             assert "events" in d.ask(**command), (d.state["phase"], command)
+
+
+def test_what_follows_the_beam_supply_is_told_by_it() -> None:
+    d = drive.Driver(followed())
+    d.do(**drive.tiny_start())
+    ctx, state = d.run.ctx, d.state
+    started = {**state["started"], "places": {"box": ["stored_charge"], "frame": ["x_rays"], "pipe": ["heat"]}}
+    for beam, charge, x_rays, box, frame in (
+        ("on", "on", "on", False, False),
+        ("off", "unknown", "off", False, True),
+        ("locked", "unknown", "off", False, True),
+        ("proved", "off", "off", False, True),  # the sheet earths it: proved is not enough for hands
+        ("earthed", "off", "off", True, True),
+        ("unknown", "unknown", "unknown", False, False),
+    ):
+        there = {**state, "started": started, "sources": {**state["sources"]}}
+        there["sources"]["beam_supply"] = {**state["sources"]["beam_supply"], "state": beam}
+        assert [names.stands(ctx, there, n) for n in ("stored_charge", "x_rays", "heat")] == [charge, x_rays, "unknown"]
+        assert [names.safe(ctx, there, p) for p in ("box", "frame", "pipe")] == [box, frame, True]
+        assert names.scope(ctx, there).names["state:x_rays"] == x_rays
+
+
+def test_an_unmapped_place_is_reached_by_what_only_the_register_knows() -> None:
+    d = drive.started()
+    dead = {n: {**s, "state": "earthed"} for n, s in d.state["sources"].items()}
+    started = {**d.state["started"], "places": {"cavity": ["beam", "rf_return"]}}
+    assert not names.safe(d.run.ctx, {**d.state, "started": started, "sources": dead}, "nowhere")
+
+
+def test_both_engines_tell_what_follows_alike(twin: Twin) -> None:
+    sheet = followed()
+    trees = {f"the {p} is safe": {"name": f"safe:{p}"} for p in ("box", "frame", "pipe", "nowhere")}
+    trees |= {
+        f"{n} off": {"call": "eq", "of": [{"name": f"state:{n}"}, {"text": "off"}]} for n in ("stored_charge", "x_rays")
+    }
+    gate = [{"says": says, "tree": tree, "clock": None, "least": None} for says, tree in trees.items()]
+    sheet["moves"][0]["gate"], sheet["start"] = gate, {}
+    twin.keep("followed", sheet)
+    places = {"box": ["stored_charge"], "frame": ["x_rays"], "pipe": ["heat"]}
+    closed = {}
+    for beam in ("on", "off", "unknown"):
+        d = drive.Driver(sheet)
+        d.do(**drive.tiny_start() | {"places": places})
+        d.do("states-declared", states={"beam_supply": beam, "heater": "off", "coolant": "off"}, board_seen=True)
+        asked = [{"text": text} for text in d.texts] + [{"now": d.now}]
+        there = twin.ask(
+            play="followed", run=d.first["run"], chain=d.first["chain"], sha256=drive.SHEET_SHA, steps=asked
+        )
+        assert there["said"] == [d.progress]
+        closed[beam] = (len(d.progress["reasons"]), "x_rays" in d.progress["live"])
+    assert closed == {"on": (5, True), "off": (3, False), "unknown": (5, True)}
