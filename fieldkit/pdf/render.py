@@ -12,6 +12,7 @@ import hashlib
 import json
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import Literal
 
 import jinja2
@@ -21,7 +22,7 @@ from fieldkit import files
 from fieldkit.pdf import inside, plots, typeset
 from fieldkit.pdf.appearance import grouped, stamp
 from fieldkit.pdf.assemble import SEAL, SUPERVISOR, Attached, Field, assemble
-from fieldkit.record import model, sections
+from fieldkit.record import build, model, sections, words
 from fieldkit.record.lines import Signature
 from fieldkit.record.model import Record
 
@@ -31,7 +32,7 @@ PAPERS: dict[str, tuple[str, str]] = {"A4": ("210mm 297mm", "184mm"), "Letter": 
 #: Letter is 18 mm shorter, so its figure is smaller, in the same proportion
 #: where the signatures do not fit on the first page, the readings follow them instead of leaving a page half empty
 _SPILL = "section.readings.fresh{break-before:auto}section.readings.fresh h2{margin-top:7mm}"
-_SHORT = ".fig{width:52mm}.fig img{width:52mm;height:74.6mm}.fig.tall img{height:88.9mm}"
+_SHORT = ".fig{width:45mm}.fig img{width:45mm;height:64.6mm}.fig.tall img{height:76.9mm}"
 #: as many things that deserve attention stand on the first page
 FIRST = 7
 _JPEG = "image/jpeg"
@@ -61,11 +62,14 @@ class Rendered:
 
 @dataclass(frozen=True)
 class Block:
-    """One person's block on the first page: what they signed for, once a meaning, the last time they did."""
+    """One person's block on the first page: what they signed for, once a meaning, the last time they did.
+
+    The statements that speak for one step each stand in full in the table of signatures; here their steps are named.
+    """
 
     role: str
     name: str
-    statements: tuple[str, ...]
+    says: tuple[str, ...]
     time: str
     key: str
     holds: bool
@@ -82,25 +86,28 @@ def render(record: Record, attached: Files, paper: Paper = "A4") -> Rendered:
 
 
 def how(paper: str) -> dict[str, str]:
-    """What decides how the pages look: with the same, the same record gives the same drawing."""
-    return {"fieldkit": fieldkit.__version__, "look": look(), "paper": paper, "renderer": typeset.version()}
+    """What decides how the record is built and how its pages look: with the same, the same bytes and drawing."""
+    made = {"code": build.code(), "fieldkit": fieldkit.__version__, "look": look()}
+    return made | {"paper": paper, "renderer": typeset.version()}
 
 
 @functools.cache
 def look() -> str:
-    """SHA-256 over the templates, the style sheet and the fonts."""
+    """SHA-256 over the templates, the style sheet, the fonts, and the modules that draw."""
     digest = hashlib.sha256()
     static = files.folder("static")
     fonts = [static / "fonts" / name for _, _, _, name in typeset.FONTS]
     templates = sorted((files.folder("templates") / "record").glob("*.html"))
-    for path in [*templates, static / "css" / "print.css", *fonts]:
+    here = Path(__file__).parent
+    drawing = [*sorted((here.parent / "drawing").glob("*.py")), here / "plots.py", here / "render.py"]
+    for path in [*templates, static / "css" / "print.css", *fonts, *drawing]:
         digest.update(path.name.encode() + b"\0" + path.read_bytes())
     return digest.hexdigest()
 
 
 def html(record: Record) -> str:
     """The record's HTML, the same on every paper. Needs no typesetting library."""
-    blocks = _blocks(record.signatures)
+    blocks = _blocks(record)
     return (
         _templates()
         .get_template("record/record.html")
@@ -140,8 +147,8 @@ def _templates() -> jinja2.Environment:
 
 
 def _minus(text: str | None) -> str:
-    """A number with a real minus sign, as it is printed."""
-    return (text or "").replace("-", "−")
+    """Text as it is printed: a true minus sign before numbers, hyphens in words and names."""
+    return words.minus(text or "")
 
 
 def _stamp(text: str) -> str:
@@ -194,17 +201,28 @@ def _made(record: Record) -> dt.datetime:
     return dt.datetime.fromisoformat(record.head.ended_utc or record.head.started_utc)
 
 
-def _blocks(signatures: Sequence[Signature]) -> list[list[Block]]:
-    """People's blocks in rows of four; the last row has two places left, for the supervisor and the seal."""
+def _blocks(record: Record) -> list[list[Block]]:
+    """People's blocks in rows of four, the recorder first; the last row leaves two places, for supervisor and seal."""
     people: dict[str, list[Signature]] = {}
-    for one in signatures:
+    for one in sorted(record.signatures, key=lambda s: s.person != record.head.recorder):
         people.setdefault(one.person, []).append(one)
-    blocks = [_block(found) for found in people.values()]
+    numbers = {line.seq: line.number for line in record.log}
+    blocks = [_block(found, numbers) for found in people.values()]
     rows = [blocks[i : i + 4] for i in range(0, len(blocks), 4)]
     return rows if rows and len(rows[-1]) <= 2 else [*rows, []]
 
 
-def _block(found: list[Signature]) -> Block:
-    last = found[-1]
-    statements = tuple(dict.fromkeys(s.statement for s in found))
-    return Block(last.role, last.name, statements, last.time, last.kid, all(s.holds for s in found))
+#: meaning of a signature that speaks for one step -> what was done, before the steps' numbers
+_DID = {"released": "Released", "unlocked": "Took off the lock of", "allowed": "Allowed the deviation of"}
+
+
+def _block(found: list[Signature], numbers: Mapping[int, str]) -> Block:
+    last, says = found[-1], []
+    for meaning in dict.fromkeys(s.meaning for s in found):
+        mine = [s for s in found if s.meaning == meaning]
+        steps = list(dict.fromkeys(n for s in mine if (n := numbers.get(s.covers, ""))))
+        if meaning in _DID and steps:
+            says.append(f"{_DID[meaning]} {'step' if len(steps) == 1 else 'steps'} {words.listed(steps)}.")
+        else:
+            says += dict.fromkeys(f"“{s.statement}”" for s in mine)
+    return Block(last.role, last.name, tuple(says), last.time, last.kid, all(s.holds for s in found))

@@ -113,7 +113,7 @@ def test_many_signers_and_much_that_deserves_attention_still_leave_room_for_both
     many = tuple(base.attention[0].model_copy(update={"n": n + 1}) for n in range(14))
     made = run.render(record=pdf_records.record(signatures=signers, attention=many))
     said = text.squeeze(_said(made.pdf).body)
-    assert all(f"Person{n}“" in said for n in range(6)) and said.count("Deviation.Bodycurrent") == 14
+    assert all(f"Person{n}" in said for n in range(6)) and said.count("Deviation.Bodycurrent") == 14
     with pikepdf.open(io.BytesIO(made.pdf)) as pdf:
         assert {str(f.T) for f in pdf.Root.AcroForm.Fields} == {"Seal", "Supervisor"}
 
