@@ -217,6 +217,12 @@ def near(symbol: str) -> list[str]:
     return list(dict.fromkeys([*same, *named, *close]))[:4]
 
 
+def shown(symbol: str) -> str:
+    """The unit as people read it; what is no unit stays as it is."""
+    found = unit(symbol)
+    return found.shown if found else symbol
+
+
 def table() -> dict[str, dict[str, Any]]:
     """All units as plain JSON for the kit: {symbol: {factor, offset, dimension, shown}}."""
     return {

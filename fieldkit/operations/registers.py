@@ -270,7 +270,8 @@ def confirm_nameplate(actor: Actor, serial: str, values: Values) -> None:
                 row.state = "replaced"
             plate.state = "counts"
     if differ:
-        says = f"The two entries differ in {', '.join(differ)}. Neither stands: read the plate again and enter it anew."
+        named = ", ".join(differ).replace("_", " ")
+        says = f"The two entries differ in {named}. Neither stands: read the plate again and enter it anew."
         raise Refusal("entries-differ", says, names=differ)
 
 

@@ -123,7 +123,7 @@ def issue(enrolment: str) -> ResponseReturnValue:
         return _back()
     try:
         enrol.issue(actor(), here(), enrolment, form.passphrase.data or "", form.note.data or "")
-        flash("The certificate is issued. The tablet fetches it when it is online.", "done")
+        flash("The certificate is issued. A tablet fetches it when online, a desk browser when it looks again.", "done")
     except Refusal as bad:
         errors.tell(bad)
     return _back()

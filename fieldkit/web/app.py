@@ -14,7 +14,7 @@ from flask import Flask, current_app, g
 from flask_wtf.csrf import CSRFProtect
 from jinja2 import StrictUndefined
 
-from fieldkit import __version__, files
+from fieldkit import __version__, files, units
 from fieldkit.operations import moment, settings, station
 from fieldkit.operations.station import Station
 from fieldkit.store import db, fences, migrate
@@ -43,6 +43,7 @@ def create_app(
     app.testing = testing
     app.jinja_env.undefined = StrictUndefined
     app.jinja_env.filters["when"] = moment.shown
+    app.jinja_env.filters["unit"] = units.shown
     app.jinja_env.trim_blocks = app.jinja_env.lstrip_blocks = True
     app.config.update(
         SECRET_KEY=held.secret.decode(),
