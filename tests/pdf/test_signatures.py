@@ -124,9 +124,12 @@ def test_putting_together_gives_the_same_bytes_every_time(plain, station):
 @pytest.mark.skipif(
     not (shutil.which("pdfsig") and shutil.which("certutil")), reason="pdfsig or certutil is not installed"
 )
-def test_pdfsig_finds_both_signatures_valid_and_trusted(sealed, station, tmp_path):
+@pytest.mark.parametrize("what", ["a plain page", "a whole record"])
+def test_pdfsig_finds_both_signatures_valid_and_trusted(what, request, sealed, station, tmp_path):
+    whole = what == "a whole record"
+    done = request.getfixturevalue("countersigned") if whole else station.countersign(sealed)
     (tmp_path / "ca.pem").write_text(station.pem)
-    (tmp_path / "record.pdf").write_bytes(station.countersign(sealed))
+    (tmp_path / "record.pdf").write_bytes(done)
     store = f"sql:{tmp_path}"
     subprocess.run(["certutil", "-N", "-d", store, "--empty-password"], check=True)
     add = ["certutil", "-A", "-d", store, "-n", "ca", "-t", "CT,C,C", "-i", str(tmp_path / "ca.pem")]
