@@ -12,14 +12,12 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from axe_playwright_python.sync_playwright import Axe
 from look_play import Play
 from look_server import LookServer, scene
 
 pytestmark = pytest.mark.browser
 CHROMIUM = "/usr/bin/chromium"
 WIDTHS = {"phone": (390, 844), "portrait": (820, 1180), "landscape": (1280, 800)}
-RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"]
 Act = Callable[[Any], None]
 
 
@@ -170,28 +168,6 @@ def opened(page: Any, server: LookServer, name: str) -> None:
     page.wait_for_timeout(150)
 
 
-def looks(page: Any) -> Any:
-    """The page at three widths, light and dark."""
-    for width, (w, h) in WIDTHS.items():
-        page.set_viewport_size({"width": w, "height": h})
-        for theme in ("light", "dark"):
-            page.evaluate("(t) => { document.documentElement.dataset.theme = t; }", theme)
-            page.wait_for_timeout(60)
-            yield f"{width}, {theme}"
-
-
-@pytest.mark.parametrize("name", PAGES)
-def test_axe_finds_nothing_at_three_widths_light_and_dark(page: Any, server: LookServer, name: str) -> None:
-    opened(page, server, name)
-    page.evaluate(Axe().axe_script)
-    for look in looks(page):
-        # Light and dark differ in colours alone.
-        only = {"type": "rule", "values": ["color-contrast"]} if look.endswith("dark") else {"type": "tag", "values": RULES}
-        found = page.evaluate("(only) => axe.run(document, { runOnly: only, resultTypes: ['violations'] })", only)
-        told = [(v["id"], [n["html"][:160] for n in v["nodes"]][:3]) for v in found["violations"]]
-        assert told == [], (name, look)
-
-
 SIZES = """() => [...document.querySelectorAll("button, a, input, textarea, select")].filter((n) => n.checkVisibility() && !n.disabled && n.getClientRects().length).map((n) => {
   const box = n.getBoundingClientRect();
   return { what: n.outerHTML.slice(0, 120), high: Math.round(box.height), wide: Math.round(box.width), main: n.matches("[data-first], .key, .way, [data-hold], .makesafe") };
@@ -200,15 +176,14 @@ TOO_WIDE = """() => [...document.querySelectorAll("html, .strip, .page-body")].f
 
 
 @pytest.mark.parametrize("name", PAGES)
-def test_every_target_is_large_enough_and_nothing_is_wider_than_the_screen(page: Any, server: LookServer, name: str) -> None:
+def test_in_a_very_narrow_window_nothing_is_wider_than_the_screen(page: Any, server: LookServer, name: str) -> None:
+    """Axe, target sizes and the three widths of the studies are swept in test_axe.py."""
     opened(page, server, name)
-    for width, (w, h) in {**WIDTHS, "narrow": (320, 640)}.items():
-        page.set_viewport_size({"width": w, "height": h})
-        page.wait_for_timeout(80)
-        floor = 64 if width in ("portrait", "landscape") else 54
-        for one in page.evaluate(SIZES):
-            assert one["high"] >= (floor if one["main"] else 48) and one["wide"] >= 44, (name, width, one)
-        assert page.evaluate(TOO_WIDE) == [], (name, width)
+    page.set_viewport_size({"width": 320, "height": 640})
+    page.wait_for_timeout(80)
+    for one in page.evaluate(SIZES):
+        assert one["high"] >= (54 if one["main"] else 48) and one["wide"] >= 44, (name, one)
+    assert page.evaluate(TOO_WIDE) == [], name
 
 
 HIT = """() => {
