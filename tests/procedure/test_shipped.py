@@ -207,3 +207,45 @@ def test_the_same_bytes_give_the_same_sheet_and_it_reads_back(warm_up: Sheet, br
 def test_a_sheet_carries_the_library_formulas_that_it_uses(bring_up: Sheet) -> None:
     assert set(bring_up.formulas) == {"copper_resistance", "discharge_time", "discharge_voltage", "stored_energy"}
     assert all(f.reference for f in bring_up.formulas.values())
+
+
+@pytest.mark.parametrize("node", ["picture_compartment", "compartment_found", "covers_on"])
+def test_a_pause_with_hands_in_leads_out_and_to_a_fresh_proof_before_they_go_in_again(
+    bring_up: Sheet, node: str
+) -> None:
+    walk = paused(Walk(bring_up, HIGH | {"next": "look"}).to(node))
+    assert walk.state["hands"] == {"hv-compartment": ["J. Vell"]}
+    (way,) = [way for way in walk.look()["moves"] if way["open"] and way["around"]]
+    walk.do("went-on", move=way["move"])
+    walk.to("sticks_seen")
+    assert walk.state["hands"] == {}
+    again = len(walk.visited)
+    walk.to(node)
+    assert {"prove_trigger", "hands_release", "hands_in"} <= set(walk.visited[again:])
+    assert in_order(walk.to("@end"))
+
+
+def test_beam_goes_on_within_ten_minutes_of_every_reading_however_long_the_release_waits(bring_up: Sheet) -> None:
+    walk = Walk(bring_up, HIGH).to("release")
+    walk.seconds += 1800
+    walk.to("beam_on")
+    assert not walk.look()["open"]
+    (way,) = [way for way in walk.look()["moves"] if way["open"] and way["around"]]
+    assert way["to"] == "ready_list"
+
+
+def test_beam_off_asks_for_no_reading_first(bring_up: Sheet) -> None:
+    for move in bring_up.moves:
+        if move.effects.sets.get("beam_supply") == "off" and move.origin != "unlock_q1":
+            assert not move.gate and move.on == "done"
+    walk = Walk(bring_up, HIGH).to("stop_kv")
+    assert walk.state["sources"]["beam_supply"]["state"] == "off"
+
+
+def test_a_tube_that_does_not_stand_at_standby_is_not_warmed_up_from_standby(warm_up: Sheet) -> None:
+    walk = Walk(warm_up, WARM | {"history": "cold"}, present=("vell",))
+    walk.values["history"] = "standby"
+    walk.to("heater_standing")
+    assert not walk.look()["open"]
+    (way,) = [way for way in walk.look()["moves"] if way["open"] and way["around"]]
+    assert way["to"] == "history"

@@ -87,6 +87,8 @@ class Walk:
         self.begun = False
         self.do(**start_of(self.sheet, self.cabinet, self.tube, self.present))
         states = {s: d.state for s, d in self.sheet.start.items()}
+        if self.values.get("history") == "standby" and "standby" in self.sheet.start["heater"].accepts:
+            states["heater"] = "standby"
         self.do("states-declared", states=states, ages={s: "36000" for s in states}, board_seen=True)
 
     @property
