@@ -30,7 +30,11 @@ class Unknown(Exception):
 
 
 class Note(Exception):
-    """A check's answer is neither yes nor no: something to be said."""
+    """A check's answer is neither yes nor no: something to be said, one sentence each."""
+
+    def __init__(self, *sentences: str) -> None:
+        super().__init__(" ".join(sentences))
+        self.sentences = sentences
 
 
 @dataclass(frozen=True)

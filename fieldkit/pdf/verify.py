@@ -66,7 +66,7 @@ def _ask(check: Check, subject: Subject) -> Answer:
     except Unknown as exc:
         return answer("not checked", str(exc))
     except Note as exc:
-        return answer("note", str(exc))
+        return answer("note", *exc.sentences)
     except Exception as exc:
         # The file may be hostile: whatever it breaks here, the answer is no, and the other questions are asked.
         return answer("fails", f"This could not be examined: {type(exc).__name__}: {exc}")

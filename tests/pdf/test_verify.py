@@ -319,12 +319,78 @@ def test_under_other_templates_a_changed_name_and_a_changed_reading_are_named(ru
     assert _failing(report) == {"pages"} and "do not show “6.62”" in _says(report, "pages")
 
 
-def test_a_record_of_another_version_is_not_checked_rather_than_called_false(run, ask, monkeypatch):
+def test_a_record_of_another_version_holds_by_its_facts_and_its_other_words_are_noted(run, ask, monkeypatch):
     pdf = run.countersigned()
     monkeypatch.setattr("fieldkit.__version__", "99.0")
+    monkeypatch.setattr("fieldkit.record.build.code", lambda: "later")
     monkeypatch.setattr("fieldkit.record.build.VERIFY", ("other words",))
     report = ask(pdf)
-    assert report.answer("record").state == "not checked" and not report.holds
+    assert report.holds and report.answer("record").state == "note"
+    assert "this is another state of it (99.0)" in _says(report, "record") and "verify[0]" in _says(report, "record")
+
+
+def test_the_same_code_owes_the_same_bytes(run, ask, monkeypatch):
+    pdf = run.countersigned()
+    monkeypatch.setattr("fieldkit.record.build.VERIFY", ("other words",))
+    assert _failing(ask(pdf)) == {"record"}
+
+
+def _by_another(run: Run, change) -> bytes:
+    """A file whose record was changed, and which says that another fieldkit built it; sealed and countersigned."""
+
+    def forge(pdf: pikepdf.Pdf) -> None:
+        files = inside.attachments(pdf)
+        record, made = json.loads(files[inside.RECORD]), json.loads(files[inside.RENDERING])
+        change(record)
+        form = {"ensure_ascii": False, "sort_keys": True, "separators": (",", ":")}
+        _replace_file(pdf, inside.RECORD, json.dumps(record, **form).encode())
+        _replace_file(pdf, inside.RENDERING, json.dumps({**made, "code": "later", "fieldkit": "9"}).encode())
+
+    return run.countersigned(_rewritten(run.render().pdf, forge))
+
+
+def test_a_key_that_only_a_later_version_knows_is_passed_over_and_noted(run, ask):
+    def add(record):
+        record["weather"] = "fine"
+        record["readings"][0]["colour"] = "blue"
+        record["context"]["moon"] = "full"
+
+    report = ask(_by_another(run, add))
+    assert report.holds and report.answer("record").state == "note"
+    says = _says(report, "record")
+    assert "built by fieldkit 9" in says and "weather" in says and "colour" in says
+
+
+@pytest.mark.parametrize(
+    ("section", "place", "field", "value"),
+    [
+        ("readings", 0, "margin", "9.9"),
+        ("readings", 1, "verdict", "pass "),
+        ("log", 3, "at", "2026-07-31T12:00:00+01:00"),
+        ("locks", 0, "left_on", "no"),
+        ("givens", 0, "value", "6.31"),
+        ("signatures", 0, "person", "orme"),
+    ],
+)
+def test_claiming_another_version_excuses_no_changed_fact(run, station, section, place, field, value):
+    def change(record):
+        record[section][place][field] = value
+
+    answer = _one(_by_another(run, change), station, "record")
+    assert answer.state == "fails" and f"{section}[{place}].{field}" in " ".join(answer.says), answer.says
+
+
+def test_a_fact_left_out_or_a_reading_dropped_is_no_difference_of_words(run, station):
+    dropped = _one(_by_another(run, lambda record: record["readings"].pop()), station, "record")
+    assert dropped.state == "fails" and "readings has" in " ".join(dropped.says)
+    sentence = _one(_by_another(run, lambda record: record.update(summary="All is well.")), station, "record")
+    assert sentence.state == "note"
+    assert sentence.says[1].startswith('summary reads "All is well.", not "On 31 July 2026')
+
+
+def test_a_record_of_another_form_is_not_checked(run, station):
+    answer = _one(_by_another(run, lambda record: record.update(fieldkit="record/2")), station, "record")
+    assert answer.state == "not checked" and "record/2" in " ".join(answer.says)
 
 
 def test_a_file_that_acts_is_named(run, ask):

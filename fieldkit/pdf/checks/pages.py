@@ -22,7 +22,7 @@ from fieldkit.pdf.report import Unknown, Wrong
 from fieldkit.pdf.same import difference
 from fieldkit.pdf.subject import Subject
 from fieldkit.pdf.text import Said, squeeze
-from fieldkit.record import model
+from fieldkit.record import model, words
 from fieldkit.trust import certificates
 
 #: what a record's catalogue and name tree may hold: nothing that acts, plays or hides
@@ -67,7 +67,7 @@ _AWAY = 600
 def pages(subject: Subject) -> str:
     """What the pages show is what the record says."""
     try:
-        record = model.from_bytes(subject.file(inside.RECORD))
+        record = model.from_bytes(subject.file(inside.RECORD), lenient=True)
     except Refusal as exc:
         raise Unknown(exc.sentence) from exc
     html = render.html(record)
@@ -80,7 +80,7 @@ def pages(subject: Subject) -> str:
         else:
             wrong += _values(texts.said(subject.pdf), record)
             how = "made with other templates: the record's words and its readings in order were found on them"
-        if not wrong and made == _here(str(made.get("paper"))):
+        if not wrong and _alike(made, _here(str(made.get("paper")))):
             wrong += _drawing(subject, record, html, str(made["paper"]))
             how = "made again here, and drawn the same"
     except (pikepdf.PdfError, ValueError, KeyError, AttributeError, TypeError, IndexError) as exc:
@@ -88,6 +88,11 @@ def pages(subject: Subject) -> str:
     if wrong:
         raise Wrong(*wrong)
     return f"{len(subject.pdf.pages)} pages, {how}."
+
+
+def _alike(made: dict[str, Any], here: dict[str, str]) -> bool:
+    """Whether pages are made alike there and here; how the record came about is not asked: it is attached."""
+    return bool(here) and {**made, "code": ""} == {**here, "code": ""}
 
 
 def _here(paper: str) -> dict[str, str]:
@@ -192,8 +197,8 @@ def _values(said: Said, record: model.Record) -> list[str]:
 
 
 def _forms(word: str) -> set[str]:
-    """A word as it may be printed: with a hyphen, or with a minus sign."""
-    return {squeeze(word), squeeze(word.replace("-", "−"))}
+    """A word as it may be printed: with hyphens, with minus signs, or with those before numbers."""
+    return {squeeze(word), squeeze(word.replace("-", "−")), squeeze(words.minus(word))}
 
 
 def _drawing(subject: Subject, record: model.Record, html: str, paper: str) -> list[str]:

@@ -1,4 +1,7 @@
-"""Checks that do the work again: every verdict from the sheet and the events, and the record from both."""
+"""Checks that do the work again: every verdict from the sheet and the events, and the record from both.
+
+A record of another state of fieldkit is compared by its facts (otherwise.py) and never called false for its words.
+"""
 
 from __future__ import annotations
 
@@ -8,13 +11,11 @@ from typing import Any
 import fieldkit
 from fieldkit.errors import Refusal
 from fieldkit.pdf import inside
-from fieldkit.pdf.report import Unknown, Wrong
+from fieldkit.pdf.checks.otherwise import facts, parting, wording
+from fieldkit.pdf.report import Note, Unknown, Wrong
 from fieldkit.pdf.subject import Subject
 from fieldkit.record import build, model
 from fieldkit.run import state as run_state
-
-#: characters of a value that are shown where two records part
-LONGEST = 60
 
 
 def verdicts(subject: Subject) -> str:
@@ -39,23 +40,35 @@ def verdicts(subject: Subject) -> str:
 
 
 def record(subject: Subject) -> str:
-    """The record built again from the sheet and the events is the one attached, byte for byte."""
+    """The record built again is the one attached: byte for byte by this very code, else fact by fact."""
     attached = subject.file(inside.RECORD)
     try:
-        found = model.from_bytes(attached)
+        found = model.from_bytes(attached, lenient=True)
     except Refusal as exc:
+        if exc.code == "unknown-version":
+            raise Unknown(exc.sentence) from exc
         raise Wrong(exc.sentence) from exc
     again = model.to_bytes(build.build(subject.sheet, subject.events, found.context))
-    if again != attached:
-        made = made_with(subject).get("fieldkit", "")
-        if made != fieldkit.__version__:
-            says = f"The record was made by fieldkit {made or 'of unknown version'}; this is {fieldkit.__version__}."
-            raise Unknown(f"{says} Compare it with that version.")
-        raise Wrong(f"{inside.RECORD} is not what the sheet and the events give: {_where(attached, again)}.")
     untold = [c for c in found.context.checks if not c.holds]
     if found.context.alarm or untold:
         raise Wrong(*(f"The record itself says: {s}" for s in [found.context.alarm, *(c.says for c in untold)] if s))
-    return f"{len(attached)} bytes, the same."
+    if again == attached:
+        return f"{len(attached)} bytes, the same."
+    one, other = subject.record, json.loads(again)
+    made = made_with(subject)
+    if made.get("code") == build.code():
+        raise Wrong(f"{inside.RECORD} is not what the sheet and the events give: {parting(one, other) or 'its form'}.")
+    wrong = parting(facts(one), facts(other))
+    if wrong:
+        raise Wrong(f"{inside.RECORD} is not what the sheet and the events give: {wrong}.")
+    raise Note(_built_otherwise(found, str(made.get("fieldkit") or "")), *wording(one, other))
+
+
+def _built_otherwise(found: model.Record, version: str) -> str:
+    by = f"fieldkit {version}" if version else "an unnamed version of fieldkit"
+    same = f"its {len(found.readings)} values with their verdicts and its {len(found.log)} events came out the same"
+    here = f"this is another state of it ({fieldkit.__version__})"
+    return f"The record was built by {by} and {here}: {same}. What follows from them is worded otherwise."
 
 
 def real(subject: Subject) -> str:
@@ -80,29 +93,3 @@ def made_with(subject: Subject) -> dict[str, Any]:
 def _list(record: dict[str, Any], name: str) -> list[dict[str, Any]]:
     found = record.get(name)
     return [r for r in found if isinstance(r, dict)] if isinstance(found, list) else []
-
-
-def _where(one: bytes, other: bytes) -> str:
-    """Where two records part: the first path with different values."""
-    return _part(json.loads(one), json.loads(other), "") or "its form"
-
-
-def _part(a: Any, b: Any, path: str) -> str:
-    if isinstance(a, dict) and isinstance(b, dict):
-        for key in sorted({*a, *b}):
-            found = _part(a.get(key), b.get(key), f"{path}.{key}" if path else key)
-            if found:
-                return found
-        return ""
-    if isinstance(a, list) and isinstance(b, list):
-        for place, (x, y) in enumerate(zip(a, b, strict=False)):
-            found = _part(x, y, f"{path}[{place}]")
-            if found:
-                return found
-        return "" if len(a) == len(b) else f"{path} has {len(a)} entries, not {len(b)}"
-    return "" if a == b else f"{path} says {_short(a)}, not {_short(b)}"
-
-
-def _short(value: Any) -> str:
-    text = json.dumps(value, ensure_ascii=False)
-    return text if len(text) <= LONGEST else text[:LONGEST] + "…"
