@@ -185,6 +185,14 @@ def made_safe(frame: Frame, lists: Lists) -> Iterator[Attention]:
         )
 
 
+def people_in(frame: Frame, lists: Lists) -> Iterator[Attention]:
+    """Somebody was signed in at a place when the run ended: nobody has said that they came out."""
+    for place, people in frame.final["hands"].items() if frame.of("ended", "voided") else ():
+        if people:
+            says = f"{words.listed([frame.name(p) for p in people])} signed in at the {place}, and not counted out."
+            yield _item(frame, "people-in", "Not counted out", place, says, frame.events[-1]["seq"], tone="dev")
+
+
 def lock_on(frame: Frame, lists: Lists) -> Iterator[Attention]:
     """A lock or an earth that is still on at the end; while a run goes on that is as it should be."""
     if not frame.of("ended", "voided"):
@@ -368,6 +376,7 @@ RULES: tuple[Rule, ...] = (
     failed,
     stopped,
     made_safe,
+    people_in,
     lock_on,
     exception,
     trip,

@@ -123,6 +123,15 @@ def test_a_lock_and_an_earth_left_on_name_their_holder() -> None:
     assert the(made, "earth-on").title == "Stick E2"
 
 
+def test_who_was_not_counted_out_is_named() -> None:
+    pen = started().isolate().answer("people-counted", "in", place="deck", way="in", names=["vell"])
+    assert (
+        the(record(pen.end("stopped", "smoke")), "people-in").says
+        == "J. Vell signed in at the deck, and not counted out."
+    )
+    assert "people-in" not in codes(record(play.clean()))
+
+
 def test_another_persons_lock_taken_off_under_the_three_checks() -> None:
     since = "2026-07-30T09:00:00+01:00"
     board = [{"point": "B2-Q1", "sources": ["beam_supply"], "lock": "17", "tag": "", "holder": "p9",
@@ -211,7 +220,7 @@ def test_a_failed_proof_that_went_on_no_further() -> None:
 def test_every_rule_is_spoken_of_here(rule: object) -> None:
     """A rule without a test of its own would go unnoticed."""
     codes_that_differ = {"made_safe": "make-safe", "lock_on": "lock-on", "exception": "lock-exception",
-                         "undecided": "not-judged"}  # fmt: skip
+                         "undecided": "not-judged", "people_in": "people-in"}  # fmt: skip
     name = rule.__name__  # type: ignore[attr-defined]
     code = codes_that_differ.get(name, name)
     assert f'"{code}"' in Path(__file__).read_text().partition("def test_every_rule")[0]
