@@ -27,6 +27,11 @@ def _says(form: forms.FlaskForm) -> str:
 @blueprint.get("")
 @ADMIN
 def page() -> ResponseReturnValue:
+    return _shown(None)
+
+
+def _shown(new: forms.NewPerson | None) -> str:
+    """The page; a new person who was refused stands in the form again, without the password."""
     everyone = people.everyone()
     names = {p.id: p.name for p in everyone}
     return render_template(
@@ -39,7 +44,8 @@ def page() -> ResponseReturnValue:
         notices=notices.latest(20),
         kept=[k for k in runs.kept() if k.settled is None],
         procedures=procedures.released(),
-        new_person=forms.NewPerson(formdata=None),
+        new_person=new or forms.NewPerson(formdata=None),
+        adding=new is not None,
         issue=forms.Issue(formdata=None),
         reason=forms.Reason(formdata=None),
         role_titles=forms.ROLE_TITLES,
@@ -52,7 +58,7 @@ def add_person() -> ResponseReturnValue:
     form = forms.NewPerson()
     if not form.validate_on_submit():
         flash(_says(form), "refused")
-        return _back()
+        return _shown(form), 422
     try:
         people.add(
             actor(), form.login.data or "", form.name.data or "", tuple(form.roles.data or ()), form.password.data or ""
@@ -60,6 +66,7 @@ def add_person() -> ResponseReturnValue:
         flash(f"{form.name.data} can sign in now. On each tablet they enrol themselves.", "done")
     except Refusal as bad:
         errors.tell(bad)
+        return _shown(form), 422
     return _back()
 
 

@@ -5,6 +5,7 @@ Read only but for nameplates: a first entry with its photograph, a second by som
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import Any
 
 from flask import Blueprint, Response, flash, redirect, render_template, request, url_for
@@ -38,11 +39,16 @@ def page() -> ResponseReturnValue:
 @blueprint.get("/tubes/<serial>")
 @signed_in
 def tube(serial: str) -> ResponseReturnValue:
+    return _shown(serial, {})
+
+
+def _shown(serial: str, typed: Mapping[str, str]) -> str:
+    """A tube's page; what was typed and refused stands in its fields again."""
     found = registers.tube(serial)
     names = {p.id: p.name for p in people.everyone()}
     second = found.waiting is not None and found.waiting.entered_by != actor().id
     return render_template(
-        "registers/tube.html", tube=found, names=names, second=second, form=forms.SignOut(), typed={}
+        "registers/tube.html", tube=found, names=names, second=second, form=forms.SignOut(), typed=typed
     )
 
 
@@ -69,6 +75,7 @@ def first(serial: str) -> ResponseReturnValue:
         flash("Entered. It counts when somebody else has read the plate and entered the same.", "done")
     except Refusal as bad:
         errors.tell(bad)
+        return _shown(serial, request.form), 422
     return redirect(url_for("registers.tube", serial=serial), 303)
 
 
@@ -81,6 +88,8 @@ def second(serial: str) -> ResponseReturnValue:
         flash("Both entries agree: the nameplate counts from now on.", "done")
     except Refusal as bad:
         errors.tell(bad)
+        if bad.code != "entries-differ":
+            return _shown(serial, request.form), 422
     return redirect(url_for("registers.tube", serial=serial), 303)
 
 
