@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from typing import Any
 
@@ -41,9 +42,28 @@ def lower(written: WorkOut, id_: str, scope: Scope) -> Piece:
         protects=written.protects,
     )
     ways = judged.ways(written, id_, scope, base.gate(written, scope, written.sets), base.effects(written))
-    text = written.text or f"{id_.replace('_', ' ')} = {' '.join(written.value.text.split())}"
+    text = written.text or _in_titles(" ".join(written.value.text.split()), scope)
     step = base.make_step(id_, "work_out", title_of(written, id_), control, written, text=text)
     return Piece(id_, [step], ways.exits, ways.moves, ways.counters)
+
+
+def _in_titles(formula: str, scope: Scope) -> str:
+    """The formula as people read it: every step and given by its title, functions and sources by their words."""
+
+    def said(found: re.Match[str]) -> str:
+        word = found[0]
+        if found.string.startswith("(", found.end()):
+            return word.replace("_", " ")
+        return _inside(scope.meanings.get(word) or (scope.steps[word][1] if word in scope.steps else word))
+
+    # the names of a call's arguments go: title and value say enough
+    plain = re.sub(r"\b[a-z][a-z0-9_]*=(?!=)", "", formula)
+    return re.sub(r"\b[a-z][a-z0-9_]*\b", said, plain)
+
+
+def _inside(title: str) -> str:
+    """A title inside a sentence; abbreviations keep their capitals."""
+    return title if title[:2].isupper() else title[:1].lower() + title[1:]
 
 
 def title_of(written: WorkOut, id_: str) -> str:

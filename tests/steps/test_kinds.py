@@ -11,6 +11,7 @@ import pytest
 import fieldkit.steps
 from fieldkit.formula.library import Library
 from fieldkit.procedure.compile import compile_bytes, compile_file
+from fieldkit.run.moves import is_around
 from fieldkit.sheet import controls
 from fieldkit.sheet.controls import Confirm
 from fieldkit.sheet.model import Sheet
@@ -52,6 +53,27 @@ def test_every_kind_has_a_module_and_every_module_a_kind() -> None:
     modules = {path.stem.rstrip("_") for path in folder.glob("*.py")} - {n.rstrip("_") for n in SHARED}
     assert modules == set(KINDS)
     assert all(kind.word == word for word, kind in KINDS.items())
+
+
+def test_a_picture_that_is_optional_can_be_left_out_and_others_cannot() -> None:
+    written = (HERE / "picture.yaml").read_text(encoding="utf-8")
+    for text, labels in (
+        (written, [""]),
+        (written.replace("id: meters", "id: meters\n    optional: yes"), ["", "Go on without a picture"]),
+    ):
+        sheet, problems = compile_bytes(text.encode(), "picture.yaml", Library())
+        assert sheet is not None, problems
+        assert [m.label for m in sheet.moves if m.origin == "meters"] == labels
+        assert [is_around(m.model_dump()) for m in sheet.moves if m.origin == "meters"] == [
+            bool(label) for label in labels
+        ]
+
+
+def test_a_formula_is_shown_by_the_titles_of_what_it_names() -> None:
+    sheet = compiled("work_out")
+    said = [step.text for step in sheet.steps if step.control.control == "result"]
+    assert said
+    assert not any("_" in text for text in said), said
 
 
 @pytest.mark.parametrize("kind", KINDS)
