@@ -116,6 +116,12 @@ def _place(x: int, width: int, size: int) -> tuple[int, str]:
     return (width, "end") if x + size // 2 > width else (x, "middle")
 
 
+def _one_name(s: Spread, model: dict[str, Any]) -> bool:
+    """Whether both limits carry the same name, and one of their own."""
+    name = model.get("low_name")
+    return bool(name) and name == model.get("high_name") and s.low is not None and s.high is not None
+
+
 def _figures(ink: str, s: Spread, width: int, model: dict[str, Any]) -> tuple[str, int]:
     """Posts with their figures and names, and the nameplate's chain line; and the height that they need."""
     out, rows = "", _FOOT + 560
@@ -131,6 +137,11 @@ def _figures(ink: str, s: Spread, width: int, model: dict[str, Any]) -> tuple[st
         figure = text(model.get(field))
         out += rect(ink, "ink", x - 30, _TOP - 100, 60, _HIGH + 220)
         out += words(ink, *_pair(x, width, figure, size), size, figure, _place(x, width, wide(figure, size))[1], "600")
+        if _one_name(s, model):
+            # both limits have one name: it stands once, between them
+            if field == "low":
+                continue
+            x = (_x(s, width, s.low or 0) + x) // 2
         reach = wide(name, 16)
         at, anchor = _place(x, width, reach)
         start = at if anchor == "start" else at - reach if anchor == "end" else at - reach // 2

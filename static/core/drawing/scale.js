@@ -124,12 +124,18 @@ function figures(ink, s, width, model) {
     [s.low, text(model.low), model.low_name || "lower limit"],
     [s.high, text(model.high), model.high_name || "upper limit"],
   ];
-  for (const [value, figure, name] of ends) {
+  const one_name = s.low !== null && s.high !== null && model.low_name && model.low_name === model.high_name;
+  for (const [k, [value, figure, name]] of ends.entries()) {
     if (value === null) continue;
-    const here = x(s, width, value);
+    let here = x(s, width, value);
     out += rect(ink, "ink", here - 30, TOP - 100, 60, HIGH + 220);
     const [under, side] = place(here, width, wide(figure, size));
     out += words(ink, under, FOOT + 310, size, figure, side, "600");
+    if (one_name) {
+      // both limits have one name: it stands once, between them
+      if (k === 0) continue;
+      here = half(x(s, width, s.low ?? 0n) + here);
+    }
     const reach = wide(name, 16);
     const [at, anchor] = place(here, width, reach);
     const start = anchor === "start" ? at : anchor === "end" ? at - reach : at - half(reach);
