@@ -34,10 +34,21 @@ export function ahead(ctx, state, where) {
     const likely = plain.filter((m) => !m.gate.some((/** @type {any} */ c) => decided_against(ctx, state, where, c)));
     const move = likely[0] ?? plain[0] ?? null;
     path.push([node, move]);
-    if (move === null || move.to === moves.END) break;
-    node = move.to;
+    if (move !== null && move.to === moves.END) break;
+    node = move ? move.to : out_of_the_round(ctx, path, seen);
   }
   return path;
+}
+
+/** Where the way goes on after the last rung: every step that could follow was passed, so a ladder comes round. It is left by
+ * the last way that the sheet did not label, as a label offers something else than going on. "" without one.
+ * @param {Context} ctx @param {Path} path @param {Set<string>} seen */
+function out_of_the_round(ctx, path, seen) {
+  for (const [step_id] of [...path].reverse()) {
+    const way = forward(ctx, step_id).find((m) => !m.label && m.to in ctx.steps && !seen.has(m.to));
+    if (way) return way.to;
+  }
+  return "";
 }
 
 /** The condition speaks only of answered choices and of givens, and does not hold: it never will in this run.

@@ -1,6 +1,6 @@
 /** Live now, locked, next change: what the rails show, in words, beside their heads. */
 import { h } from "./dom.js";
-import { LIVE, SHUT, changeWord, countdown, list, minute, sourceTitle } from "./words.js";
+import { LIVE, SHUT, changeOf, countdown, list, minute, sourceTitle } from "./words.js";
 import { current } from "./timeline.js";
 
 /** @param {any} sheet @param {any} state @param {any} progress */
@@ -30,23 +30,40 @@ function shutWords(sheet, state) {
   return [...groups].map(([how, titles]) => ({ title: list(titles), how, sure: how !== "not proved dead" }));
 }
 
+/** Why no change is told: the run is over, a choice decides, or none is foreseen. @param {any} sheet @param {any} state @param {any} progress */
+function noneWords(sheet, state, progress) {
+  if (["ended", "voided"].includes(state.phase)) return "none: the run has ended";
+  const steps = [state.node, ...(progress?.path ?? [])].map((id) => sheet.steps.find((/** @type {any} */ s) => s.id === id));
+  const choice = steps.find((s) => s?.control.control === "choice" && !(s.id in (state.choices ?? {})));
+  return choice ? `depends on the choice at step ${choice.number}` : "none foreseen";
+}
+
+/** A rung changes no state and yet the energy: said before the next change of a state. @param {any} sheet @param {any} progress @param {any} next */
+function rungWords(sheet, progress, next) {
+  const ids = [progress.node, ...(progress.path ?? [])], before = ids.slice(0, Math.max(0, ids.indexOf(next.step)));
+  const rung = before.map((id) => sheet.steps.find((/** @type {any} */ s) => s.id === id)).find((s) => s?.level && s.control.control === "confirm");
+  const source = rung && sheet.moves.filter((/** @type {any} */ m) => m.origin === rung.id).flatMap((/** @type {any} */ m) => Object.keys(m.effects?.sets ?? {}))[0];
+  if (!source) return "";
+  return rung.id === progress.node ? `${sourceTitle(sheet, source)} to ${progress.level}, at this step; ` : `${sourceTitle(sheet, source)} may change level, at step ${rung.number}; `;
+}
+
 /** @param {any} sheet @param {any} state @param {any} progress */
 export function nextWords(sheet, state, progress) {
   const next = progress?.next_change;
-  if (!next) return "none on the way ahead";
+  if (!next) return noneWords(sheet, state, progress);
   const sets = Array.isArray(next.sources) ? Object.fromEntries(next.sources.map((/** @type {any} */ s) => (typeof s === "string" ? [s, null] : [s.name, s.state]))) : next.sources;
   const move = sheet.moves.filter((/** @type {any} */ m) => m.origin === next.step).map((/** @type {any} */ m) => m.effects?.sets ?? {}).find((/** @type {any} */ s) => Object.keys(sets).some((k) => k in s)) ?? {};
-  const words = Object.keys(sets).map((s) => `${sourceTitle(sheet, s)} ${changeWord(state.sources?.[s]?.state, sets[s] ?? move[s])}`);
+  const words = Object.keys(sets).map((s) => changeOf(sheet, s, state.sources?.[s]?.state, sets[s] ?? move[s]));
   const wait = (progress.waits ?? []).filter((/** @type {any} */ w) => w.step === next.step).map((/** @type {any} */ w) => Number(w.left)).filter((/** @type {number} */ n) => n > 0);
   const where = next.step === progress.node ? "at this step" : `at step ${next.number}`;
-  return `${list(words)}, ${where}${wait.length ? `, in ${countdown(Math.max(...wait))} at the earliest` : ""}`;
+  return `${rungWords(sheet, progress, next)}${list(words)}, ${where}${wait.length ? `, in ${countdown(Math.max(...wait))} at the earliest` : ""}`;
 }
 
 /** The words as a list of terms. @param {any} sheet @param {any} state @param {any} progress @returns {HTMLElement} */
 export function liveList(sheet, state, progress) {
   const live = liveWords(sheet, state, progress), shut = shutWords(sheet, state);
   return h("dl", {},
-    h("dt", {}, "Live now"), h("dd", {}, state.phase === "declare" ? "not known: nothing has been confirmed yet" : live.length ? live.join(", ") : "nothing"),
+    h("dt", {}, state.phase === "confirm" ? "Live before" : "Live now"), h("dd", {}, state.phase === "declare" ? "not known: nothing has been confirmed yet" : live.length ? live.join(", ") : "nothing"),
     shut.length ? [h("dt", {}, "Locked"), h("dd", {}, shut.map((/** @type {any} */ s, /** @type {number} */ k) => [k ? "; " : "", `${s.title}, `, s.sure ? s.how : h("b", {}, s.how)]))] : null,
-    h("dt", {}, "Next change"), h("dd", {}, nextWords(sheet, state, progress)));
+    h("dt", {}, "Next change"), h("dd", {}, ["declare", "confirm"].includes(state.phase) ? "none before each source is confirmed" : nextWords(sheet, state, progress)));
 }

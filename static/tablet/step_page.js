@@ -3,7 +3,7 @@
  * answer. Which control does what is in controls/; what may be done is decided by the run engine, never here.
  */
 import { h, fresh } from "./dom.js";
-import { CONTROL_WORDS } from "./words.js";
+import { CONTROL_WORDS, together } from "./words.js";
 
 /** Ids of a clone are made fresh, so that two of one kind never share a label. @param {ParentNode} root */
 export function freshen(root) {
@@ -37,7 +37,7 @@ export function stepHead(sheet, step, extra = {}) {
   const isCaution = step.control.control === "caution", levelled = (/** @type {string} */ text) => text.replaceAll("{level}", extra.level ?? "");
   return [
     h("div", { class: "what" }, h("span", {}, "Step ", h("b", {}, step.number), ` of ${steps(sheet)}, `, h("b", {}, kindWord(step))), h("span", { "data-step-note": true }, extra.level || extra.note || step.section || "")),
-    h("h1", { class: isCaution ? "seen-by-reader" : null, tabindex: "-1", "data-step-title": true }, isCaution ? `${step.control.signal}: ${step.title}` : levelled(step.title)),
+    h("h1", { class: isCaution ? "seen-by-reader" : null, tabindex: "-1", "data-step-title": true }, isCaution ? `${step.control.signal}: ${step.title}` : together(levelled(step.title))),
     step.text ? h("p", { class: "say" }, levelled(step.text)) : null,
     step.why ? h("p", { class: "why" }, step.why) : null,
     step.who === "second person" ? h("p", { class: "with" }, "The second person takes this one.") : null,

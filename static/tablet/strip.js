@@ -5,7 +5,7 @@
 import { h } from "./dom.js";
 import { verdictMark } from "./icons.js";
 import { rails } from "./rails.js";
-import { CONTROL_WORDS, changeWord, minus, minute, pretty, sourceTitle } from "./words.js";
+import { CONTROL_WORDS, changeOf, minus, minute, pretty, sourceTitle } from "./words.js";
 
 /** Kinds that stand in the log but are no row of work. */
 const QUIET = ["signed", "corrected"];
@@ -58,7 +58,7 @@ export function pastRow(sheet, row, states, read) {
 
 /** What a coming row says at its end. @param {any} sheet @param {any} step @param {Record<string, string>} sets @param {Record<string, string>} before */
 function comingWords(sheet, step, sets, before) {
-  const change = Object.entries(sets).map(([s, v]) => `${sourceTitle(sheet, s)} ${changeWord(before[s], v)}`);
+  const change = Object.entries(sets).map(([s, v]) => changeOf(sheet, s, before[s], v));
   if (change.length) return change.slice(0, 2).join(", ");
   return /** @type {any} */ (CONTROL_WORDS)[step.control.control];
 }

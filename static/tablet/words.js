@@ -10,6 +10,8 @@ export const CHANGE_WORDS = {
   on: "goes on", off: "goes off", standby: "goes to standby volts", "cut-off": "goes to cut-off", locked: "is locked",
   proved: "is proved dead", earthed: "is earthed", unknown: "is not known",
 };
+/** sources whose titles are plurals */
+const PLURAL = ["magnets", "auxiliaries", "x_rays"];
 export const LIVE = ["on", "standby", "cut-off"];
 export const SHUT = ["locked", "proved", "earthed"];
 
@@ -54,6 +56,9 @@ export const list = (things) => (things.length < 2 ? things.join("") : `${things
 /** A number as typed, with a true minus sign. @param {string} text */
 export const minus = (text) => String(text ?? "").replace(/^-/, "−");
 
+/** A figure and its unit are never parted at the end of a line: "10 s". @param {string} text */
+export const together = (text) => text.replace(/(\d) (?=(s|min|h|m|cm|V|kV|A|mA|W|kW|°C)\b)/g, "$1\u00a0");
+
 /** A unit as it is written by hand: the sheet's own symbols are plain ASCII. Also inside sentences. @param {string} text */
 export const pretty = (text) => String(text ?? "").replace(/\b([kMm]?)ohm\b/g, "$1Ω").replace(/\b(c?m)([23])\b/g, (_, m, n) => m + (n === "2" ? "²" : "³")).replace(/\bdegC\b/g, "°C").replace(/\bu(A|V|W|s|Sv|m)\b/g, "µ$1");
 
@@ -62,6 +67,12 @@ export function changeWord(before, after) {
   if (SHUT.includes(before) && after === "off") return "is unlocked";
   if (before === "earthed" && SHUT.includes(after)) return "is no longer earthed";
   return /** @type {any} */ (CHANGE_WORDS)[after] ?? "changes";
+}
+
+/** "magnets go on", "bias goes on": a source and what becomes of it. @param {any} sheet @param {string} name @param {string} before @param {string} after */
+export function changeOf(sheet, name, before, after) {
+  const title = sourceTitle(sheet, name), word = changeWord(before, after);
+  return `${title} ${PLURAL.includes(name) ? word.replace(/^is\b/, "are").replace(/^goes\b/, "go").replace(/^changes$/, "change") : word}`;
 }
 
 /** First letter large. @param {string} text */
@@ -82,6 +93,7 @@ export const personName = (state, id) => (state?.started?.people ?? []).find((/*
 export function limitWords(limits, unit) {
   const [low, high] = [limits?.low, limits?.high];
   unit = pretty(unit);
+  if (low && low === high) return `exactly ${minus(low)} ${unit}`.trim();
   if (low && high) return `${minus(low)} to ${minus(high)} ${unit}`;
   if (low) return `at least ${minus(low)} ${unit}`;
   return high ? `at most ${minus(high)} ${unit}` : "";

@@ -1,13 +1,13 @@
 /** Confirm: the person says that an act is done. Held acts are pressed for a second. */
 import { part, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
-import { changeWord, list, sentence, sourceTitle } from "../words.js";
+import { changeOf, list, sentence } from "../words.js";
 import { likelyMove } from "../timeline.js";
 
 /** What recording this says about the plant. @param {any} ctx */
 function effectWords(ctx) {
   const sets = likelyMove(ctx.sheet, ctx.step.id, undefined)?.effects?.sets ?? {};
-  const words = Object.entries(sets).filter(([s, v]) => ctx.state.sources?.[s]?.state !== v).map(([s, v]) => `${sourceTitle(ctx.sheet, s)} ${changeWord(ctx.state.sources?.[s]?.state, v)}`);
+  const words = Object.entries(sets).filter(([s, v]) => ctx.state.sources?.[s]?.state !== v).map(([s, v]) => changeOf(ctx.sheet, s, ctx.state.sources?.[s]?.state, /** @type {string} */ (v)));
   return words.length ? `${sentence(list(words))} with this step. Record it once it is so; nothing is switched from here.` : "";
 }
 

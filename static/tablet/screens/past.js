@@ -8,8 +8,9 @@ import { overHead, overWork } from "./over_parts.js";
 
 /** What of a row was typed and can be corrected: [field, name, text]. @param {any} row @param {any} body */
 function typedFields(row, body) {
+  const titleOf = (/** @type {string} */ field) => (row.points ?? []).find((/** @type {any} */ p) => p.field === field)?.title;
   if (row.kind === "read" || row.kind === "remarked") return [["text", row.kind === "read" ? "The reading" : "The remark", row.text ?? body?.text ?? ""]];
-  if (row.kind === "proved") return [["before", "Tester before", body?.before], ...(body?.points ?? []).map((/** @type {any} */ p) => [`points.${p.name}`, p.name, p.text]), ["after", "Tester after", body?.after]];
+  if (row.kind === "proved") return [["before", "Tester before", body?.before], ...(body?.points ?? []).map((/** @type {any} */ p) => [`points.${p.name}`, titleOf(`points.${p.name}`) ?? p.name, p.text]), ["after", "Tester after", body?.after]];
   if (row.kind === "locked") return [["lock", "Number on the lock", body?.lock]];
   return [];
 }
@@ -26,7 +27,7 @@ export function pastPage(ctx, { row: shown }) {
   const rows = /** @type {[string, any][]} */ ([["When", `${day(row.wall)} ${time(row.wall)}`], ["By", personName(ctx.state, row.by)], ["Event", String(row.seq)]]);
   if (row.text && row.unit) rows.push(["Reading", h("span", {}, (row.old ?? []).map((/** @type {any} */ o) => [h("s", { class: "num" }, minus(o.text)), " "]), h("span", { class: "num" }, minus(row.text)), ` ${pretty(row.unit)}`)]);
   if (row.verdict) rows.push(["Verdict", row.verdict]);
-  if (row.limits) rows.push(["Limits", `${limitWords(row.limits, row.unit ?? "") || "none"}${row.limits.low_name || row.limits.high_name ? ` (${[row.limits.low_name, row.limits.high_name].filter(Boolean).join(", ")})` : ""}`]);
+  if (row.limits) rows.push(["Limits", `${limitWords(row.limits, row.unit ?? "") || "none"}${row.limits.low_name || row.limits.high_name ? ` (${[...new Set([row.limits.low_name, row.limits.high_name].filter(Boolean))].join(", ")})` : ""}`]);
   if (row.instrument) rows.push(["Meter", h("span", { class: "id" }, row.instrument)]);
   for (const old of row.old ?? []) rows.push(["Corrected", `was ${minus(old.text)}: ${old.reason}`]);
   for (const [name, label, text] of fields) if (name !== "text" || row.kind !== "read") rows.push([label, text ?? ""]);

@@ -98,7 +98,7 @@ export async function runScreen(app, args) {
     const words = liveList(sheet, state, ctx.progress), next = coming(sheet, [ctx.step?.id ?? state.node, ...(ctx.progress.path ?? [])].filter(Boolean).slice(0, 8), current(state.sources)).find((r) => Object.keys(r.sets).length);
     if (words.textContent !== drawn) {
       drawn = words.textContent ?? "";
-      view.live(words, shortRails(sheet, current(state.sources), next?.after ?? {}));
+      view.live(words, shortRails(sheet, current(state.sources), ["declare", "confirm"].includes(state.phase) ? {} : next?.after ?? {}));
     }
   }
   /** Rows above and below the open page. */

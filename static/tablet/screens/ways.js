@@ -7,7 +7,7 @@ import { showSentence } from "../judging.js";
 import { passphrase } from "../passphrase.js";
 import { limitScale } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
-import { minus, personName, pretty, time } from "../words.js";
+import { limitWords, minus, personName, pretty, time } from "../words.js";
 import { stepHead, work } from "../step_page.js";
 
 /** @param {any} ctx @param {any} move @returns {{title: string, small: string, order: number}} */
@@ -22,9 +22,30 @@ function wordsOf(ctx, move) {
   return { title: move.label || "Go on", small: shut || "", order: 1 };
 }
 
+/** Every line of a proof with its own verdict: which point is not dead is what the person must see. @param {any} row */
+function proofLines(row) {
+  const box = h("div", { class: "verdict" });
+  showVerdict(box, row.verdict ?? null);
+  return [box, h("ul", { class: "facts", "data-proof-lines": true }, row.points.map((/** @type {any} */ p) => h("li", {}, h("span", { class: "k" }, p.title),
+    h("span", { class: "v" }, h(p.verdict === "pass" ? "span" : "b", {}, h("span", { class: "num" }, minus(p.text)), ` ${pretty(row.unit ?? "")}, ${p.verdict}`), p.limits ? `; ${limitWords(p.limits, row.unit ?? "")}` : ""))))];
+}
+
+/** Closed ways are shown for their reasons, but not where an open one leads the same way, and never twice. @param {any[]} moves */
+export function worthShowing(moves) {
+  const plain = moves.filter((m) => m.manner === "plain"), open = plain.some((m) => m.open), said = new Set();
+  return moves.filter((m) => {
+    if (m.manner !== "plain" || m.open) return true;
+    const name = m.label || "Go on";
+    if (open || said.has(name)) return false;
+    said.add(name);
+    return true;
+  });
+}
+
 /** The reading that waits for a decision, as it was recorded. @param {any} ctx @param {any} row */
 function recorded(ctx, row) {
   if (!row) return null;
+  if (row.points?.length) return proofLines(row);
   const text = row.text || row.value, box = h("div", { class: "verdict" }), sentence = h("p", { class: "sentence" });
   showSentence(sentence, row);
   showVerdict(box, row.verdict ?? null);
@@ -43,7 +64,7 @@ export function waysPage(ctx) {
   let open = "";
 
   function ways() {
-    const moves = [...(ctx.progress.moves ?? [])].map((m) => ({ move: m, words: wordsOf(ctx, m) })).sort((a, b) => (failed ? a.words.order - b.words.order : 0));
+    const moves = worthShowing(ctx.progress.moves ?? []).map((m) => ({ move: m, words: wordsOf(ctx, m) })).sort((a, b) => (failed ? a.words.order - b.words.order : 0));
     put(list, h("p", { class: "q" }, row ? `Recorded ${time(row.wall)} by ${personName(ctx.state, row.by)}. ${failed ? "This does not pass; these are the ways on:" : "Go on where you decide:"}` : "The ways on:"),
       moves.map(({ move, words }) => h("button", { type: "button", class: `way ${move.manner === "stop" ? "stop" : ""}`, "data-way": move.manner, "data-move": move.move, disabled: move.manner !== "stop" && !move.open, on: { click: () => pick(move) } }, h("b", {}, words.title), h("span", {}, words.small))));
   }

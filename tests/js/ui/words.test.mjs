@@ -1,6 +1,6 @@
 import assert from "node:assert/strict";
 import { test } from "node:test";
-import { changeWord, countdown, lasting, limitWords, passed, pretty, time } from "../../../static/tablet/words.js";
+import { changeOf, changeWord, countdown, lasting, limitWords, passed, pretty, time, together } from "../../../static/tablet/words.js";
 import { spoken } from "../../../static/tablet/spoken.js";
 import { opensWords } from "../../../static/tablet/opens.js";
 
@@ -19,12 +19,18 @@ test("a time is that of this tablet's clock as recorded", () => assert.equal(tim
 
 test("limits on one side are said so", () => assert.equal(limitWords({ low: "450", high: null }, "V"), "at least 450 V"));
 test("limits on both sides carry a true minus", () => assert.equal(limitWords({ low: "-150.0", high: "-115.0" }, "V"), "−150.0 to −115.0 V"));
+test("one figure that alone is allowed is said so", () => assert.equal(limitWords({ low: "3", high: "3" }, ""), "exactly 3"));
+test("a figure and its unit stay on one line", () => assert.equal(together("Beam voltage 10 s after the stop, at 2 places"), "Beam voltage 10\u00a0s after the stop, at 2 places"));
 for (const [plain, shown] of [["uA", "µA"], ["1.10 ohm", "1.10 Ω"], ["mohm", "mΩ"], ["degC", "°C"], ["mW/cm2", "mW/cm²"], ["kV", "kV"], ["usual", "usual"], ["um", "µm"]]) {
   test(`the unit ${plain} is written ${shown}`, () => assert.equal(pretty(plain), shown));
 }
 
 test("an unlocked source is not said to go off", () => assert.equal(changeWord("locked", "off"), "is unlocked"));
 test("a live source goes off", () => assert.equal(changeWord("on", "off"), "goes off"));
+const named = { sources: [{ name: "magnets", title: "Magnets" }, { name: "bias", title: "Bias" }] };
+test("sources in the plural go on, the others goes on", () => assert.deepEqual(
+  [changeOf(named, "magnets", "off", "on"), changeOf(named, "magnets", "off", "locked"), changeOf(named, "bias", "off", "cut-off")],
+  ["magnets go on", "magnets are locked", "bias goes to cut-off"]));
 test("a lifted earth leaves the lock", () => assert.equal(changeWord("earthed", "locked"), "is no longer earthed"));
 
 test("a button that only time keeps shut counts down to the longest wait", () => assert.equal(opensWords([{ says: "a.", left: 20 }, { says: "b.", left: 378 }]), "Opens in 6:18"));
