@@ -218,7 +218,7 @@ export async function unlock(store, person, passphrase, now = Date.now()) {
     const tries = record.tries + 1;
     const wait_s = waitAfter(tries);
     await put(store, "keys", { ...record, tries, until: now + wait_s * 1000 });
-    throw new Refused("wrong-passphrase", `The passphrase is wrong. Try again in ${wait_s} s. Nothing is locked.`, { wait_s });
+    throw new Refused("wrong-passphrase", `The passphrase is wrong. The key is not blocked: try again in ${wait_s} s.`, { wait_s });
   }
   const wrapped = weaker ? await wrap(key, passphrase, ITERATIONS) : record.wrapped;
   if (weaker || record.tries) await put(store, "keys", { ...record, wrapped, tries: 0, until: 0 });

@@ -4,6 +4,9 @@
  */
 import { field, h, picks, put } from "./dom.js";
 
+/** What was wrong, with how long to wait said once. @param {string} says @param {number | null | undefined} wait */
+const said = (says, wait) => (!wait || says.includes(`${Math.ceil(wait)} s`) ? says : `${says} Try again in ${Math.ceil(wait)} s.`);
+
 /**
  * @param {{people: {id: string, name: string, enrolledHere?: boolean}[], legend: string, chosen?: string, onchange?: () => void}} spec
  * @returns {{node: HTMLElement, person: () => string | undefined, phrase: () => string, ready: () => boolean, check: (host: any) => Promise<boolean>, clear: () => void}}
@@ -32,7 +35,7 @@ export function passphrase(spec) {
         return true;
       } catch (problem) {
         const { says, wait_s } = /** @type {any} */ (problem);
-        words.wrong(`${says ?? "That passphrase does not open this person’s key."}${wait_s ? ` Try again in ${Math.ceil(wait_s)} s.` : ""}`);
+        words.wrong(said(says ?? "That passphrase does not open this person’s key.", wait_s));
         return false;
       }
     },

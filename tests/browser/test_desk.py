@@ -128,7 +128,7 @@ def test_a_supervisor_makes_a_key_countersigns_and_downloads_a_file_that_verifie
 
     page.fill("#passphrase", "not my passphrase")
     page.click('[data-form="sign"] button')
-    says(at, "sign", "The passphrase is wrong. Try again in 1 s. Nothing is locked.")
+    says(at, "sign", "The passphrase is wrong. The key is not blocked: try again in 1 s.")
     page.wait_for_timeout(1100)
     page.fill("#passphrase", SIGNING)
     page.click('[data-form="sign"] button')

@@ -52,7 +52,7 @@ export function mount(ctx, el) {
     showVerdict(box, usable ? found.verdict : null, text ? "not a number yet" : limits ? limitWords(limits, unit) || "no limits" : "no limits");
     put(part(el.l, "scale"), limits ? limitScale({ limits, plate: ctx.progress.plate, found: usable ? found : null, text: usable ? text : null, unit, old: ctx.lastReading(ctx.step.id) }) : null);
     showSentence(part(el.l, "sentence"), found);
-    if (usable) say(`${minus(text)} ${unit}, ${found.verdict}`);
+    if (usable) say(`${minus(text)} ${pretty(unit)}, ${found.verdict}`);
     update();
   }
   function update() {

@@ -19,8 +19,10 @@ export function mount(ctx, el) {
   const which = locks.length > 1 ? picks({ legend: "Which lock comes off", options: locks.map((/** @type {any} */ l) => ({ value: l.lock, label: `Lock ${l.lock}`, small: l.holder_name || l.holder })), chosen: [locks[0].lock], onchange: () => paint() }) : null;
   put(part(el.l, "which"), which?.node, locks.length ? null : h("p", { class: "refused" }, "The board shows no lock on this point. If there is one, record it as something odd and stop."));
   const lock = () => locks.find((/** @type {any} */ l) => l.lock === which?.values()[0]) ?? locks[0];
-  const way = picks({ legend: "Who takes it off", options: [{ value: "holder", label: "Its holder" }, { value: "checks", label: "Holder is away", small: "three checks, two people" }], chosen: ["holder"], onchange: () => paint() });
-  put(part(el.l, "way"), locks.length ? way.node : null);
+  // Whoever records is here: their own lock comes off by their own passphrase, never by checks that say they are away.
+  const mine = locks.length > 0 && locks.every((/** @type {any} */ l) => l.holder === ctx.state.recorder);
+  const way = picks({ legend: "Who takes it off", options: [{ value: "holder", label: "Its holder" }, ...(mine ? [] : [{ value: "checks", label: "Holder is away", small: "three checks, two people" }])], chosen: ["holder"], onchange: () => paint() });
+  put(part(el.l, "way"), locks.length && !mine ? way.node : null);
   const inputs = Object.keys(CHECKS).map((name) => /** @type {HTMLInputElement} */ (el.l.querySelector(`[data-field="${name}"] input`)));
   for (const input of inputs) input.addEventListener("input", () => update());
   let pass = /** @type {ReturnType<typeof passphrase> | null} */ (null), second = /** @type {ReturnType<typeof passphrase> | null} */ (null);

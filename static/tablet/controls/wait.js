@@ -7,13 +7,16 @@ import { acting, reasonList } from "../acting.js";
 import { timeScale } from "../scale.js";
 import { alertUser } from "../announce.js";
 import { chime } from "../chime.js";
-import { countdown, lasting, minus, passed } from "../words.js";
+import { countdown, lasting, passed } from "../words.js";
 
 /** The wait that this step is about: the one with the most time left. @param {any} ctx */
 function theWait(ctx) {
   const waits = ctx.progress.waits ?? [];
   return waits.find((/** @type {any} */ w) => w.step === ctx.step.id) ?? [...waits].sort((a, b) => Number(b.left) - Number(a.left))[0] ?? null;
 }
+
+/** @param {any} ctx @param {string} id */
+const isReading = (ctx, id) => ctx.sheet.steps.find((/** @type {any} */ s) => s.id === id)?.control.control === "number";
 
 /** Wall time at which the wait ends at the earliest. @param {string} wall @param {number} left */
 function endsAt(wall, left) {
@@ -52,12 +55,10 @@ export function mount(ctx, el) {
     else if (!over) { over = true; if (wait) { alertUser(`${ctx.step.title}: the wait is over.`); chime(); } }
   }
   function showDue() {
-    const rows = (ctx.state.log ?? []).filter((/** @type {any} */ r) => r.step && (r.kind === "read") && r.seq > (ctx.state.done?.[ctx.step.id]?.seq ?? -1)).slice(-2);
-    const due = (ctx.progress.waits ?? []).filter((/** @type {any} */ w) => w.step && w.step !== ctx.step.id && w.says && w !== theWait(ctx));
+    // Only a coming reading falls due; another wait is no reading, and what was read before stands in the strip.
+    const due = (ctx.progress.waits ?? []).filter((/** @type {any} */ w) => w.step && w.step !== ctx.step.id && w.says && w !== theWait(ctx) && isReading(ctx, w.step));
     part(el.r, "due").hidden = !due.length;
-    put(part(el.r, "due-list"), due.length ? [
-      rows.map((/** @type {any} */ r) => h("li", {}, h("span", { class: "t" }, r.wall.slice(11, 16)), h("span", {}, r.title), h("span", { class: "v" }, h("span", { class: "num" }, minus(r.text)), ` ${r.unit}`))),
-      due.map((/** @type {any} */ w) => h("li", {}, h("span", { class: "t" }), h("span", {}, w.says), h("span", { class: "v" }, Number(w.left) > 0 ? `in ${countdown(w.left)}` : "due now")))] : null);
+    put(part(el.r, "due-list"), due.map((/** @type {any} */ w) => h("li", {}, h("span", { class: "t" }), h("span", {}, w.says), h("span", { class: "v" }, Number(w.left) > 0 ? `in ${countdown(w.left)}` : "due now"))));
   }
   update();
   return { update };
