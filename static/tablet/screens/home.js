@@ -77,7 +77,7 @@ function healthBand(app) {
     ["Installed", yes(health.installed, "yes", "no: add it to the home screen, or the browser may remove what it holds")],
     ["Storage", [yes(health.persisted, "kept by the browser", "the browser does not promise to keep it"), health.probe ? `; ${health.probe}` : ""]],
     ["Enrolled", enrolled ? `${here.map((/** @type {any} */ p) => p.name).join(", ") || "nobody has a certificate yet"}${device?.name ? `; this is ${device.name}` : ""}${waiting.length ? `; waiting for the signing authority: ${waiting.map((/** @type {any} */ p) => p.name).join(", ")}` : ""}` : h("b", {}, "nobody")],
-    ["Sending", [app.sync.says || "nothing to send", app.sync.oldestUnsynced ? `; oldest event not received: ${day(app.sync.oldestUnsynced)} ${minute(app.sync.oldestUnsynced)}` : ""]]]),
+    ["Sending", [app.sync.says || "nothing to send", app.sync.oldestUnsynced ? ` Oldest event not received: ${day(app.sync.oldestUnsynced)} ${minute(app.sync.oldestUnsynced)}.` : ""]]]),
     unsentWords(app.sync.oldestUnsynced),
     health.storage === "ok" ? health.says.map((/** @type {string} */ s) => h("p", { class: "heed" }, s)) : null,
     h("div", { class: "buttons" }, h("button", { type: "button", class: "act", "data-enrol": true, on: { click: () => app.go("enrol") } }, enrolled ? "Enrol another person" : "Enrol a person"),

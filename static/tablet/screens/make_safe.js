@@ -5,7 +5,7 @@
 import { field, h, put } from "../dom.js";
 import { holdButton } from "../holding.js";
 import { overHead, overWork } from "./over_parts.js";
-import { STATE_WORDS, minute, sourceTitle } from "../words.js";
+import { SHUT, STATE_WORDS, minute, sourceTitle } from "../words.js";
 
 /** The site of the run. @param {any} ctx */
 export const siteOf = (ctx) => ctx.app.held.kit?.registers?.sites?.[ctx.state.started?.site];
@@ -23,10 +23,16 @@ export function makeSafePage(ctx) {
     ctx.repaint();
     paint();
   }
+  /** What a line makes of a source; a lock, a proof and an earth stay. @param {string} source @param {string} to */
+  function effect(source, to) {
+    const now = ctx.state.sources[source]?.state ?? "unknown", words = /** @type {any} */ (STATE_WORDS);
+    const stays = now === to || (to === "off" && SHUT.includes(now));
+    return `${sourceTitle(ctx.sheet, source)}: ${stays ? `is ${words[now]}, stays so` : `now ${words[now]}, then ${words[to]}`}`;
+  }
   /** @param {any} item @param {number} k */
   function row(item, k) {
     const seq = ctx.state.safe?.[item.id], at = seq === undefined ? null : ctx.state.log?.find((/** @type {any} */ r) => r.seq === seq);
-    const sets = Object.entries(item.sets ?? {}).map(([s, v]) => `${sourceTitle(ctx.sheet, s)}: now ${/** @type {any} */ (STATE_WORDS)[ctx.state.sources[s]?.state ?? "unknown"]}, then ${/** @type {any} */ (STATE_WORDS)[v]}`);
+    const sets = Object.entries(item.sets ?? {}).map(([s, v]) => effect(s, /** @type {string} */ (v)));
     return h("li", { class: seq === undefined ? "" : "done", "data-item": item.id }, h("span", { class: "n" }, String(k + 1)), h("span", { class: "w" }, item.text, item.note ? h("span", {}, item.note) : null, seq === undefined ? sets.map((s) => h("span", {}, s)) : null),
       seq !== undefined ? h("span", { class: "v" }, `recorded ${minute(at?.wall ?? "")}`) : over ? null : h("span", { class: "two-acts" },
         h("button", { type: "button", class: "act", "data-was-so": item.id, on: { click: () => void record(item, false) } }, "Was so"), h("button", { type: "button", class: "act", "data-done": item.id, on: { click: () => void record(item, true) } }, "Done")));
@@ -34,7 +40,7 @@ export function makeSafePage(ctx) {
   function paint() {
     const n = Object.keys(ctx.run.state.safe ?? {}).length, all = ctx.sheet.make_safe.length;
     ctx.state = ctx.run.state;
-    put(says, n === 0 ? [h("b", {}, "Nothing has been changed yet."), h("span", {}, "Only the steps below record; none of them switches anything by itself.")] : [h("b", {}, `${n} of ${all} steps are recorded.`), h("span", {}, "Go on down the list.")]);
+    put(says, n === 0 ? [h("b", {}, "Nothing has been changed yet."), h("span", {}, "Only the steps below record; none of them switches anything by itself.")] : [h("b", {}, `${n} of ${all} steps ${n === 1 ? "is" : "are"} recorded.`), h("span", {}, n < all ? "Go on down the list." : "Say below that the list is done.")]);
     put(list, ctx.sheet.make_safe.map(row));
     put(foot, over || n === 0 ? null : [remark.node, end.node]);
   }

@@ -3,6 +3,7 @@
  * may do alone. Nothing is recorded before the button that names it.
  */
 import { h, picks, put } from "../dom.js";
+import { lower } from "../words.js";
 import { band, page } from "./pages.js";
 
 /** @param {any} app */
@@ -42,7 +43,7 @@ export async function startScreen(app) {
       here === 1 ? h("p", { class: "heed" }, "You work alone; the record will say so.") : null,
       p?.sheet ? h("p", { class: "heed" }, "This edition is checked; it is not proved: no proof of its every path exists yet. The record says so.") : null);
     put(wrong);
-    put(start, p ? `Start ${p.title.toLowerCase()}` : "Choose a procedure");
+    put(start, !p ? "Choose a procedure" : !cabinet.values()[0] ? "Choose a cabinet" : !tube?.values()[0] ? "Choose a tube" : !here ? "Say who is here" : !recorder?.values()[0] ? "Say who records" : `Start ${lower(p.title)}`);
     /** @type {HTMLButtonElement} */ (start).disabled = !ready;
   }
   async function begin() {

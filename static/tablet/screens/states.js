@@ -59,11 +59,12 @@ export function declarePage(ctx) {
     for (const r of rows) {
       if (!r.timed()) continue;
       const text = r.minutes.input.value.trim().replace(",", ".");
+      r.minutes.wrong("");
       if (!/^\d+(\.\d+)?$/.test(text)) { r.minutes.wrong("Write the minutes as a number, like 20. Less if you are not sure."); return; }
       ages[r.source.name] = String(Math.floor(Number(text) * 60));
     }
     const answer = await ctx.send({ do: "states-declared", states, ages, board_seen: board.values().length > 0, locks: found.locks() });
-    put(refused, answer.refused?.says ?? "");
+    put(refused, sentence(answer.refused?.says ?? ""));
     if (!answer.refused) ctx.shut();
   }
   function act() {
@@ -78,11 +79,12 @@ export function declarePage(ctx) {
 /** The resume check. @param {any} ctx */
 export function confirmPage(ctx) {
   const { sheet, state } = ctx, cause = state.paused?.cause ?? "pause";
-  const gap = [...(state.log ?? [])].reverse().find((/** @type {any} */ r) => r.kind === "resumed" || r.kind === "paused" || r.kind === "trip-recorded");
+  // The row of the log has no body; how long the gap lasted stands in the event.
+  const last = [...(ctx.run.events ?? [])].reverse().map((/** @type {any} */ e) => e.head ? { kind: e.head.kind, ...e.body } : { kind: e.kind, ...e.body }).find((e) => ["resumed", "paused", "trip-recorded"].includes(e.kind)), gap = last?.kind === "resumed" ? last : null;
   const rows = sheet.sources.filter((/** @type {any} */ s) => s.isolable !== false || sheet.start[s.name]).map((/** @type {any} */ source) => {
     const before = state.sources[source.name]?.state ?? "unknown";
     const row = sourceRow({ source, under: `before: ${/** @type {any} */ (STATE_WORDS)[before] ?? before}`, legend: `${source.title} after the gap`, rest: sayable(source).filter((s) => s !== before), onchange: () => act(),
-      first: [{ value: "unbroken", label: "Held throughout" }, { value: "broken", label: "May have broken" }] });
+      first: [{ value: "unbroken", label: "Held all along" }, { value: "broken", label: "May have broken" }] });
     return { source, before, node: row.node, said: () => (row.otherwise() ? row.state() : row.chosen() && before), unbroken: () => row.chosen() === "unbroken", differs: () => row.otherwise() };
   });
   const refused = h("p", { class: "refused", "data-refused": true }), foot = acting(ctx, { side: false, run: () => void record() });
