@@ -382,8 +382,8 @@ def test_a_wait_counts_down_dashed_and_opens_when_it_is_over(page: Any, server: 
 
 
 def test_a_step_that_may_not_open_says_exactly_why(page: Any, server: LookServer) -> None:
-    show(page, server, at("lock_q1", HV))
-    assert "60 s have passed since “Beam stop”" in page.inner_text("[data-reason-list]")
+    show(page, server, at("ion_warming"))
+    assert "1 min have passed since “Heater on at rated volts, soft start”" in page.inner_text("[data-reason-list]")
     assert page.get_attribute("[data-first]", "aria-disabled") == "true"
 
 
