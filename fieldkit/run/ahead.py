@@ -33,15 +33,18 @@ def ahead(ctx: Context, state: State, where: Scope) -> Path:
         likely = [m for m in plain if not any(_decided_against(ctx, state, where, c) for c in m["gate"])]
         move = likely[0] if likely else plain[0] if plain else None
         path.append((node, move))
-        if move is not None and move["to"] == END:
+        # what a fail leaves closed is no round: nothing is foreseen past it
+        if (move is None and pending) or (move is not None and move["to"] == END):
             break
         node = move["to"] if move else _out_of_the_round(ctx, path, seen)
     return path
 
 
 def _out_of_the_round(ctx: Context, path: Path, seen: set[str]) -> str:
-    """Where the way goes on after the last rung: every step that could follow was passed, so a ladder comes round. It is
-    left by the last way that the sheet did not label, as a label offers something else than going on. "" without one."""
+    """Where the way goes on after the last rung: every step that could follow was passed, so a ladder comes round.
+
+    It is left by the last way without a label, as a label offers something else than going on; "" without one.
+    """
     for step_id, _ in reversed(path):
         for move in forward(ctx, step_id):
             if not move["label"] and move["to"] in ctx.steps and move["to"] not in seen:

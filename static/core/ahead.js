@@ -34,7 +34,8 @@ export function ahead(ctx, state, where) {
     const likely = plain.filter((m) => !m.gate.some((/** @type {any} */ c) => decided_against(ctx, state, where, c)));
     const move = likely[0] ?? plain[0] ?? null;
     path.push([node, move]);
-    if (move !== null && move.to === moves.END) break;
+    // what a fail leaves closed is no round: nothing is foreseen past it
+    if (move === null ? pending : move.to === moves.END) break;
     node = move ? move.to : out_of_the_round(ctx, path, seen);
   }
   return path;

@@ -84,7 +84,7 @@ export function sourceTitle(sheet, name) {
   return found ? lower(found.title) : name.replaceAll("_", " ");
 }
 /** A title inside a sentence: its first letter small unless the word is an abbreviation. @param {string} title */
-export const lower = (title) => (/^[A-ZΩ][A-Z]/.test(title) ? title : title.slice(0, 1).toLowerCase() + title.slice(1));
+export const lower = (title) => (/^[A-ZΩ][A-Z0-9-]/.test(title) ? title : title.slice(0, 1).toLowerCase() + title.slice(1));
 
 /** The name of a person of the run. @param {any} state @param {string} id */
 export const personName = (state, id) => (state?.started?.people ?? []).find((/** @type {any} */ p) => p.id === id)?.name ?? id;

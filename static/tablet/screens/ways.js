@@ -22,11 +22,14 @@ function wordsOf(ctx, move) {
   return { title: move.label || "Go on", small: shut || "", order: 1 };
 }
 
+/** Lines of a proof on the known source, as the page that asked for them named them. */
+const KNOWN = /** @type {Record<string, string>} */ ({ before: "Tester on the known source", after: "Tester, known source again" });
+
 /** Every line of a proof with its own verdict: which point is not dead is what the person must see. @param {any} row */
 function proofLines(row) {
   const box = h("div", { class: "verdict" });
   showVerdict(box, row.verdict ?? null);
-  return [box, h("ul", { class: "facts", "data-proof-lines": true }, row.points.map((/** @type {any} */ p) => h("li", {}, h("span", { class: "k" }, p.title),
+  return [box, h("ul", { class: "facts", "data-proof-lines": true }, row.points.map((/** @type {any} */ p) => h("li", {}, h("span", { class: "k" }, KNOWN[p.field] ?? p.title),
     h("span", { class: "v" }, h(p.verdict === "pass" ? "span" : "b", {}, h("span", { class: "num" }, minus(p.text)), ` ${pretty(row.unit ?? "")}, ${p.verdict}`), p.limits ? `; ${limitWords(p.limits, row.unit ?? "")}` : ""))))];
 }
 

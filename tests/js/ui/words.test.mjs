@@ -1,6 +1,6 @@
 import assert from "node:assert/strict";
 import { test } from "node:test";
-import { changeOf, changeWord, countdown, lasting, limitWords, passed, pretty, time, together } from "../../../static/tablet/words.js";
+import { changeOf, changeWord, countdown, lasting, limitWords, lower, passed, pretty, time, together } from "../../../static/tablet/words.js";
 import { spoken } from "../../../static/tablet/spoken.js";
 import { opensWords } from "../../../static/tablet/opens.js";
 
@@ -31,6 +31,7 @@ const named = { sources: [{ name: "magnets", title: "Magnets" }, { name: "bias",
 test("sources in the plural go on, the others goes on", () => assert.deepEqual(
   [changeOf(named, "magnets", "off", "on"), changeOf(named, "magnets", "off", "locked"), changeOf(named, "bias", "off", "cut-off")],
   ["magnets go on", "magnets are locked", "bias goes to cut-off"]));
+test("an abbreviation keeps its capital inside a sentence", () => assert.deepEqual(["X-rays", "RF drive", "Q1 isolator", "Ion pump"].map(lower), ["X-rays", "RF drive", "Q1 isolator", "ion pump"]));
 test("a lifted earth leaves the lock", () => assert.equal(changeWord("earthed", "locked"), "is no longer earthed"));
 
 test("a button that only time keeps shut counts down to the longest wait", () => assert.equal(opensWords([{ says: "a.", left: 20 }, { says: "b.", left: 378 }]), "Opens in 6:18"));
