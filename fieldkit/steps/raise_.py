@@ -9,6 +9,8 @@ One level is a ladder too. It lowers to steps shared by all levels; a counter sa
     ID_stay    wait, then the ruling reading again           ID_hold   wait while it is low enough
     RULING_held  the ruling reading again after that         its moves: up, stay, back, stop, or on after the top
 
+ID_set is closed while the held reading is older than settle and rest together (a pause, a talk); then the ruling
+reading is taken again at the level where the supply stands.
 Counters: ID_level (0 is the first level), ID_backs (falls in all), ID_backs_N (falls from level N).
 Not here: what reading is taken (fieldkit.steps.read); a level is never chosen by the person, only by these moves.
 """
@@ -27,7 +29,7 @@ from fieldkit.sheet.moves import Move
 from fieldkit.sheet.parts import Condition, Count, Effects, Tree, Unit
 from fieldkit.steps import base, judged, read, words
 from fieldkit.steps.base import Acting, Exit, Kind, Name, Piece
-from fieldkit.steps.conditions import at_least, call, named, number
+from fieldkit.steps.conditions import any_of, at_least, call, named, negate, number
 from fieldkit.steps.read import Read
 from fieldkit.steps.scope import NOTHING, Scope
 from fieldkit.steps.words import Written, key
@@ -174,13 +176,22 @@ def _wait(
     return step, Move(id=f"{id_}:done", origin=id_, to=to, on="done", gate=gate, effects=Effects(counts=counts))
 
 
-def _act(ladder: Ladder, name: str, title: str, to: str) -> tuple[Step, Move]:
+def _fresh(ladder: Ladder, scope: Scope) -> Condition:
+    """The held reading is young: nobody goes up on one from before a pause. Nothing was held before the first level."""
+    rule, settle = ladder.written.rule, ladder.written.settle
+    held = f"{ladder.written.reads[-1].id}_held"
+    most = call("add", scope.tree(settle, words.SECOND), scope.tree(rule.rest, words.SECOND))
+    young = call("le", named(f"oldest-since:{held}"), most)
+    says = f"“{scope.title_of(held)}” is at most {scope.says(settle.text)} + {scope.says(rule.rest.text)} old"
+    at_first = call("eq", named(f"count:{ladder.rung}"), number(0))
+    return Condition(says=says, tree=young if ladder.written.start is not None else any_of([at_first, young]))
+
+
+def _act(ladder: Ladder, name: str, title: str, to: str, opens: tuple[Condition, ...] = ()) -> tuple[Step, Move]:
     id_, written = f"{ladder.id}_{name}", ladder.written
     step = base.make_step(id_, "raise", title.rstrip("."), Confirm(button=written.button), written, ladder.shown)
-    #: a fall lowers energy and is never gated
-    gate = ladder.opens if name == "set" else ()
     effects = base.effects(written) if name == "set" else Effects()
-    return step, Move(id=f"{id_}:done", origin=id_, to=to, on="done", gate=gate, effects=effects)
+    return step, Move(id=f"{id_}:done", origin=id_, to=to, on="done", gate=opens, effects=effects)
 
 
 def _waits_and_acts(ladder: Ladder, first_read: str, piece: Piece, scope: Scope) -> None:
@@ -193,9 +204,18 @@ def _waits_and_acts(ladder: Ladder, first_read: str, piece: Piece, scope: Scope)
         rows.append(
             _wait(ladder, "first", f"{written.title}: settle", written.start, written.settle, first_read, scope, start)
         )
-    rows.append(_act(ladder, "set", written.set, f"{id_}_settle"))
+    fresh = _fresh(ladder, scope)
+    rows.append(_act(ladder, "set", written.set, f"{id_}_settle", (*ladder.opens, fresh)))
+    back = f"Too late: read {words.plain(written.reads[-1].title)} again"
+    gate = (negate([fresh]), *(c for c in ladder.opens if c.clock is None))
+    lower_again = Effects(counts=(Count(counter=ladder.rung, by=-1),))
+    reread = Move(
+        id=f"{id_}_set:reread", origin=f"{id_}_set", to=ruling, on="done", label=back, gate=gate, effects=lower_again
+    )
+    piece.moves.append(reread)
     piece.exits += base.other_way(written, f"{id_}_set", "done", ladder.opens, scope)
     rows.append(_wait(ladder, "settle", f"{written.title}: settle", f"{id_}_set", written.settle, first_read, scope))
+    #: a fall lowers energy and is never gated
     rows.append(_act(ladder, "down", written.down, f"{id_}_rest"))
     rows.append(
         _wait(

@@ -138,7 +138,7 @@ def test_of_the_plain_moves_that_an_answer_can_take_by_itself_at_most_one_is_ope
         if move.manner == "plain":
             groups[(move.origin, move.on, move.choice)].append(move)
     for key, moves in groups.items():
-        if len(moves) < 2 or any(m.label.startswith(("Repaired", "Go on at")) for m in moves):
+        if len(moves) < 2 or any(m.label.startswith(("Repaired", "Go on at", "Go on without")) for m in moves):
             continue
         names = {name for m in moves for c in m.gate for name in mentioned(c.tree)}
         for _ in range(60):

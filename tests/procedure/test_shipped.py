@@ -249,3 +249,22 @@ def test_a_tube_that_does_not_stand_at_standby_is_not_warmed_up_from_standby(war
     assert not walk.look()["open"]
     (way,) = [way for way in walk.look()["moves"] if way["open"] and way["around"]]
     assert way["to"] == "history"
+
+
+@pytest.mark.parametrize(("name", "node"), [("hv-bring-up", "climb_set"), ("warm-up", "soak_set")])
+def test_nobody_goes_a_level_up_on_a_reading_from_before_a_pause(name: str, node: str) -> None:
+    values = WARM | {"history": "stored"} if name == "warm-up" else HIGH
+    walk = Walk(shipped(name), values).to(f"{node.removesuffix('_set')}_ion_held")
+    walk.to(node)
+    assert walk.look()["open"]
+    walk.seconds += 1800
+    seen = walk.look()
+    assert not seen["open"]
+    (way,) = [way for way in seen["moves"] if way["open"] and way["around"]]
+    walk.do("went-on", move=way["move"])
+    level = seen["level"]
+    assert walk.state["node"] == f"{node.removesuffix('_set')}_ion"
+    assert walk.look()["level"] != level
+    walk.to(node)
+    assert walk.look()["open"] and walk.look()["level"] == level
+    assert in_order(walk.to("@end"))
