@@ -31,7 +31,9 @@ def ahead(ctx: Context, state: State, where: Scope) -> Path:
         leaving = moves.leads(ctx, state, node, pending["outcome"]) if pending else forward(ctx, node)
         plain = [m for m in leaving if m["manner"] == "plain" and m["to"] not in seen and m["to"] != SAFE]
         likely = [m for m in plain if not any(_decided_against(ctx, state, where, c) for c in m["gate"])]
-        move = likely[0] if likely else plain[0] if plain else None
+        # an answer that is given opens some ways and shuts the others
+        open_now = [m for m in plain if pending and not names.reasons(ctx, where, m["gate"])]
+        move = next(iter(open_now or likely or plain), None)
         path.append((node, move))
         # what a fail leaves closed is no round: nothing is foreseen past it
         if (move is None and pending) or (move is not None and move["to"] == END):

@@ -32,7 +32,9 @@ export function ahead(ctx, state, where) {
     const leaving = pending ? moves.leads(ctx, state, node, pending.outcome) : forward(ctx, node);
     const plain = leaving.filter((m) => m.manner === "plain" && !seen.has(m.to) && m.to !== moves.SAFE);
     const likely = plain.filter((m) => !m.gate.some((/** @type {any} */ c) => decided_against(ctx, state, where, c)));
-    const move = likely[0] ?? plain[0] ?? null;
+    // an answer that is given opens some ways and shuts the others
+    const open_now = plain.filter((m) => pending && !names.reasons(ctx, where, m.gate).length);
+    const move = open_now[0] ?? likely[0] ?? plain[0] ?? null;
     path.push([node, move]);
     // what a fail leaves closed is no round: nothing is foreseen past it
     if (move === null ? pending : move.to === moves.END) break;
