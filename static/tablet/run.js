@@ -126,7 +126,13 @@ export async function open(store, start, sheet, app, hooks) {
       try {
         if (why()) throw new Refused("read-only", why());
         const words = asked.do === "released" || statement === undefined ? { ...asked, ...(statement === undefined ? {} : { statement }) } : asked;
-        const answer = decide(folded.ctx, folded.state, words, clockwatch.now());
+        let answer = decide(folded.ctx, folded.state, words, clockwatch.now());
+        if ("refused" in answer && answer.refused.code === "not-resumed") {
+          // Many short sleeps, each too short for the watch: together they are a gap, which is told first.
+          const gap = decide(folded.ctx, folded.state, { do: "resumed", cause: "sleep" }, clockwatch.now());
+          if ("events" in gap) await record(gap.events, {});
+          answer = decide(folded.ctx, folded.state, words, clockwatch.now());
+        }
         if ("refused" in answer) return answer;
         await record(answer.events, { by: asked.by, passphrase, statement });
         return { ok: true, state: folded.state };
