@@ -91,7 +91,7 @@ def _refused(text: str) -> tuple[str, str] | None:
     if sum(c in ".," for c in text) > 1:
         return "two-separators", "There is more than one point or comma. Write one at most, like 1234.5."
     if _EXPONENT.fullmatch(text):
-        return "exponent", "It has an exponent. Write the number out, like 100000."
+        return "exponent", "It has an exponent. Write all its digits, as the meter shows them."
     if any(c in "'\u2019_" for c in text):
         return "thousands", "It has a mark between thousands. Write the digits alone, like 1234.5."
     if any(c in _SIGNS for c in text[1:]):

@@ -81,7 +81,7 @@ function refused(text) {
   if (chars.filter((c) => ".,".includes(c)).length > 1) {
     return ["two-separators", "There is more than one point or comma. Write one at most, like 1234.5."];
   }
-  if (EXPONENT.test(text)) return ["exponent", "It has an exponent. Write the number out, like 100000."];
+  if (EXPONENT.test(text)) return ["exponent", "It has an exponent. Write all its digits, as the meter shows them."];
   if (chars.some((c) => "'\u2019_".includes(c))) {
     return ["thousands", "It has a mark between thousands. Write the digits alone, like 1234.5."];
   }

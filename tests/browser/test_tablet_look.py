@@ -278,12 +278,12 @@ def test_enter_arrows_and_wheel_change_and_record_nothing(page: Any, server: Loo
 
 def test_saved_is_said_only_once_it_is_so_and_received_only_on_a_receipt(page: Any, server: LookServer) -> None:
     show(page, server, at("heater_left", slow=700))
-    before = page.inner_text("[data-saved]")
-    assert before.startswith("Saved on this tablet")
+    assert page.inner_text("[data-saved]").startswith("Saved on this tablet")
     page.fill("[data-typed]", "6.30")
     page.click("[data-first]")
     page.wait_for_function("() => document.querySelector('[data-saved]').textContent === 'Saving'")
-    page.wait_for_function("(was) => { const t = document.querySelector('[data-saved]').textContent; return t.startsWith('Saved on this tablet') && t !== was; }", arg=before)
+    assert commands(page)[-1]["do"] == "read"
+    page.wait_for_function("() => document.querySelector('[data-saved]').textContent.startsWith('Saved on this tablet')")
     page.evaluate("() => globalThis.synced('received')")
     page.wait_for_function("() => document.querySelector('[data-saved]').textContent.startsWith('Received by the server')")
 
@@ -557,7 +557,7 @@ def test_a_proof_is_entered_line_by_line_and_recorded_as_one_answer(page: Any, s
 
 
 def test_a_refusal_is_said_where_the_control_has_no_field_for_it(page: Any, server: LookServer) -> None:
-    show(page, server, at("heater_on", commandSays={"code": "read-only", "says": "This run is open in another window."}))
+    show(page, server, at("danger_deck", commandSays={"code": "read-only", "says": "This run is open in another window."}))
     hold(page)
     page.wait_for_selector("[data-refused]:not(:empty)")
     assert "open in another window" in page.inner_text("[data-refused]")
