@@ -30,6 +30,14 @@ def at(step: str, procedure: str = "warm-up", **more: Any) -> Scene:
     return scene(play.to(step, picks={"next": "look"}), **more)
 
 
+def other_records() -> Scene:
+    """At the unlocking, with somebody else recording than the lock's holder."""
+    play = Play(HV).to("unlock_q1")
+    play.do({"do": "person-changed", "to": "arkle"})
+    play.sign("vell", "handed over")
+    return scene(play)
+
+
 def begun(procedure: str = "warm-up") -> Scene:
     return scene(Play(procedure))
 
@@ -210,7 +218,7 @@ def _steps() -> list[Place]:
         Place("remark", "control remark", lambda: at("what_waits")),
         Place("hold", "control hold", lambda: at("walk_round", HV)),
         Place("unlock", "control unlock", lambda: at("unlock_q1", HV)),
-        Place("unlock, holder away", "control unlock", lambda: at("unlock_q1", HV), away),
+        Place("unlock, holder away", "control unlock", other_records, away),
         Place("a rung of the ladder", "control number", lambda: at("climb_kv", HV)),
         Place("lock", "control lock", lambda: at("lock_q1", HV)),
         Place("prove", "control prove", lambda: at("prove_beam", HV)),

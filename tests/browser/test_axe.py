@@ -81,7 +81,7 @@ def opened(page: Any, server: LookServer, place: Place) -> None:
     page.set_viewport_size({"width": 820, "height": 1180})
     page.goto("about:blank")
     page.goto(f"{server.url}/app/{place.hash or '#run?run=' + made['runs'][0]['run']}")
-    page.wait_for_selector("[data-frame], .page-body")
+    page.wait_for_selector(".page-body" if place.hash else "[data-frame]")
     if place.act:
         place.act(page)
     page.evaluate(FEWER_ROWS)

@@ -160,7 +160,7 @@ def test_a_new_version_waits_while_a_run_is_open_in_any_window(tablet, server, t
       const host = document.querySelector("script[type=module]").src.replace("main.js", "host.js");
       void import(host).then((made) => made.update());
     }"""
-    with other.page.expect_navigation():
+    with other.page.expect_navigation(timeout=60_000):
         other.page.evaluate(take)
     other.host("open")
     assert other.page.evaluate("() => document.documentElement.dataset.build") != build

@@ -10,16 +10,19 @@ import os
 import subprocess
 import sys
 import time
+from concurrent.futures import ThreadPoolExecutor
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
 from typing import Any
 
+import forgeries
 import pytest
 from driving import ARGS, CHROMIUM, ROOT, Server, Tablet, refuses
 from job import Screens
 
 from fieldkit.demo import build, readings
 from fieldkit.demo.play import drawing
+from fieldkit.pdf.verify import verify
 
 pytestmark = pytest.mark.browser
 
@@ -207,3 +210,20 @@ def judge(pdf: Path, server: Real, place: Path) -> None:
     seen = subprocess.run(["pdfsig", "-nssdir", f"sql:{store}", pdf], capture_output=True, text=True).stdout
     assert seen.count("Signature is Valid") == 2, seen
     assert seen.count("Certificate is Trusted") == 2, seen
+    for name, (forged, code) in spoiled(pdf.read_bytes()).items():
+        # in a thread of its own: the browser's driver keeps an event loop in this one
+        with ThreadPoolExecutor(1) as apart:
+            report = apart.submit(verify, forged, certificate.read_text(), datetime.now(UTC) + timedelta(hours=1)).result()
+        assert code in {answer.code for answer in report.answers if answer.state == "fails"}, name
+
+
+def spoiled(data: bytes) -> dict[str, tuple[bytes, str]]:
+    """Forgeries of the very file that was just countersigned, and the answer that must fail for each."""
+    return {
+        "a byte of a page": (forgeries.page(data), "pages"),
+        "a byte of an attachment": (forgeries.attachment(data), "attachments"),
+        "a byte of the seal": (forgeries.signature(data, "Seal"), "seal"),
+        "a byte of the supervisor's signature": (forgeries.signature(data, "Supervisor"), "countersignature"),
+        "a revision appended": (forgeries.revision(data), "untouched"),
+        "the countersignature dropped": (forgeries.without_countersignature(data), "fields"),
+    }

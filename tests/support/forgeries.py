@@ -1,0 +1,65 @@
+"""What is done to a countersigned PDF by somebody who wants it to say something else; `verify` must name each.
+
+Pure functions of the file's bytes. Not here: what an insider does before sealing (tests/pdf/test_verify.py).
+"""
+
+from __future__ import annotations
+
+import io
+
+import pikepdf
+from pyhanko.pdf_utils import generic
+from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
+
+
+def flip(data: bytes, at: int) -> bytes:
+    """One bit of one byte changed."""
+    return data[:at] + bytes([data[at] ^ 1]) + data[at + 1 :]
+
+
+def stream_at(data: bytes, objid: int) -> int:
+    """Some byte in the middle of a stream's own bytes in the file."""
+    start = data.index(b"\n%d 0 obj" % objid)
+    return (data.index(b"stream\n", start) + data.index(b"endstream", start)) // 2
+
+
+def page(data: bytes, number: int = 1) -> bytes:
+    """A byte of a page's content flipped."""
+    with pikepdf.open(io.BytesIO(data)) as pdf:
+        objid = pdf.pages[number].obj.Contents.objgen[0]
+    return flip(data, stream_at(data, objid))
+
+
+def attachment(data: bytes, begins: str = "picture-") -> bytes:
+    """A byte of the first attachment whose name begins so flipped."""
+    with pikepdf.open(io.BytesIO(data)) as pdf:
+        names = list(pdf.Root.Names.EmbeddedFiles.Names)
+        spec = next(s for label, s in zip(names[::2], names[1::2], strict=True) if str(label).startswith(begins))
+        objid = spec.EF.F.objgen[0]
+    return flip(data, stream_at(data, objid))
+
+
+def signature(data: bytes, field: str) -> bytes:
+    """A byte near the end of the signature in `field` flipped."""
+    with pikepdf.open(io.BytesIO(data)) as pdf:
+        (found,) = [f for f in pdf.Root.AcroForm.Fields if str(f.T) == field]
+        contents = bytes(found.V.Contents).rstrip(b"\0").hex().upper().encode()
+    return flip(data, data.upper().index(contents) + len(contents) - 3)
+
+
+def revision(data: bytes) -> bytes:
+    """A further revision that changes the document's language."""
+    writer = IncrementalPdfFileWriter(io.BytesIO(data))
+    writer.root["/Lang"] = generic.TextStringObject("de")
+    writer.update_root()
+    out = io.BytesIO()
+    writer.write(out)
+    return out.getvalue()
+
+
+def without_countersignature(data: bytes) -> bytes:
+    """The file cut back to the revision that the seal covers."""
+    with pikepdf.open(io.BytesIO(data)) as pdf:
+        (seal,) = [f for f in pdf.Root.AcroForm.Fields if str(f.T) == "Seal"]
+        _, _, start, length = (int(n) for n in seal.V.ByteRange)
+    return data[: start + length]
