@@ -117,6 +117,11 @@ def test_a_flipped_byte_in_a_signature_is_named(countersigned, ask, field, code)
         assert "seal" not in _failing(report)
 
 
+@pytest.mark.parametrize(("field", "code"), [("Seal", "seal"), ("Supervisor", "countersignature")])
+def test_a_sign_that_is_no_digit_in_a_signature_is_named(countersigned, ask, field, code):
+    assert code in _failing(ask(forgeries.broken_signature(countersigned, field)))
+
+
 def test_an_appended_revision_is_named(countersigned, ask):
     report = ask(forgeries.revision(countersigned))
     assert "untouched" in _failing(report) and not {"seal", "countersignature"} & _failing(report)

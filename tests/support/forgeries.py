@@ -39,12 +39,25 @@ def attachment(data: bytes, begins: str = "picture-") -> bytes:
     return flip(data, stream_at(data, objid))
 
 
-def signature(data: bytes, field: str) -> bytes:
-    """A byte near the end of the signature in `field` flipped."""
+def _last_digit(data: bytes, field: str) -> int:
+    """Where a hexadecimal digit near the end of the signature in `field` stands in the file."""
     with pikepdf.open(io.BytesIO(data)) as pdf:
         (found,) = [f for f in pdf.Root.AcroForm.Fields if str(f.T) == field]
         contents = bytes(found.V.Contents).rstrip(b"\0").hex().upper().encode()
-    return flip(data, data.upper().index(contents) + len(contents) - 3)
+    return data.upper().index(contents) + len(contents) - 3
+
+
+def signature(data: bytes, field: str) -> bytes:
+    """A digit near the end of the signature in `field` made another digit: still hexadecimal, so still a PDF."""
+    at = _last_digit(data, field)
+    other = b"%x" % (int(data[at : at + 1], 16) ^ 1)
+    return data[:at] + other + data[at + 1 :]
+
+
+def broken_signature(data: bytes, field: str) -> bytes:
+    """A digit near the end of the signature in `field` made a sign that is no digit: the file is no longer sound PDF."""
+    at = _last_digit(data, field)
+    return data[:at] + b"@" + data[at + 1 :]
 
 
 def revision(data: bytes) -> bytes:
