@@ -73,15 +73,15 @@ def test_poissons_equation_at_the_child_langmuir_density_returns_the_voltage(vol
 
 @pytest.mark.parametrize(("celsius", "printed"), [(75, 1.193), (100, 1.289), (200, 1.674), (130, 1.404)])
 def test_copper_resistance_equals_published_multipliers(celsius: float, printed: float) -> None:
-    got = _call("copper_resistance", resistance=1.0, measured_at=298.15, wanted_at=273.15 + celsius)
+    got = _call("copper_resistance", resistance=1.0, from_temperature=298.15, to_temperature=273.15 + celsius)
     assert got == pytest.approx(printed, abs=1e-3)
 
 
 @pytest.mark.parametrize("celsius", range(-40, 201, 20))
 def test_copper_resistance_equals_the_temperature_coefficients(celsius: float) -> None:
-    at20 = _call("copper_resistance", resistance=5.0, measured_at=293.15, wanted_at=273.15 + celsius)
+    at20 = _call("copper_resistance", resistance=5.0, from_temperature=293.15, to_temperature=273.15 + celsius)
     assert at20 / 5.0 == pytest.approx(1 + 0.00393 * (celsius - 20), rel=1e-3)
-    at75 = _call("copper_resistance", resistance=5.0, measured_at=348.15, wanted_at=273.15 + celsius)
+    at75 = _call("copper_resistance", resistance=5.0, from_temperature=348.15, to_temperature=273.15 + celsius)
     assert at75 / 5.0 == pytest.approx(1 + 0.00323 * (celsius - 75), rel=1e-3)
 
 
@@ -104,9 +104,9 @@ def test_discharge_time_equals_the_differential_equation(
     reached.terminal = True  # type: ignore[attr-defined]
     tau = resistance * capacitance
     solved = solve_ivp(falls, (0, 50 * tau), [start], events=reached, rtol=1e-11, atol=1e-9, method="DOP853")
-    time = _call("discharge_time", start=start, end=end, resistance=resistance, capacitance=capacitance)
+    time = _call("discharge_time", initial=start, safe=end, resistance=resistance, capacitance=capacitance)
     assert time == pytest.approx(solved.t_events[0][0], rel=1e-6)
-    left = _call("discharge_voltage", start=start, resistance=resistance, capacitance=capacitance, time=time)
+    left = _call("discharge_voltage", initial=start, resistance=resistance, capacitance=capacitance, time=time)
     assert left == pytest.approx(end, rel=1e-9)
 
 
