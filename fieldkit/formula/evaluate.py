@@ -105,8 +105,8 @@ class _Work:
         return entry.apply(*given)
 
     def _choose(self, function: str, of: list[Any], depth: int) -> Value:
-        """if, and, or: only what is needed for the answer is evaluated."""
-        parts = of[:1] if function == "if" else of
+        """if, holds, and, or: only what is needed for the answer is evaluated."""
+        parts = of[:1] if function in ("if", "holds") else of
         for part in parts:
             flag = self.value(part, depth + 1)
             if isinstance(flag, Fault):
@@ -115,6 +115,8 @@ class _Work:
                 return Fault("wrong-type", f"{function} was given something that is no yes or no.")
             if function == "if":
                 return self.value(of[1] if flag else of[2], depth + 1)
+            if function == "holds":
+                return self.value(of[2], depth + 1) if flag else _not_held(self.value(of[1], depth + 1))
             if flag is (function == "or"):
                 return flag
         return function == "and"
@@ -172,6 +174,13 @@ class _Work:
         return _interpolate(str(table.get("name")), at, xs, ys)
 
 
+def _not_held(says: Value) -> Fault:
+    """The answer of `holds` where its condition does not hold; `says` tells the person which one."""
+    if isinstance(says, Fault):
+        return says
+    return Fault("out-of-range", says) if isinstance(says, str) else Fault("wrong-type", "holds has no sentence.")
+
+
 def _interpolate(name: str, at: float, xs: list[float], ys: list[float]) -> Value:
     """Linear between neighbours; at a node exactly the node's value."""
     if at < xs[0] or at > xs[-1]:
@@ -198,14 +207,21 @@ def _outside(function: str, argument: Any, value: Value) -> Fault | None:
         return _bad_tree()
     if not isinstance(factor, float) or not isinstance(offset, float) or factor <= 0.0:
         return _bad_tree()
-    if (least is None or value >= least) and (most is None or value <= most):
-        return None
+    whole = _part(argument, "whole")
+    if whole is not None and type(whole) is not bool:
+        return _bad_tree()
     unit = _Scale(str(_part(argument, "factor")), str(_part(argument, "offset")))
-    symbol = _part(argument, "unit")
-    ends = [("from", least), ("to", most)]
-    span = " ".join(f"{word} {values.to_shown(end, unit)}" for word, end in ends if end is not None)
-    says = f"{function}: {name} is {values.to_shown(value, unit)} {symbol}; the formula holds {span} {symbol}."
-    return Fault("out-of-range", says)
+    symbol = str(_part(argument, "unit"))
+    after = "" if symbol in ("", "1") else f" {symbol}"
+    if (least is not None and value < least) or (most is not None and value > most):
+        ends = [("from", least), ("to", most)]
+        span = " ".join(f"{word} {values.to_shown(end, unit)}" for word, end in ends if end is not None)
+        says = f"{function}: {name} is {values.to_shown(value, unit)}{after}; the formula holds {span}{after}."
+        return Fault("out-of-range", says)
+    if whole and value != math.floor(value):
+        shown = values.to_shown(value, unit)
+        return Fault("out-of-range", f"{function}: {name} is {shown}{after}; only whole numbers.")
+    return None
 
 
 def _end(text: Any) -> float | Fault | None:
@@ -241,7 +257,7 @@ def _numbers(texts: list[Any]) -> list[float] | None:
 
 def _part(thing: Any, name: str) -> Any:
     """A part of a FormulaUsed or Argument, or of the same as plain JSON."""
-    return thing.get(name) if isinstance(thing, Mapping) else getattr(thing, name)
+    return thing.get(name) if isinstance(thing, Mapping) else getattr(thing, name, None)
 
 
 def _bad_tree() -> Fault:

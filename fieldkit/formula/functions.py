@@ -5,7 +5,8 @@ argument is a column of numbers, how its units behave (read by check.py) and wha
 no Faults: doubles, flags, texts; a column comes as a tuple of doubles. It answers with a value or a Fault.
 
 The twin is static/core/functions.js. To add one: an entry here, one there, rows in tests/vectors/formula/.
-Not here: `if`, `and`, `or` choose what is evaluated, so evaluate.py does them; their entries have no `apply`.
+Not here: `if`, `and`, `or`, `holds` choose what is evaluated, so evaluate.py does them; their entries have no `apply`.
+`holds` is not written in formulas: the library puts it round a tree for each condition that its entry requires.
 """
 
 from __future__ import annotations
@@ -153,6 +154,7 @@ FUNCTIONS: dict[str, Function] = {
     "or": Function(2, None, "operator", "flags", "a or b"),
     "not": Function(1, 1, "operator", "flags", "not a", _not),
     "if": Function(3, 3, "call", "choose", "if(condition, a, b): a where it holds, else b"),
+    "holds": Function(3, 3, "operator", "choose", "a where the condition holds, else out-of-range with a text"),
     "min": _numeric("min", 1, None, "call", "same", "min(a, b, ...): the least", _least),
     "max": _numeric("max", 1, None, "call", "same", "max(a, b, ...): the greatest", _most),
     "average": _numeric("average", 1, None, "call", "same", "average(a, b, ...): their mean", _average),

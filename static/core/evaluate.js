@@ -9,7 +9,7 @@ import { FUNCTIONS } from "./functions.js";
 import { Fault, number, round12, to_shown } from "./values.js";
 
 /** @typedef {import("./functions.js").Value} Value */
-/** @typedef {{name: string, unit: string, low: string | null, high: string | null, factor: string, offset: string}} Argument */
+/** @typedef {{name: string, unit: string, low: string | null, high: string | null, factor: string, offset: string, whole?: boolean}} Argument */
 /** @typedef {{arguments: Argument[], tree: any}} FormulaUsed */
 
 export const DEEPEST = 120;
@@ -98,9 +98,9 @@ class Work {
     return given;
   }
 
-  /** if, and, or. @param {string} name @param {any[]} of @param {number} depth @returns {Value} */
+  /** if, holds, and, or. @param {string} name @param {any[]} of @param {number} depth @returns {Value} */
   choose(name, of, depth) {
-    const parts = name === "if" ? of.slice(0, 1) : of;
+    const parts = name === "if" || name === "holds" ? of.slice(0, 1) : of;
     for (const part of parts) {
       const flag = this.value(part, depth + 1);
       if (flag instanceof Fault) return flag;
@@ -108,6 +108,7 @@ class Work {
         return new Fault("wrong-type", `${name} was given something that is no yes or no.`);
       }
       if (name === "if") return this.value(flag ? of[1] : of[2], depth + 1);
+      if (name === "holds") return flag ? this.value(of[2], depth + 1) : not_held(this.value(of[1], depth + 1));
       if (flag === (name === "or")) return flag;
     }
     return name === "and";
@@ -171,6 +172,12 @@ class Work {
   }
 }
 
+/** The answer of `holds` where its condition does not hold. @param {Value} says which one @returns {Fault} */
+function not_held(says) {
+  if (says instanceof Fault) return says;
+  return typeof says === "string" ? new Fault("out-of-range", says) : new Fault("wrong-type", "holds has no sentence.");
+}
+
 /** Linear between neighbours. @param {string} name @param {number} at @param {number[]} xs @param {number[]} ys @returns {Value} */
 function interpolate(name, at, xs, ys) {
   if (at < xs[0] || at > xs[xs.length - 1]) {
@@ -191,12 +198,20 @@ function out_of_range(name, argument, value) {
   const [factor, offset] = [end_of(argument.factor), end_of(argument.offset)];
   if (least instanceof Fault || most instanceof Fault) return bad_tree();
   if (typeof factor !== "number" || typeof offset !== "number" || factor <= 0) return bad_tree();
-  if ((least === null || value >= least) && (most === null || value <= most)) return null;
-  /** @type {[string, number | null][]} */
-  const ends = [["from", least], ["to", most]];
-  const span = ends.flatMap(([word, end]) => (end === null ? [] : [`${word} ${to_shown(end, argument)}`])).join(" ");
-  const says = `${name}: ${argument.name} is ${to_shown(value, argument)} ${argument.unit}; the formula holds ${span} ${argument.unit}.`;
-  return new Fault("out-of-range", says);
+  const whole = argument.whole ?? null;
+  if (whole !== null && typeof whole !== "boolean") return bad_tree();
+  const shown = to_shown(value, argument);
+  const after = argument.unit === "" || argument.unit === "1" ? "" : ` ${argument.unit}`;
+  if ((least !== null && value < least) || (most !== null && value > most)) {
+    /** @type {[string, number | null][]} */
+    const ends = [["from", least], ["to", most]];
+    const span = ends.flatMap(([word, end]) => (end === null ? [] : [`${word} ${to_shown(end, argument)}`])).join(" ");
+    return new Fault("out-of-range", `${name}: ${argument.name} is ${shown}${after}; the formula holds ${span}${after}.`);
+  }
+  if (whole === true && value !== Math.floor(value)) {
+    return new Fault("out-of-range", `${name}: ${argument.name} is ${shown}${after}; only whole numbers.`);
+  }
+  return null;
 }
 
 /** A decimal text as a number, null as none; a Fault for anything else. @param {any} text @returns {number | null | Fault} */

@@ -2,8 +2,8 @@
  * Every function and operator of the formula language, one entry a line in FUNCTIONS.
  *
  * Twin of fieldkit/formula/functions.py, same names, same order; a test compares the two lists. `apply` gets values
- * that are no Faults (a column as an array of numbers) and answers with a value or a Fault. `if`, `and`, `or` choose
- * what is evaluated, so evaluate.js does them; their entries have no `apply`. No DOM, no IO.
+ * that are no Faults (a column as an array of numbers) and answers with a value or a Fault. `if`, `and`, `or`, `holds`
+ * choose what is evaluated, so evaluate.js does them; their entries have no `apply`. No DOM, no IO.
  */
 
 import * as elementary from "./elementary.js";
@@ -123,6 +123,7 @@ export const FUNCTIONS = new Map([
   ["or", general(2, null, null)],
   ["not", general(1, 1, not)],
   ["if", general(3, 3, null)],
+  ["holds", general(3, 3, null)],
   ["min", numeric("min", 1, null, least)],
   ["max", numeric("max", 1, null, most)],
   ["average", numeric("average", 1, null, average)],

@@ -7,6 +7,8 @@ import random
 import struct
 from typing import Any
 
+import pytest
+
 from fieldkit.formula import ast, evaluate, parse
 from fieldkit.formula.functions import FUNCTIONS
 from fieldkit.values import FAULTS, Fault
@@ -51,6 +53,25 @@ def test_too_much_work_is_a_fault_in_both_languages(twins: Any) -> None:
 def test_a_plain_tree_and_its_json_give_the_same() -> None:
     tree = parse.parse("1.4 * idle")
     assert evaluate.evaluate(tree, {"idle": 0.42}) == evaluate.evaluate(ast.to_json(tree), {"idle": 0.42}) == 0.42 * 1.4
+
+
+SENTENCES = {
+    "channel(14.5)": "channel: channel is 14.5; only whole numbers.",
+    "channel(70)": "channel: channel is 70; the formula holds from 1 to 69.",
+    "anything(-4, -0.5)": "anything: uncertainty is -0.5; the formula holds from 0.",
+    "mark(1, 1)": "mark: the reflected power must be below the forward power",
+    "mark(1, -1)": "mark: reflected is -1 W; the formula holds from 0 W.",
+}
+
+
+@pytest.mark.parametrize("call", SENTENCES)
+def test_a_person_is_told_what_is_out_of_range_in_both_languages(call: str, twins: Any, vectors: Any) -> None:
+    formulas = next(c["args"][3] for c in vectors("formula") if c["name"].startswith("channel("))
+    name, _, given = call.removesuffix(")").partition("(")
+    tree = {"call": name, "of": [{"number": text} for text in given.split(", ")]}
+    for language in (twins.python, twins.javascript):
+        (answer,) = language([("evaluate", [tree, {}, {}, formulas])])
+        assert answer["value"] == {"fault": "out-of-range", "says": SENTENCES[call]}
 
 
 class _Maker:
