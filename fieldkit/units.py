@@ -17,7 +17,8 @@ from typing import Any
 
 from fieldkit import values
 
-BASES = ("kg", "m", "s", "A", "K", "dB")
+#: the last is the unit, whichever it is, of a formula that takes any (see ANY)
+BASES = ("kg", "m", "s", "A", "K", "dB", "any")
 
 
 @dataclass(frozen=True)
@@ -43,6 +44,8 @@ class Dimension:
         """How to name it to a writer: "V" where one of the units has it, else its powers, like "kg m2 s-3"."""
         if self.absolute:
             return "degC"
+        if self == ANY.dimension:
+            return "any unit"
         for symbol, unit in UNITS.items():
             if unit.dimension == self and unit.factor == "1":
                 return "a plain number" if symbol == "1" else symbol
@@ -87,6 +90,15 @@ _AREA = dimension(m=2)
 _LEVEL = dimension(dB=1)
 _DENSITY = dimension(kg=1, m=-3)
 _HEAT = dimension(m=2, s=-2, K=-1)
+#: of perveance: A / V^1.5
+_PERV = _AMPERE.over(_VOLT.to_power(Fraction(3, 2)))
+_EMISSION = dimension(A=1, m=-2, K=-2)
+
+#: exact by the definition of the ampere (SI, 2019), of the torr and of the inch
+_ELECTRON_VOLT = Fraction("1.602176634e-19")
+_TORR = Fraction(101_325, 760)
+_INCH = Fraction("0.0254")
+_GALLON = 231 * _INCH**3
 
 _PI = Fraction("3.14159265358979323846264338327950288")
 
@@ -113,19 +125,27 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("nF", "nF", "0.000000001", _FARAD),
     ("pF", "pF", "0.000000000001", _FARAD),
     ("F/m", "F/m", "1", _FARAD.over(_METRE)),
+    ("perv", "perv", "1", _PERV),
+    ("uperv", "µperv", "0.000001", _PERV),
     ("s", "s", "1", _SECOND),
     ("ms", "ms", "0.001", _SECOND),
     ("us", "µs", "0.000001", _SECOND),
+    ("ns", "ns", "0.000000001", _SECOND),
     ("min", "min", "60", _SECOND),
     ("h", "h", "3600", _SECOND),
     ("d", "d", "86400", _SECOND),
     ("Hz", "Hz", "1", _HERTZ),
     ("kHz", "kHz", "1000", _HERTZ),
     ("MHz", "MHz", "1000000", _HERTZ),
+    ("GHz", "GHz", "1000000000", _HERTZ),
     ("m", "m", "1", _METRE),
     ("cm", "cm", "0.01", _METRE),
     ("mm", "mm", "0.001", _METRE),
     ("um", "µm", "0.000001", _METRE),
+    ("nm", "nm", "0.000000001", _METRE),
+    ("pm", "pm", "0.000000000001", _METRE),
+    ("in", "in", _INCH, _METRE),
+    ("ft", "ft", 12 * _INCH, _METRE),
     ("m2", "m²", "1", _AREA),
     ("cm2", "cm²", "0.0001", _AREA),
     ("mm2", "mm²", "0.000001", _AREA),
@@ -136,6 +156,7 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("m3/h", "m³/h", Fraction(1, 3600), _FLOW),
     ("L/s", "L/s", "0.001", _FLOW),
     ("L/min", "L/min", Fraction(1, 60_000), _FLOW),
+    ("gal/min", "gal/min", _GALLON / 60, _FLOW),
     ("kg", "kg", "1", dimension(kg=1)),
     ("g", "g", "0.001", dimension(kg=1)),
     ("kg/m3", "kg/m³", "1", _DENSITY),
@@ -143,6 +164,8 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("J", "J", "1", _JOULE),
     ("kJ", "kJ", "1000", _JOULE),
     ("mJ", "mJ", "0.001", _JOULE),
+    ("eV", "eV", _ELECTRON_VOLT, _JOULE),
+    ("keV", "keV", 1000 * _ELECTRON_VOLT, _JOULE),
     ("J/kg/K", "J/(kg K)", "1", _HEAT),
     ("kJ/kg/K", "kJ/(kg K)", "1000", _HEAT),
     ("K", "K", "1", _KELVIN),
@@ -151,12 +174,20 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("kPa", "kPa", "1000", _PASCAL),
     ("bar", "bar", "100000", _PASCAL),
     ("mbar", "mbar", "100", _PASCAL),
+    ("Torr", "Torr", _TORR, _PASCAL),
+    ("A s/Torr/L", "A/(Torr L/s)", 1000 / _TORR, _AMPERE.over(_PASCAL).over(_FLOW)),
     ("T", "T", "1", _TESLA),
     ("mT", "mT", "0.001", _TESLA),
     ("A/m2", "A/m²", "1", dimension(A=1, m=-2)),
     ("A/cm2", "A/cm²", "10000", dimension(A=1, m=-2)),
+    ("A/m2/K2", "A/(m² K²)", "1", _EMISSION),
+    ("A/cm2/K2", "A/(cm² K²)", "10000", _EMISSION),
+    ("A s", "A s", "1", dimension(A=1, s=1)),
+    ("J s", "J s", "1", _JOULE.times(_SECOND)),
+    ("J/K", "J/K", "1", _JOULE.over(_KELVIN)),
     ("W/m2", "W/m²", "1", dimension(kg=1, s=-3)),
     ("mW/cm2", "mW/cm²", "10", dimension(kg=1, s=-3)),
+    ("uW/cm2", "µW/cm²", "0.01", dimension(kg=1, s=-3)),
     ("A2s", "A²s", "1", dimension(A=2, s=1)),
     ("ohm/m", "Ω/m", "1", _OHM.over(_METRE)),
     ("Mohm/cm", "MΩ/cm", "100000000", _OHM.over(_METRE)),
@@ -189,8 +220,14 @@ UNITS: dict[str, Unit] = {line[0]: _unit(*line) for line in _LINES}
 #: the one unit with an offset: a temperature on the Celsius scale
 UNITS["degC"] = _unit("degC", "°C", "1", Dimension(_KELVIN.powers, absolute=True), "273.15")
 
+#: what a formula's argument takes when any unit will do, the same for all such arguments, and a difference of such
+#: values; never a unit of a value, so no symbol of UNITS
+ANY = Unit("any", "", "1", "0", dimension(any=1), Fraction(1))
+ANY_DIFFERENCE = Unit("any difference", "", "1", "0", dimension(any=1), Fraction(1))
+
 #: other spellings that are read, by what they become
 _READ_AS = {"\u00b5": "u", "\u03bc": "u", "\u2126": "ohm", "\u03a9": "ohm", "°C": "degC", "²": "2", "³": "3"}
+_READ_AS |= {"A/(Torr L/s)": "A s/Torr/L", "J/(kg K)": "J/kg/K", "A/(m2 K2)": "A/m2/K2", "A/(cm2 K2)": "A/cm2/K2"}
 
 
 def plain(symbol: str) -> str:
@@ -224,8 +261,14 @@ def shown(symbol: str) -> str:
 
 
 def table() -> dict[str, dict[str, Any]]:
-    """All units as plain JSON for the kit: {symbol: {factor, offset, dimension, shown}}."""
+    """All units as plain JSON for the kit: {symbol: {factor, offset, dimension, absolute, shown}}."""
     return {
-        symbol: {"factor": u.factor, "offset": u.offset, "dimension": u.dimension.to_json(), "shown": u.shown}
+        symbol: {
+            "factor": u.factor,
+            "offset": u.offset,
+            "dimension": u.dimension.to_json(),
+            "absolute": u.dimension.absolute,
+            "shown": u.shown,
+        }
         for symbol, u in UNITS.items()
     }

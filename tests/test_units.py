@@ -47,6 +47,17 @@ PINT = {
     "uS/cm": "microsiemens/cm",
     "S/m": "siemens/m",
     "deg": "degree",
+    "perv": "A/V**1.5",
+    "uperv": "microampere/V**1.5",
+    "in": "inch",
+    "gal/min": "gallon/minute",
+    "Torr": "torr",
+    "A s/Torr/L": "A*s/torr/liter",
+    "A/m2/K2": "A/m**2/K**2",
+    "A/cm2/K2": "A/cm**2/K**2",
+    "A s": "A*s",
+    "J s": "J*s",
+    "uW/cm2": "microwatt/cm**2",
 }
 LEVELS = ("dB", "dBm")
 BASES = {"kg": "[mass]", "m": "[length]", "s": "[time]", "A": "[current]", "K": "[temperature]"}
@@ -62,7 +73,7 @@ def test_factor_and_dimension_equal_pint(symbol: str, registry: pint.UnitRegistr
     unit = units.UNITS[symbol]
     quantity = registry.Quantity(1, PINT.get(symbol, symbol)).to_base_units()
     assert float(unit.factor) == pytest.approx(quantity.magnitude, rel=1e-14)
-    want = {BASES[b]: int(p) for b, p in zip(units.BASES, unit.dimension.powers, strict=True) if p}
+    want = {BASES[b]: float(p) for b, p in zip(units.BASES, unit.dimension.powers, strict=True) if p}
     assert dict(quantity.dimensionality) == want
 
 
@@ -84,6 +95,10 @@ def test_the_celsius_scale_equals_pint(registry: pint.UnitRegistry) -> None:
         ("mW/cm²", "mW/cm2"),
         ("µSv/h", "uSv/h"),
         ("kV", "kV"),
+        ("A/(Torr L/s)", "A s/Torr/L"),
+        ("J/(kg K)", "J/kg/K"),
+        ("A/(cm² K²)", "A/cm2/K2"),
+        ("µperv", "uperv"),
     ],
 )
 def test_other_spellings_are_read(written: str, symbol: str) -> None:
@@ -113,5 +128,7 @@ def test_conversions_there_and_back_give_the_text_again() -> None:
 def test_the_table_for_the_kit_holds_every_unit() -> None:
     table = units.table()
     assert set(table) == set(units.UNITS)
-    assert table["uA"] == {"factor": "0.000001", "offset": "0", "dimension": {"A": "1"}, "shown": "µA"}
+    want = {"factor": "0.000001", "offset": "0", "dimension": {"A": "1"}, "absolute": False, "shown": "µA"}
+    assert table["uA"] == want
+    assert table["degC"]["absolute"] is True
     assert table["degC"]["offset"] == "273.15"

@@ -60,6 +60,13 @@ class FormulaKind(Protocol):
     def unit(self) -> units.Unit: ...
 
 
+class PairKind(Protocol):
+    """What check wants to know of a pair: the two formulas."""
+
+    @property
+    def of(self) -> tuple[str, str]: ...
+
+
 @dataclass(frozen=True)
 class Checked:
     kind: Kind | None
@@ -72,16 +79,18 @@ def check(
     *,
     series: Mapping[str, Kind] | None = None,
     library: Mapping[str, FormulaKind] | None = None,
+    pairs: Mapping[str, PairKind] | None = None,
     known: Mapping[str, Collection[str]] | None = None,
     want: Kind | None = None,
 ) -> Checked:
     """Everything wrong with a formula, and the kind of its answer.
 
-    `names` and `series` give the kind of each name and column; `known` gives, for a prefix such as "state" or "since",
+    `names` and `series` give the kind of each name and column; `pairs` are told as what they are, and which of the two
+    formulas to use; `known` gives, for a prefix such as "state" or "since",
     the words that exist ("heater"), and where a prefix is left out any word is taken; `want` is what the answer must
     be.
     """
-    work = _Check(parsed, names, series or {}, library or {}, known or {})
+    work = _Check(parsed, names, series or {}, library or {}, known or {}, pairs or {})
     kind = work.kind(parsed.term)
     if want is not None and kind is not None and not _fits(kind, want):
         says = f"this gives {words(kind)}, and {words(want)} is needed"
@@ -103,6 +112,23 @@ def _fits(kind: Kind, want: Kind) -> bool:
     return kind == want
 
 
+def _bound(formula: FormulaKind, given: Mapping[str, Kind | None]) -> Dimension | None:
+    """The dimension that stands for "any unit" in one call: that of the first such argument that has one."""
+    kinds = (given.get(a.name) for a in formula.arguments if a.unit == units.ANY)
+    spreads = (given.get(a.name) for a in formula.arguments if a.unit == units.ANY_DIFFERENCE)
+    return next((k for k in (*kinds, *spreads) if isinstance(k, Dimension)), None)
+
+
+def _wanted(unit: units.Unit, bound: Dimension | None) -> tuple[Dimension | None, str]:
+    """What an argument or an answer in `unit` must be, and its name; None where nothing tells yet."""
+    if unit not in (units.ANY, units.ANY_DIFFERENCE):
+        return unit.dimension, unit.symbol
+    if bound is None:
+        return None, ""
+    dimension = bound if unit == units.ANY else Dimension(bound.powers)
+    return dimension, "degC" if dimension.absolute else words(dimension)
+
+
 class _Check:
     def __init__(
         self,
@@ -111,12 +137,14 @@ class _Check:
         series: Mapping[str, Kind],
         library: Mapping[str, FormulaKind],
         known: Mapping[str, Collection[str]],
+        pairs: Mapping[str, PairKind],
     ) -> None:
         self.text = parsed.text
         self.names = names
         self.series = series
         self.library = library
         self.known = known
+        self.pairs = pairs
         self.spots: list[Spot] = []
 
     def add(self, term: Term, code: str, message: str, remedy: str = "") -> None:
@@ -182,18 +210,22 @@ class _Check:
     def call(self, term: Term) -> Kind | None:
         given = {n: (t, self.kind(t)) for n, t in zip(term.named, term.of, strict=True) if n}
         formula = self.library.get(term.what)
+        if formula is None and term.what in self.pairs:
+            remedy = f"write {' or '.join(self.pairs[term.what].of)}"
+            self.add(term, "pair-not-number", f"{term.what} gives two values", remedy)
+            return None
         if formula is None:
             self.spots.append(parse.unknown_function(term, {n: () for n in self.library}))
             return None
         self.spots.extend(parse.argument_problems(term, [a.name for a in formula.arguments]))
+        bound = _bound(formula, {n: kind for n, (_, kind) in given.items()})
         for argument in formula.arguments:
             part, kind = given.get(argument.name, (term, None))
-            if kind is not None and not _fits(kind, argument.unit.dimension):
-                says = (
-                    f"{argument.name} of {term.what} is in {argument.unit.symbol}; {self.quote(part)} is {words(kind)}"
-                )
-                self.add(part, "unit-mismatch", says, f"give it something in {argument.unit.symbol}")
-        return formula.unit.dimension
+            want, symbol = _wanted(argument.unit, bound)
+            if kind is not None and want is not None and not _fits(kind, want):
+                says = f"{argument.name} of {term.what} is in {symbol}; {self.quote(part)} is {words(kind)}"
+                self.add(part, "unit-mismatch", says, f"give it something in {symbol}")
+        return _wanted(formula.unit, bound)[0]
 
     def numbers(self, term: Term, of: Sequence[Kind | None], *, differences: bool = False) -> list[Dimension] | None:
         """The dimensions of all parts; None, with a problem, where one is no number (or a temperature on a scale)."""

@@ -93,6 +93,8 @@ class Argument(Part):
     offset: str = "0"
     low: str | None = None
     high: str | None = None
+    #: whole numbers only, as a channel is
+    whole: bool = False
 
 
 class FormulaUsed(Part):

@@ -72,7 +72,7 @@ def _check(parsed: Parsed, want: Want, names: dict[str, Named], library: Library
     kinds = {n: v.dimension for n, v in names.items() if v.dimension is not None and not v.series}
     columns = {n: v.dimension for n, v in names.items() if v.dimension is not None and (v.series or v.order)}
     wanted = want if want is None or isinstance(want, str) else words.dimension(want)
-    return check.check(parsed, kinds, series=columns, library=library.formulas, want=wanted).spots
+    return check.check(parsed, kinds, series=columns, library=library.formulas, pairs=library.pairs, want=wanted).spots
 
 
 def _speaks_of_broken(term: Term, names: dict[str, Named]) -> bool:

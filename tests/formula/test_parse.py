@@ -144,7 +144,7 @@ def test_each_mistake_has_its_code_and_column(text: str, code: str, column: int)
 
 REMEDIES = [
     ("27kV", "write 27 kV"),
-    ("27 kVolt", "write kV"),
+    ("27 kVolt", "write one of: kV, keV"),
     ("40 C", "write degC"),
     (".5", "write 0.5"),
     ("5.", "write 5"),
