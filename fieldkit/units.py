@@ -160,6 +160,8 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("kg", "kg", "1", dimension(kg=1)),
     ("g", "g", "0.001", dimension(kg=1)),
     ("kg/m3", "kg/m³", "1", _DENSITY),
+    ("g/cm3", "g/cm³", "1000", _DENSITY),
+    ("cm2/g", "cm²/g", "0.1", dimension(kg=-1, m=2)),
     ("kg/s", "kg/s", "1", dimension(kg=1, s=-1)),
     ("J", "J", "1", _JOULE),
     ("kJ", "kJ", "1000", _JOULE),

@@ -34,6 +34,8 @@ PINT = {
     "min": "minute",
     "h": "hour",
     "kg/m3": "kg/m**3",
+    "g/cm3": "g/cm**3",
+    "cm2/g": "cm**2/g",
     "degC": "kelvin",
     "A/m2": "A/m**2",
     "A/cm2": "A/cm**2",
