@@ -14,7 +14,7 @@ from typing import Any
 
 from fieldkit import units
 from fieldkit.errors import Collector
-from fieldkit.formula import nodes, parse, quantities
+from fieldkit.formula import blocks, parse, quantities
 from fieldkit.units import Unit
 from fieldkit.yaml_source import Mapping, Node, Scalar
 
@@ -60,21 +60,21 @@ def read(node: Node | None, found: Collector) -> tuple[Argument, ...] | None:
 
 
 def _block(node: Node, found: Collector) -> Mapping | None:
-    return nodes.mapping(node, found, "arguments")
+    return blocks.mapping(node, found, "arguments")
 
 
 def _argument(name: str, place: Any, node: Node, found: Collector) -> Argument | None:
-    part = nodes.mapping(node, found, name)
+    part = blocks.mapping(node, found, name)
     if part is None:
         return None
     if not NAME.fullmatch(name) or name in parse.SPACES:
         found.add(place, "argument-name", f'"{name}" cannot name an argument', "write small letters and _")
-    nodes.only(part, _KEYS, found, "an argument")
-    unit = quantities.unit_of(part.get("unit"), found) if nodes.present(part, "unit", found) else None
+    blocks.only(part, _KEYS, found, "an argument")
+    unit = quantities.unit_of(part.get("unit"), found) if blocks.present(part, "unit", found) else None
     if unit is None:
         return None
     low, high = (quantities.quantity(part.get(k), unit, found) for k in ("low", "high"))
-    return Argument(name, unit, low, high, nodes.text(part, "meaning", found) or "", _whole(part, found))
+    return Argument(name, unit, low, high, blocks.text(part, "meaning", found) or "", _whole(part, found))
 
 
 def _whole(part: Mapping, found: Collector) -> bool:

@@ -11,7 +11,7 @@ import re
 from itertools import pairwise
 
 from fieldkit.errors import Collector
-from fieldkit.formula import nodes, quantities
+from fieldkit.formula import blocks, quantities
 from fieldkit.formula.arguments import Argument
 from fieldkit.formula.spots import one_of
 from fieldkit.units import Unit
@@ -25,11 +25,11 @@ Columns = tuple[str, tuple[str, ...], tuple[str, ...]]
 
 def read(node: Node, arguments: tuple[Argument, ...], unit: Unit | None, found: Collector) -> Columns | None:
     """The table, its numbers in SI; None, with problems, where it cannot be used."""
-    block = nodes.mapping(node, found, "the table")
+    block = blocks.mapping(node, found, "the table")
     if block is None or unit is None:
         return None
-    nodes.only(block, ("of", "x", "y"), found, "a table")
-    of = nodes.text(block, "of", found)
+    blocks.only(block, ("of", "x", "y"), found, "a table")
+    of = blocks.text(block, "of", found)
     argument = next((a for a in arguments if a.name == of), None)
     if argument is None:
         if of is not None:

@@ -13,7 +13,7 @@ from typing import Any, Union
 
 from fieldkit.errors import Collector, Place
 from fieldkit.formula import arguments as _arguments
-from fieldkit.formula import ast, columns, functions, nodes, parse, quantities, worked
+from fieldkit.formula import ast, blocks, columns, functions, parse, quantities, worked
 from fieldkit.formula.arguments import Argument
 from fieldkit.formula.columns import Columns
 from fieldkit.formula.spots import one_of
@@ -139,15 +139,15 @@ def formula(draft: Draft, tree: dict[str, Any], uses: tuple[str, ...]) -> Formul
 
 def read(root: Node, found: Collector) -> Iterator[Union[Draft, Pair]]:
     """The entries of one file in order: those with a problem of form are told and left out."""
-    top = nodes.mapping(root, found, "this file")
+    top = blocks.mapping(root, found, "this file")
     if top is None:
         return
-    nodes.only(top, ("subject", "formulas"), found, "a formula file")
-    subject = nodes.text(top, "subject", found)
-    entries = nodes.mapping(top.get("formulas"), found, "formulas") if nodes.present(top, "formulas", found) else None
+    blocks.only(top, ("subject", "formulas"), found, "a formula file")
+    subject = blocks.text(top, "subject", found)
+    entries = blocks.mapping(top.get("formulas"), found, "formulas") if blocks.present(top, "formulas", found) else None
     for e in entries or ():
         before = len(found.problems)
-        block = nodes.mapping(e.value, found, e.key)
+        block = blocks.mapping(e.value, found, e.key)
         if block is None:
             continue
         read_one = _pair if "pair" in block else _formula
@@ -172,17 +172,17 @@ def _named(name: str, place: Place, found: Collector) -> None:
 
 def _pair(name: str, place: Place, block: Mapping, subject: str, found: Collector) -> Pair | None:
     _named(name, place, found)
-    nodes.only(block, _PAIR_KEYS, found, "a pair of formulas")
+    blocks.only(block, _PAIR_KEYS, found, "a pair of formulas")
     for key in ("meaning", "reference", "decides"):
-        nodes.present(block, key, found)
+        blocks.present(block, key, found)
     node = block.get("pair")
-    of = tuple(nodes.texts(node, found))
+    of = tuple(blocks.texts(node, found))
     if len(of) != 2:
         where = node.place if node is not None else block.place
         found.add(where, "pair-of-two", f"a pair names two formulas, not {len(of)}", "write pair: [lowest, highest]")
         return None
-    texts = {k: nodes.text(block, k, found) or "" for k in ("meaning", "reference", "decides")}
-    cautions = tuple(nodes.texts(block.get("cautions"), found))
+    texts = {k: blocks.text(block, k, found) or "" for k in ("meaning", "reference", "decides")}
+    cautions = tuple(blocks.texts(block.get("cautions"), found))
     return Pair(
         name,
         subject,
@@ -198,9 +198,9 @@ def _pair(name: str, place: Place, block: Mapping, subject: str, found: Collecto
 
 def _formula(name: str, place: Place, block: Mapping, subject: str, found: Collector) -> Draft | None:
     _named(name, place, found)
-    nodes.only(block, _KEYS, found, "a formula")
+    blocks.only(block, _KEYS, found, "a formula")
     for key in _NEEDED:
-        nodes.present(block, key, found)
+        blocks.present(block, key, found)
     arguments = _arguments.read(block.get("arguments"), found)
     unit = quantities.unit_of(block.get("unit"), found)
     expression, table = _body(block, arguments, unit, found)
@@ -211,12 +211,12 @@ def _formula(name: str, place: Place, block: Mapping, subject: str, found: Colle
         subject,
         found.file,
         place,
-        nodes.text(block, "meaning", found) or "",
+        blocks.text(block, "meaning", found) or "",
         arguments,
         unit,
-        nodes.text(block, "reference", found) or "",
-        nodes.text(block, "decides", found) or "",
-        tuple(nodes.texts(block.get("cautions"), found)),
+        blocks.text(block, "reference", found) or "",
+        blocks.text(block, "decides", found) or "",
+        tuple(blocks.texts(block.get("cautions"), found)),
         tuple(worked.read(block.get("examples"), arguments, unit, found)),
         expression,
         table,
@@ -232,13 +232,13 @@ def _requires(node: Node | None, found: Collector) -> Iterator[Requirement]:
         found.add(node.place, "not-a-list", "requires is not a list", "write each condition after a -")
         return
     for item in node:
-        block = nodes.mapping(item, found, "a requirement")
+        block = blocks.mapping(item, found, "a requirement")
         if block is None:
             continue
-        nodes.only(block, ("where", "otherwise"), found, "a requirement")
-        where, said = block.get("where"), nodes.text(block, "otherwise", found)
+        blocks.only(block, ("where", "otherwise"), found, "a requirement")
+        where, said = block.get("where"), blocks.text(block, "otherwise", found)
         for key in ("where", "otherwise"):
-            nodes.present(block, key, found)
+            blocks.present(block, key, found)
         if isinstance(where, Scalar) and said:
             yield Requirement(where, said)
         elif where is not None and not isinstance(where, Scalar):
@@ -248,10 +248,10 @@ def _requires(node: Node | None, found: Collector) -> Iterator[Requirement]:
 
 
 def _plot(node: Node | None, arguments: tuple[Argument, ...], found: Collector) -> str:
-    if node is None or (block := nodes.mapping(node, found, "plot")) is None:
+    if node is None or (block := blocks.mapping(node, found, "plot")) is None:
         return ""
-    nodes.only(block, ("along",), found, "a plot")
-    along = nodes.text(block, "along", found) if nodes.present(block, "along", found) else None
+    blocks.only(block, ("along",), found, "a plot")
+    along = blocks.text(block, "along", found) if blocks.present(block, "along", found) else None
     names = [a.name for a in arguments]
     if along is not None and along not in names:
         found.add(block.place, "unknown-name", f'"{along}" is no argument of this formula', one_of(along, names))

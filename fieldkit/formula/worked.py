@@ -9,7 +9,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from fieldkit.errors import Collector, Place
-from fieldkit.formula import nodes, quantities
+from fieldkit.formula import blocks, quantities
 from fieldkit.formula.arguments import Argument
 from fieldkit.formula.spots import one_of
 from fieldkit.units import Unit
@@ -38,23 +38,23 @@ def read(node: Node | None, arguments: tuple[Argument, ...], unit: Unit, found: 
             found.add(node.place, "not-a-list", "the examples are not a list", "write one example at least, after a -")
         return
     for item in node:
-        block = nodes.mapping(item, found, "an example")
+        block = blocks.mapping(item, found, "an example")
         example = _example(block, arguments, unit, found) if block is not None else None
         if example is not None:
             yield example
 
 
 def _example(block: Mapping, arguments: tuple[Argument, ...], unit: Unit, found: Collector) -> Example | None:
-    nodes.only(block, ("with", "gives", "within", "fault", "source"), found, "an example")
+    blocks.only(block, ("with", "gives", "within", "fault", "source"), found, "an example")
     given = _given(block, arguments, found)
-    fault = nodes.text(block, "fault", found, needed=False) or ""
+    fault = blocks.text(block, "fault", found, needed=False) or ""
     if fault and fault not in FAULTS:
         found.add(block.place, "unknown-fault", f'there is no fault "{fault}"', one_of(fault, FAULTS))
     gives = _answer(block, "gives", unit, bool(fault), found)
     within = _answer(block, "within", quantities.tolerance_unit(unit), bool(fault), found)
     if given is None or not (fault or (gives and within)):
         return None
-    source = nodes.text(block, "source", found, needed=False) or ""
+    source = blocks.text(block, "source", found, needed=False) or ""
     written = _written(block.get("with"), arguments)
     return Example(
         given, written, gives or "0", _as_text(block.get("gives")), within or "0", fault, source, block.place
@@ -62,7 +62,7 @@ def _example(block: Mapping, arguments: tuple[Argument, ...], unit: Unit, found:
 
 
 def _answer(block: Mapping, key: str, unit: Unit, spare: bool, found: Collector) -> str | None:
-    if spare or nodes.present(block, key, found):
+    if spare or blocks.present(block, key, found):
         return quantities.quantity(block.get(key), unit, found)
     return None
 
@@ -76,12 +76,12 @@ def _written(node: Node | None, arguments: tuple[Argument, ...]) -> tuple[str, .
 
 
 def _given(block: Mapping, arguments: tuple[Argument, ...], found: Collector) -> tuple[str, ...] | None:
-    values_of = nodes.mapping(block.get("with"), found, "with") if nodes.present(block, "with", found) else None
+    values_of = blocks.mapping(block.get("with"), found, "with") if blocks.present(block, "with", found) else None
     if values_of is None:
         return None
-    nodes.only(values_of, tuple(a.name for a in arguments), found, "this formula")
+    blocks.only(values_of, tuple(a.name for a in arguments), found, "this formula")
     given = [
-        quantities.quantity(values_of.get(a.name), a.unit, found) if nodes.present(values_of, a.name, found) else None
+        quantities.quantity(values_of.get(a.name), a.unit, found) if blocks.present(values_of, a.name, found) else None
         for a in arguments
     ]
     return tuple(g for g in given if g is not None) if None not in given else None
