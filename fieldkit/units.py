@@ -193,6 +193,8 @@ _LINES: tuple[tuple[str, str, str | Fraction, Dimension], ...] = (
     ("A2s", "A²s", "1", dimension(A=2, s=1)),
     ("ohm/m", "Ω/m", "1", _OHM.over(_METRE)),
     ("Mohm/cm", "MΩ/cm", "100000000", _OHM.over(_METRE)),
+    ("ohm m", "Ω m", "1", _OHM.times(_METRE)),
+    ("Mohm cm", "MΩ cm", "10000", _OHM.times(_METRE)),
     ("S/m", "S/m", "1", NUMBER.over(_OHM).over(_METRE)),
     ("uS/cm", "µS/cm", "0.0001", NUMBER.over(_OHM).over(_METRE)),
     ("Sv/h", "Sv/h", Fraction(1, 3600), dimension(m=2, s=-3)),

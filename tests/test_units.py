@@ -43,6 +43,8 @@ PINT = {
     "mW/cm2": "mW/cm**2",
     "A2s": "A**2*s",
     "Mohm/cm": "megaohm/cm",
+    "ohm m": "ohm*m",
+    "Mohm cm": "megaohm*cm",
     "Sv/h": "sievert/hour",
     "mSv/h": "millisievert/hour",
     "uSv/h": "microsievert/hour",
