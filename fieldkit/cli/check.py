@@ -1,8 +1,8 @@
 """`fieldkit check [PATH...] [--json]`: compiles procedures and tries formulas, and tells everything that is wrong.
 
-Without a path: the procedures and formulas that come with fieldkit. A path is a file or a folder; a folder's own
-`formulas/` are its library, else the ones that come with fieldkit are. Exit 0 clean (warnings are shown), 1 problems,
-2 misuse. Not here: what is checked (fieldkit.procedure, fieldkit.formula).
+Without a path: the procedures and formulas that come with fieldkit. A path is a file or a folder; the formulas in a
+folder `formulas/` beside the procedures add to the ones that come with fieldkit. Exit 0 clean (warnings are shown),
+1 problems, 2 misuse. Not here: what is checked (fieldkit.procedure, fieldkit.formula).
 """
 
 from __future__ import annotations
@@ -12,6 +12,7 @@ import json
 import os
 import sys
 from dataclasses import dataclass
+from functools import lru_cache
 from pathlib import Path
 from typing import Any
 
@@ -66,10 +67,30 @@ def run(args: argparse.Namespace) -> int:
 def look(path: Path) -> list[Looked]:
     """Every file at `path`, read, compiled or tried."""
     files = sorted(p for p in path.rglob("*.yaml") if p.is_file()) if path.is_dir() else [path]
-    beside = (path if path.is_dir() else path.parent) / "formulas"
-    home = beside if beside.is_dir() else folder("procedures") / "formulas"
-    formulas = library.load(home)
-    return [_look_at(file, home, formulas) for file in files]
+    formulas = formulas_for(path)
+    return [_look_at(file, _beside(path), formulas) for file in files]
+
+
+def formulas_for(path: Path) -> Library:
+    """The formulas that the procedures at `path`, a file or a folder, may use."""
+    return formulas_in(_beside(path))
+
+
+def _beside(path: Path) -> Path:
+    return (path if path.is_dir() else path.parent) / "formulas"
+
+
+def formulas_in(own: Path) -> Library:
+    """The formulas that come with fieldkit and those in the folder `own`, if there is one; the problems of `own`."""
+    shipped = folder("procedures") / "formulas"
+    if not own.is_dir() or own.resolve() == shipped.resolve():
+        return _shipped(shipped)
+    return library.load(own, base=_shipped(shipped))
+
+
+@lru_cache(maxsize=1)
+def _shipped(home: Path) -> Library:
+    return library.load(home)
 
 
 def shown(path: Path) -> str:
@@ -83,7 +104,7 @@ def _look_at(file: Path, home: Path, formulas: Library) -> Looked:
     source = data.decode("utf-8", "replace")
     node, _ = read(data, name)
     if isinstance(node, Mapping) and "formulas" in node:
-        own = formulas if file.parent.resolve() == home.resolve() else library.load(file.parent)
+        own = formulas if file.parent.resolve() == home.resolve() else formulas_in(file.parent)
         problems = [p for p in own.problems if Path(p.file).resolve() == file.resolve()]
         return Looked(name, problems, None, source, _tried(node.get("formulas")))
     sheet, problems = compile_bytes(data, name, formulas)
@@ -94,8 +115,14 @@ def _tried(node: Node | None) -> str:
     """How many formulas and worked examples a file has; all of them were tried."""
     entries = [e.value for e in node if isinstance(e.value, Mapping)] if isinstance(node, Mapping) else []
     examples = [e.get("examples") for e in entries]
-    count = sum(len(x) for x in examples if isinstance(x, Sequence))
-    return f"{len(entries)} formula{'' if len(entries) == 1 else 's'}, {count} worked examples tried"
+    tried = sum(len(x) for x in examples if isinstance(x, Sequence))
+    pairs = sum("pair" in e for e in entries)
+    counted = [_counted(len(entries) - pairs, "formula"), *([_counted(pairs, "pair")] if pairs else [])]
+    return f"{', '.join(counted)}, {_counted(tried, 'worked example')} tried"
+
+
+def _counted(count: int, word: str) -> str:
+    return f"{count} {word}{'' if count == 1 else 's'}"
 
 
 def as_text(found: list[Looked]) -> str:
@@ -107,7 +134,7 @@ def as_text(found: list[Looked]) -> str:
 def _summary(one: Looked) -> str:
     problems = sum(p.weight == "problem" for p in one.problems)
     warnings = len(one.problems) - problems
-    counted = [f"{n} {word}{'' if n == 1 else 's'}" for n, word in ((problems, "problem"), (warnings, "warning")) if n]
+    counted = [_counted(n, word) for n, word in ((problems, "problem"), (warnings, "warning")) if n]
     state = ", ".join(counted) or "clean"
     if one.sheet is None:
         return f"{one.file}: {state}" + (f"; {one.tried}" if one.tried else "")
@@ -152,9 +179,10 @@ def _json_of(one: Looked) -> dict[str, Any]:
             "moves": len(one.sheet.moves),
             "proved": False,
         }
-    return {"file": one.file, "clean": one.clean, "sheet": sheet, "problems": [_problem(p) for p in one.problems]}
+    return {"file": one.file, "clean": one.clean, "sheet": sheet, "problems": [problem_json(p) for p in one.problems]}
 
 
-def _problem(p: Problem) -> dict[str, Any]:
+def problem_json(p: Problem) -> dict[str, Any]:
+    """One problem for a program: where, code, weight, message, remedy."""
     where = {"file": p.file, "line": p.place.line, "column": p.place.column, "width": p.place.width}
     return {**where, "code": p.code, "weight": p.weight, "message": p.message, "remedy": p.remedy}

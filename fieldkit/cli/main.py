@@ -29,6 +29,7 @@ COMMANDS: tuple[Command, ...] = (
     Command(
         "check", "fieldkit.cli.check", "check procedures and formulas: every problem, with line, column and remedy"
     ),
+    Command("calc", "fieldkit.cli.calc", "work out one sum with units and the library's formulas, or list them"),
     Command("verify", "fieldkit.cli.verify", "say whether a record's PDF can be relied on, question by question"),
     Command("sheet", "fieldkit.cli.sheet", "show a compiled procedure as a tablet works from it"),
     Command("demo", "fieldkit.cli.demo", "make and serve the invented station, or play one record without a browser"),

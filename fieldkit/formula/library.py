@@ -32,6 +32,7 @@ Not here: the language (parse.py), reading one entry (entry.py).
 
 from __future__ import annotations
 
+import hashlib
 import os
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
@@ -54,6 +55,8 @@ class Library:
     formulas: dict[str, Formula] = field(default_factory=dict)
     pairs: dict[str, Pair] = field(default_factory=dict)
     problems: tuple[Problem, ...] = ()
+    #: SHA-256 of each file that was read
+    files: frozenset[str] = frozenset()
 
     def signatures(self) -> dict[str, tuple[str, ...]]:
         """The arguments of each formula in order: what parse wants."""
@@ -75,11 +78,15 @@ def load(folder: Path, base: Library | None = None) -> Library:
     """Every formula in the YAML files of `folder`, and every problem in them; examples are tried. Raises nothing.
 
     `base` is a library without problems that the folder adds to: its formulas are there to use and their names taken.
+    A copy of a file of `base` adds nothing and is no problem: a checkout beside an installed fieldkit has all of them.
     """
     entries = _Entries(base or Library())
     for path in sorted(folder.glob("*.yaml")):
+        data = path.read_bytes()
+        if not entries.is_new(data):
+            continue
         found = Collector(_shown(path))
-        root, wrong = yaml_source.read(path.read_bytes(), found.file)
+        root, wrong = yaml_source.read(data, found.file)
         entries.problems.extend(wrong)
         if root is not None:
             entries.collect(root, found)
@@ -101,6 +108,13 @@ class _Entries:
         self.drafts: dict[str, Draft] = {}
         self.pairs: dict[str, Pair] = {}
         self.problems: list[Problem] = []
+        self.files: set[str] = set()
+
+    def is_new(self, data: bytes) -> bool:
+        """Whether a file is no copy of one that the base was read from; marks it as read."""
+        digest = hashlib.sha256(data).hexdigest()
+        self.files.add(digest)
+        return digest not in self.base.files
 
     def collect(self, root: yaml_source.Node, found: Collector) -> None:
         """Takes the entries of one file; a name that is taken is a problem where it is written again."""
@@ -126,7 +140,8 @@ class _Entries:
         pairs = {**self.base.pairs, **self.pairs}
         if not any(p.weight == "problem" for p in self.problems):
             _try_examples(Library(formulas), self.drafts, self.problems)
-        return Library(formulas, pairs, tuple(sorted(self.problems, key=lambda p: (p.file, p.place))))
+        problems = tuple(sorted(self.problems, key=lambda p: (p.file, p.place)))
+        return Library(formulas, pairs, problems, self.base.files | self.files)
 
     def _compiled(self, draft: Draft, known: dict[str, Draft | Formula]) -> Formula | None:
         """The formula: expressions parsed and their units checked, now that all names are known."""

@@ -37,15 +37,35 @@ class Unreadable(Exception):
 def one_of(wrong: str, known: Iterable[str]) -> str:
     """ "write a", or "write one of: a, b": the known words most like the wrong one, or the first few of them."""
     names = list(dict.fromkeys(known))
-    close = difflib.get_close_matches(wrong, names, n=4, cutoff=0.6) or names[:8]
+    close = nearest(wrong, names) or names[:8]
     if not close:
         return ""
     return f"write {close[0]}" if len(close) == 1 else f"write one of: {', '.join(close)}"
 
 
+def nearest(wrong: str, known: Iterable[str]) -> list[str]:
+    """The known words most like the wrong one, best first; at most four, none where none is like it."""
+    return difflib.get_close_matches(wrong, list(known), n=4, cutoff=0.6)
+
+
+#: signs that look like one of the language, what they are, and what to write
+_SIGNS = {
+    **dict.fromkeys("\u2010\u2011\u2012\u2013\u2014", ("a dash, not a minus", "write -")),
+    **dict.fromkeys("\u2219\u22c5\u2022", ("another dot", "write *")),
+    **dict.fromkeys("\u00f7\u2215\u2044", ("another sign of division", "write /")),
+    **dict.fromkeys("[]{}", ("another bracket", "write ( and )")),
+    **dict.fromkeys("\u2103\u00ba\u00b0", ("a sign of degrees alone", "write degC, or deg for an angle")),
+    "\u00b2": ("a raised 2", "write ^ 2"),
+    "\u00b3": ("a raised 3", "write ^ 3"),
+    "\u221a": ("a root sign", "write sqrt( and )"),
+    "\u03c0": ("the number pi", "write 3.14159265358979"),
+    ";": ("another comma", "write ,"),
+}
+
 _GLUED = re.compile(r"([0-9]+(?:\.[0-9]+)?)([A-Za-zµμΩ°%][A-Za-z0-9µμΩ°/%]*)")
 _POINT_FIRST = re.compile(r"\.([0-9]+)")
 _POINT_LAST = re.compile(r"([0-9]+)\.(?![0-9])")
+_MINUS_IN_POWER = re.compile(r"([0-9]+(?:\.[0-9]+)?[eE])[\u2212\u2013]([0-9]+)")
 
 
 def diagnose(text: str, exc: UnexpectedInput) -> Spot:
@@ -74,6 +94,10 @@ def _at_end(text: str) -> Spot:
 
 def _number_at(text: str, at: int) -> Spot | None:
     """A number that is not written as one: 27kV, .5, 5. or 1,5."""
+    if power := _MINUS_IN_POWER.match(text, at):
+        first, last = power.groups()
+        says = "another sign than - stands in the exponent"
+        return Spot(at + 1, len(power[0]), "number-form", says, f"write {first}-{last}")
     if glued := _GLUED.match(text, at):
         digits, letters = glued.groups()
         width = len(glued[0])
@@ -104,6 +128,11 @@ def _token(text: str, at: int, found: str) -> Spot:
     if re.search(r"(?:state|choice) *\([^()]*\)$", before):
         remedy = "write = or != and one word, like state(heater) = on"
         return Spot(at + 1, max(1, len(found)), "formula-syntax", "a state or choice is compared with one word", remedy)
+    if found == "*" and before.endswith("*"):
+        return Spot(at + 1, 1, "formula-syntax", "two signs of multiplication", "write one *, or ^ for a power")
+    if re.match(r"[0-9]", found) and re.search(r"(?:^|[^A-Za-z0-9_])[0-9.]+$", before):
+        says = "a number follows a number without a sign between them"
+        return Spot(at + 1, len(found), "formula-syntax", says, "write 1200 without a space, or a sign between them")
     if found == "=" and before.endswith("="):
         return Spot(at + 1, 1, "formula-syntax", "two equals signs", "write one =")
     if found in ("<", ">", "<=", ">=", "=", "!=", "≤", "≥", "≠"):
@@ -121,8 +150,11 @@ def _character(text: str, at: int) -> Spot:
         return Spot(at + 1, 1, "formula-syntax", "these are other quotes", 'write "..."')
     if char == "&" or char == "|":
         return Spot(at + 1, 1, "formula-syntax", f'"{char}" is not used here', "write and, or or")
-    if char == "\u00a0":
+    if char.isspace():
         return Spot(at + 1, 1, "formula-syntax", "this is not an ordinary space", "write an ordinary space")
+    if char in _SIGNS:
+        what, remedy = _SIGNS[char]
+        return Spot(at + 1, 1, "formula-syntax", f'"{char}" is {what}', remedy)
     word = re.match(r"[A-Za-z0-9_]+", text[at:])
     found = word[0] if word else char
     if re.match(r"[A-Za-z0-9_]", found):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import shutil
 import subprocess
 import sys
 from pathlib import Path
@@ -77,27 +78,70 @@ def test_json_says_the_same_for_programs(capsys: pytest.CaptureFixture[str]) -> 
     assert right["sheet"]["steps"] == 1 and len(right["sheet"]["sha256"]) == 64
 
 
-def test_a_formula_file_is_tried_on_its_examples(capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
+OWN = """\
+subject: station
+formulas:
+  hall_heat:
+    meaning: heat of one valve and its heater
+    arguments:
+      voltage: {unit: kV, low: 0 kV, high: 60 kV, meaning: beam voltage}
+      current: {unit: A, low: 0 A, high: 10 A, meaning: beam current}
+    expression: beam_power(voltage=voltage, current=current) + 200 W
+    unit: kW
+    reference: of the station
+    decides: whether the fan is enough
+    examples:
+      - {with: {voltage: 34 kV, current: 2.2 A}, gives: 75 kW, within: 0.001 kW, source: by hand}
+"""
+
+
+def station(tmp_path: Path, text: str = OWN) -> Path:
+    """A folder with one formula file."""
     own = tmp_path / "formulas"
-    own.mkdir()
-    text = (folder("procedures") / "formulas" / "beam.yaml").read_text()
-    (own / "beam.yaml").write_text(text.replace("voltage * current", "voltage * current * 2", 1))
-    assert main(["check", str(own / "beam.yaml")]) == 1
+    own.mkdir(exist_ok=True)
+    (own / "own.yaml").write_text(text)
+    return own
+
+
+def test_a_formula_file_is_tried_on_its_examples(capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
+    own = station(tmp_path)
+    assert main(["check", str(own / "own.yaml")]) == 0
+    assert capsys.readouterr().out.endswith("own.yaml: clean; 1 formula, 1 worked example tried\n")
+    (own / "own.yaml").write_text(OWN.replace("200 W", "300 W"))
+    assert main(["check", str(own / "own.yaml")]) == 1
     assert "[example-differs]" in capsys.readouterr().out
 
 
-def test_a_folder_brings_its_own_formulas(capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
-    (tmp_path / "formulas").mkdir()
-    text = (folder("procedures") / "formulas" / "beam.yaml").read_text()
-    (tmp_path / "formulas" / "beam.yaml").write_text(text.replace("beam_power", "own_power"))
-    step = (
-        (STEPS / "work_out.yaml")
-        .read_text()
-        .replace("volts / amps", "own_power(voltage=volts, current=amps) / amps / amps")
-    )
+def test_a_folders_formulas_add_to_those_that_come_with_fieldkit(
+    capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    station(tmp_path)
+    calls = "hall_heat(voltage=volts, current=amps) / beam_power(voltage=volts, current=amps) * volts / amps"
+    step = (STEPS / "work_out.yaml").read_text().replace("volts / amps", calls)
     (tmp_path / "work-out.yaml").write_text(step)
-    assert main(["check", str(tmp_path)]) == 0
-    assert "work-out.yaml: clean" in capsys.readouterr().out
+    for path in (tmp_path, tmp_path / "work-out.yaml"):
+        assert main(["check", str(path)]) == 0
+        assert "work-out.yaml: clean" in capsys.readouterr().out
+
+
+def test_a_name_that_comes_with_fieldkit_is_taken_and_told_at_the_stations_file(
+    capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    station(tmp_path, OWN.replace("hall_heat", "heater_power"))
+    assert main(["check", "--json", str(tmp_path)]) == 1
+    (file,) = json.loads(capsys.readouterr().out)["files"]
+    assert file["file"].endswith("own.yaml")
+    assert [(p["code"], p["line"], p["column"]) for p in file["problems"]] == [("formula-twice", 3, 3)]
+
+
+def test_a_copy_of_what_comes_with_fieldkit_is_no_clash(capsys: pytest.CaptureFixture[str], tmp_path: Path) -> None:
+    shutil.copytree(folder("procedures"), tmp_path / "copy")
+    station(tmp_path / "copy")
+    assert main(["check", str(tmp_path / "copy")]) == 0, capsys.readouterr().out
+    beam = tmp_path / "copy" / "formulas" / "beam.yaml"
+    beam.write_text(beam.read_text() + "# changed\n")
+    assert main(["check", str(tmp_path / "copy")]) == 1
+    assert '"beam_power" is already among the formulas that come with fieldkit' in capsys.readouterr().out
 
 
 def test_the_caret_stands_under_the_place_even_in_a_very_long_line() -> None:

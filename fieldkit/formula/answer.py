@@ -1,0 +1,268 @@
+"""One sum asked by a person: an expression of numbers and library formulas, its value, and the unit that suits it.
+
+    found = answer("coolant_heat_water(flow=60 L/min, inlet=35 degC, outlet=45 degC)", library)
+    found.values[0].si, found.values[0].unit, found.shown()     41543.28..., kW, "41.54 kW"
+
+Raises Unreadable with everything that is wrong: spelling, names, units, and what has no answer (a range, a division by
+zero), each at its column. Not here: the language (parse.py, check.py), where faults arise (locate.py), the choice of
+digits (display.py), printing (fieldkit.cli.calc).
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import Union
+
+from fieldkit import units
+from fieldkit.formula import ast, check, display, functions, parse
+from fieldkit.formula.arguments import any_of
+from fieldkit.formula.entry import Formula, Pair
+from fieldkit.formula.evaluate import evaluate
+from fieldkit.formula.library import Library
+from fieldkit.formula.locate import locate
+from fieldkit.formula.parse import Parsed, Term
+from fieldkit.formula.spots import Spot, Unreadable, nearest, one_of
+from fieldkit.units import Dimension, Unit
+
+#: so many misspelt units are told in one answer
+_MOST_REPAIRS = 20
+
+#: operations whose answer is shown in the unit that a part of it was given in, where that has the dimension
+_KEEP_UNIT = ("add", "sub", "mul", "div", "neg", "abs", "min", "max", "average", "if")
+
+#: problems that hold also where a unit could not be read
+_WITHOUT_UNITS = ("unknown-function", "unknown-argument", "argument-missing", "argument-twice", "argument-without-name")
+
+_UNCERTAINTY = re.compile(r"(?:±|\+/-) *(?:\([^()]*\)|[0-9][0-9.eE]*(?: *[A-Za-zµμΩ°%][\w/°%]*)?|[^,()]*)")
+
+
+@dataclass(frozen=True)
+class Value:
+    """One number of an answer: in SI, and the unit and digits to show it with. `name` is the formula's, or ""."""
+
+    name: str
+    si: float
+    dimension: Dimension
+    unit: Unit
+    digits: int
+
+    def text(self) -> str:
+        return display.plain(self.si, self.unit, self.digits)
+
+    def shown(self) -> str:
+        return display.with_unit(self.text(), self.unit)
+
+
+@dataclass(frozen=True)
+class Answer:
+    """One value, or two of a pair, or a yes or no; and the formulas that the expression names, in order."""
+
+    text: str
+    values: tuple[Value, ...]
+    flag: bool | None
+    formulas: tuple[Union[Formula, Pair], ...]
+    #: the formula or pair whose call is the whole expression
+    whole: Union[Formula, Pair, None]
+
+    def shown(self) -> str:
+        """ "41.54 kW", "21.8 dB to 34.7 dB", "yes"."""
+        if self.flag is not None:
+            return "yes" if self.flag else "no"
+        return " to ".join(v.shown() for v in self.values)
+
+
+def answer(text: str, library: Library) -> Answer:
+    """What the expression gives. Raises Unreadable with every problem of it, in order of column."""
+    parsed, spots = _read(text)
+    if parsed is None:
+        raise Unreadable(spots)
+    pair = library.pairs.get(parsed.term.what) if parsed.term.kind == "library" else None
+    parts = [replace(parsed.term, what=name) for name in pair.of] if pair else [parsed.term]
+    found = [_Part(Parsed(parsed.text, term), library, pair) for term in parts]
+    units_lost = any(s.code != "uncertainty-not-carried" for s in spots)
+    for part in found:
+        spots.extend(s for s in part.problems(units_lost=units_lost) if s not in spots)
+    if spots:
+        raise Unreadable(spots)
+    results = [part.result() for part in found]
+    named = [pair] if pair else [library.formulas[n] for n in _called(parsed.term)]
+    whole = pair or (library.formulas[parsed.term.what] if parsed.term.kind == "library" else None)
+    flag = results[0] if isinstance(results[0], bool) else None
+    return Answer(text, tuple(r for r in results if isinstance(r, Value)), flag, tuple(named), whole)
+
+
+def asked(symbol: str) -> Unit:
+    """The unit that an answer is wanted in. Raises Unreadable, with columns in `symbol`."""
+    unit = units.unit(symbol)
+    if unit is None:
+        likely = units.near(symbol)
+        remedy = one_of(symbol, likely) if likely else "write a unit such as V, kV, A, uA"
+        raise _at(symbol, "unknown-unit", f'"{symbol}" is no unit known here', remedy)
+    return unit
+
+
+def in_unit(found: Answer, unit: Unit) -> Answer:
+    """The answer in the unit asked for. Raises Unreadable, with columns in its symbol, where it is of another kind."""
+    if found.flag is not None:
+        raise _at(unit.symbol, "unit-mismatch", "the answer is yes or no, which has no unit", "leave the unit out")
+    for value in found.values:
+        _must_fit(value, unit)
+    return replace(found, values=tuple(replace(v, unit=unit) for v in found.values))
+
+
+def _must_fit(value: Value, unit: Unit) -> None:
+    has, want, symbol = value.dimension, unit.dimension, unit.symbol
+    if not has.same_powers(want):
+        same = [u.symbol for u in units.UNITS.values() if u.dimension == has]
+        remedy = f"write one of: {', '.join(same)}" if same else "leave the unit out"
+        raise _at(symbol, "unit-mismatch", f"the answer is {check.words(has)}; {symbol} is another kind", remedy)
+    if want.absolute and not has.absolute:
+        says = "the answer is in K, as a difference is; degC is a temperature on a scale"
+        raise _at(symbol, "temperature-scale", says, "for kelvin of a scale write 0 degC + (... - 273.15 K)")
+
+
+def _at(symbol: str, code: str, message: str, remedy: str) -> Unreadable:
+    return Unreadable([Spot(1, max(1, len(symbol)), code, message, remedy)])
+
+
+def _read(text: str) -> tuple[Parsed | None, list[Spot]]:
+    """The expression, read on past units that are unknown and uncertainties, so that all of them are told at once."""
+    spots = []
+    for found in _UNCERTAINTY.finditer(text):
+        says = "calc does not carry uncertainties yet"
+        width = len(found[0].rstrip())
+        spots.append(Spot(found.start() + 1, width, "uncertainty-not-carried", says, "leave it out, from the ± on"))
+    readable = _UNCERTAINTY.sub(lambda m: " " * len(m[0]), text)
+    for _ in range(_MOST_REPAIRS):
+        try:
+            return parse.read(readable), spots
+        except Unreadable as exc:
+            spots.extend(exc.spots)
+            repaired = _repaired(readable, exc.spots[0])
+            if repaired is None:
+                break
+            readable = repaired
+    return None, spots
+
+
+def _repaired(text: str, spot: Spot) -> str | None:
+    """The text, its length kept, without the unit that cannot be read; None where something else is wrong."""
+    start, end = spot.column - 1, spot.column - 1 + spot.width
+    if spot.code == "no-space-before-unit":
+        digits = re.match(r"[0-9.]+", text[start:end])
+        start += len(digits[0]) if digits else 0
+    elif spot.code != "unknown-unit":
+        return None
+    return text[:start] + " " * (end - start) + text[end:]
+
+
+class _Part:
+    """An expression that gives one value: the whole of what was asked, or one of a pair."""
+
+    def __init__(self, parsed: Parsed, library: Library, pair: Pair | None) -> None:
+        self.parsed = parsed
+        self.library = library
+        self.pair = pair
+        self.kind: check.Kind | None = None
+
+    def problems(self, *, units_lost: bool) -> list[Spot]:
+        """What is wrong with names, arguments and units, and, where nothing is, what has no answer."""
+        checked = check.check(self.parsed, {}, library=self.library.formulas, pairs=self.library.pairs)
+        self.kind = checked.kind
+        spots = [s for s in checked.spots if s.code != "unknown-name"]
+        spots += [_nameless(self.parsed.text, t, self.library) for t in _names(self.parsed.term)]
+        if units_lost:
+            return [s for s in spots if s.code in (*_WITHOUT_UNITS, "unknown-name", "no-run")]
+        if not spots and self.kind == "text":
+            spots = [self.parsed.term.spot("not-a-number", "this is a word, not a sum", "write numbers and formulas")]
+        return [self._worded(s) for s in spots or locate(self.parsed, self.library)]
+
+    def _worded(self, spot: Spot) -> Spot:
+        """Problems with one formula of a pair name the pair, which is what was written; nothing far off is offered."""
+        if spot.code == "unknown-function":
+            found = re.match(r"\w+", self.parsed.text[spot.column - 1 :])
+            known = [*self.library.formulas, *self.library.pairs, *functions.FUNCTIONS]
+            close = nearest(found[0] if found else "", known)
+            return replace(spot, remedy=one_of("", close) or "look at fieldkit calc --list")
+        if self.pair is None:
+            return spot
+        name = self.parsed.term.what
+        message, remedy = (t.replace(name, self.pair.name) for t in (spot.message, spot.remedy))
+        return replace(spot, message=message, remedy=remedy)
+
+    def result(self) -> Union[Value, bool]:
+        term = self.parsed.term
+        tree = self.parsed.tree(self.library.signatures())
+        si = evaluate(ast.to_json(tree), formulas=self.library.used(_called(term)))
+        if isinstance(si, bool):
+            return si
+        assert isinstance(si, float) and isinstance(self.kind, Dimension), "locate found no fault, and there is one"
+        unit = self._unit(term) or display.fitting(si, self.kind)
+        formula = self.library.formulas[term.what] if term.kind == "library" else None
+        return Value(
+            formula.name if formula else "",
+            si,
+            self.kind,
+            unit,
+            display.digits(formula) if formula else display.MOST_DIGITS,
+        )
+
+    def _unit(self, term: Term) -> Unit | None:
+        """The unit that the expression itself names for its answer: a formula's own, or that of a part."""
+        if term.kind == "number":
+            return term.unit
+        if term.kind == "library":
+            formula = self.library.formulas[term.what]
+            if not any_of(formula.unit):
+                return formula.unit
+            parts = [t for a in formula.arguments if any_of(a.unit) for t in _given(term, a.name)]
+        elif term.what in _KEEP_UNIT:
+            parts = list(term.of[1:] if term.what == "if" else term.of)
+        else:
+            return None
+        kind = check.check(Parsed(self.parsed.text, term), {}, library=self.library.formulas).kind
+        return next((u for p in parts if (u := self._unit(p)) is not None and u.dimension == kind), None)
+
+
+def _given(term: Term, name: str) -> list[Term]:
+    return [t for n, t in zip(term.named, term.of, strict=True) if n == name]
+
+
+def _terms(term: Term) -> Iterator[Term]:
+    yield term
+    for part in term.of:
+        yield from _terms(part)
+
+
+def _called(term: Term) -> list[str]:
+    return list(dict.fromkeys(t.what for t in _terms(term) if t.kind == "library"))
+
+
+def _names(term: Term) -> list[Term]:
+    return [t for t in _terms(term) if t.kind in ("name", "series")]
+
+
+def _nameless(text: str, term: Term, library: Library) -> Spot:
+    """A name that stands for no number here: a formula or a unit written alone, a slip, or a name of a run."""
+    word = text[term.start : term.end]
+    if word in library.formulas or word in library.pairs:
+        return term.spot("unknown-name", f"{word} is a formula and wants its arguments", f"write {call(word, library)}")
+    if word in functions.FUNCTIONS:
+        return term.spot("unknown-name", f"{word} is a function", f"write {functions.FUNCTIONS[word].says}")
+    if units.unit(word) is not None:
+        return term.spot("unknown-name", f"{word} is a unit without its number", f"write 1 {word}, or 27 {word}")
+    if term.what == "earths" or ":" in term.what or term.kind == "series":
+        says = f"{word} is known only while a procedure runs; calc knows only numbers and formulas"
+        return term.spot("no-run", says, "write a number with its unit in its place")
+    close = nearest(word, [*library.formulas, *library.pairs])
+    remedy = "write its value, like 34 kV" + (f"; or a formula: {', '.join(close)}" if close else "")
+    return term.spot("unknown-name", f'there is no "{word}" here; calc knows only numbers and formulas', remedy)
+
+
+def call(name: str, library: Library) -> str:
+    """How a formula or pair is called: "beam_power(voltage=..., current=...)"."""
+    pair = library.pairs.get(name)
+    formula = library.formulas[pair.of[0] if pair else name]
+    return f"{name}({', '.join(f'{a.name}=...' for a in formula.arguments)})"
