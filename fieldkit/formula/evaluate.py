@@ -1,29 +1,47 @@
 """What a formula tree gives: a number, a flag, a text or a Fault. Total: never an exception, never NaN or infinity.
 
-Faults are values: the first one met, from left to right, is the answer, except where `if`, `and` or `or` settle the
-answer without it. Trees are taken in the JSON form that sheets carry (fieldkit.formula.ast), because a sheet may come
-from a foreign file: whatever is not a tree is a Fault "bad-tree", and depth and work are bounded ("too-deep").
+    prepare(tree, formulas).value(names, series)      the tree made ready once, asked as often as wanted
+    evaluate(tree, names, series, formulas)           the same for one time
 
-The twin is static/core/evaluate.js, arm by arm. Not here: what names mean (fieldkit.run.progress gives them), and
-what each function does (functions.py).
+Faults are values: the first one met, from left to right, is the answer, except where `if`, `holds`, `and` or `or`
+settle the answer without it. Trees are taken in the JSON form that sheets carry (fieldkit.formula.ast), because a sheet
+may come from a foreign file: whatever is not a tree is a Fault "bad-tree" where it is reached. A tree that is too high
+or too large, each formula of the library counted wherever it is called, is a Fault "too-deep" as a whole.
+
+To make ready means to turn every node into a function of what names mean, with all that does not depend on them done
+beforehand: decimals read, formulas found, parts that never change worked out. Inside, a Fault travels as the exception
+`Stop`. What names mean is the caller's mapping; in a formula of the library it is the tuple of its arguments.
+
+The twin is static/core/evaluate.js, arm by arm. Not here: what names mean (fieldkit.run.progress gives them), what each
+function does (functions.py), what all other nodes do (nodes.py).
 """
 
 from __future__ import annotations
 
-import math
-from collections.abc import Mapping, Sequence
-from sys import float_info
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from types import MappingProxyType
 from typing import Any
 
 from fieldkit import values
-from fieldkit.formula import ast
-from fieldkit.formula.functions import FUNCTIONS, Function, Value
+from fieldkit.formula import ast, nodes
+from fieldkit.formula.functions import FUNCTIONS, Function, Run, Stop, Value, wrong_type
+from fieldkit.formula.nodes import Part
 from fieldkit.values import Fault
 
 #: nodes below nodes, library formulas included
 DEEPEST = 120
-#: nodes looked at in one evaluation
+#: nodes in all, library formulas included each time they are called
 MOST_WORK = 20_000
+
+_NOTHING: Mapping[str, Any] = MappingProxyType({})
+
+
+@dataclass(frozen=True, slots=True)
+class Prepared:
+    """A tree made ready: `value(names, series)` as in `evaluate`. Holds while tree and formulas stay as they were."""
+
+    value: Callable[..., Value]
 
 
 def evaluate(
@@ -37,228 +55,157 @@ def evaluate(
     `names` gives numbers, flags, texts and Faults (DEVELOPERS.md, "Names"); `series` gives columns of numbers;
     `formulas` gives the library formulas aboard the sheet, as sheet.model.FormulaUsed or the same as plain JSON.
     """
-    data = tree if isinstance(tree, dict) else ast.to_json(tree)
-    return _Work(names or {}, series or {}, formulas or {}).value(data, 0)
+    return prepare(tree, formulas).value(names or _NOTHING, series or _NOTHING)
 
 
-class _Work:
-    """One evaluation: what names mean, and how much work is left."""
+def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None = None) -> Prepared:
+    """`tree` made ready, with the formulas that it calls. Raises nothing, whatever the tree is."""
+    made = _Making(formulas or _NOTHING)
+    try:
+        run = made.part(tree if isinstance(tree, dict) else ast.to_json(tree), 0).run
+    except Stop as stop:
+        run = nodes.stops(stop.fault).run
+    columns = made.columns
 
-    def __init__(self, names: Mapping[str, Any], series: Mapping[str, Any], formulas: Mapping[str, Any]) -> None:
-        self.names = names
-        self.series = series
+    def value(names: Mapping[str, Any] = _NOTHING, series: Mapping[str, Sequence[float]] = _NOTHING) -> Value:
+        try:
+            found: Value = run({**names, nodes.COLUMNS: series} if columns else names)
+        except Stop as stop:
+            return stop.fault
+        return found
+
+    return Prepared(value)
+
+
+class _Making:
+    """Makes one tree ready, and once each the formulas that it calls."""
+
+    def __init__(self, formulas: Mapping[str, Any]) -> None:
         self.formulas = formulas
-        self.left = MOST_WORK
+        #: nodes so far, of the tree or of the formula that is being made ready
+        self.size = 0
+        #: inside a formula: its arguments, and which of them each is
+        self.arguments: dict[str, int] | None = None
+        #: formulas made ready, with their sizes; None while one is being made
+        self.bodies: dict[str, tuple[Part, int] | None] = {}
+        self.columns = False
 
-    def value(self, tree: Any, depth: int) -> Value:
-        self.left -= 1
-        if depth > DEEPEST or self.left < 0:
-            return Fault("too-deep", "The formula is nested too deeply, or is too long.")
+    def count(self, depth: int, size: int) -> None:
+        self.size += size
+        if depth > DEEPEST or self.size > MOST_WORK:
+            raise _too_deep()
+
+    def part(self, tree: Any, depth: int) -> Part:
+        self.count(depth, 1)
         if not isinstance(tree, dict):
-            return _bad_tree()
+            return nodes.stops(nodes.bad_tree())
         if "number" in tree:
             text = tree["number"]
-            return values.number(text) if isinstance(text, str) else _bad_tree()
+            return nodes.constant(values.number(text) if isinstance(text, str) else nodes.bad_tree())
         if "text" in tree:
-            return tree["text"] if isinstance(tree["text"], str) else _bad_tree()
+            return nodes.constant(tree["text"] if isinstance(tree["text"], str) else nodes.bad_tree())
         if "flag" in tree:
-            return tree["flag"] if isinstance(tree["flag"], bool) else _bad_tree()
+            return nodes.constant(tree["flag"] if isinstance(tree["flag"], bool) else nodes.bad_tree())
         if "name" in tree:
-            return self._name(tree["name"])
+            return self.named(tree["name"])
         if "table" in tree:
-            return self._table(tree["table"], depth)
+            return self.table(tree["table"], depth)
         if "call" in tree and isinstance(tree.get("of"), list):
-            return self._call(tree["call"], tree["of"], depth)
+            return self.call(tree["call"], tree["of"], depth)
         if "series" in tree:
-            return Fault("wrong-type", "A column of numbers stands where one number belongs.")
-        return _bad_tree()
+            return nodes.stops(Fault("wrong-type", "A column of numbers stands where one number belongs."))
+        return nodes.stops(nodes.bad_tree())
 
-    def _name(self, name: Any) -> Value:
+    def named(self, name: Any) -> Part:
         if not isinstance(name, str):
-            return _bad_tree()
-        if name not in self.names:
-            return Fault("unknown-name", f"There is no value named {name}.")
-        found = self.names[name]
-        if isinstance(found, bool | str | Fault):
-            return found
-        number = _column([found])
-        if number is not None:
-            return number[0]
-        return Fault("wrong-type", f"{name} is no number, text or flag.")
+            return nodes.stops(nodes.bad_tree())
+        if self.arguments is None:
+            return nodes.named(name)
+        return nodes.argument(self.arguments[name]) if name in self.arguments else nodes.stops(nodes.unknown(name))
 
-    def _call(self, function: Any, of: list[Any], depth: int) -> Value:
+    def call(self, function: Any, of: list[Any], depth: int) -> Part:
         entry = FUNCTIONS.get(function) if isinstance(function, str) else None
         if entry is None:
-            return self._library(function, of, depth)
+            return self.library(function, of, depth)
         if len(of) < entry.least or (entry.most is not None and len(of) > entry.most):
-            return Fault("bad-tree", f"{function} was given {len(of)} values.")
-        if entry.apply is None:
-            return self._choose(function, of, depth)
+            return nodes.stops(_miscounted(function, of))
         if entry.on_series:
-            return self._on_column(entry, of, depth)
-        given: list[Value] = []
-        for part in of:
-            value = self.value(part, depth + 1)
-            if isinstance(value, Fault):
-                return value
-            given.append(value)
-        return entry.apply(*given)
+            return self.on_column(function, entry, of, depth)
+        parts = [self.part(p, depth + 1) for p in of]
+        if entry.make is None:
+            return _whole(nodes.choice(function, parts), nodes.chosen(function, parts), parts, _fixed(parts))
+        runs = [nodes.number(p, wrong_type(function)) if entry.numbers else p.run for p in parts]
+        return _whole(entry.make(*runs), entry.number, parts, _fixed(parts))
 
-    def _choose(self, function: str, of: list[Any], depth: int) -> Value:
-        """if, holds, and, or: only what is needed for the answer is evaluated."""
-        parts = of[:1] if function in ("if", "holds") else of
-        for part in parts:
-            flag = self.value(part, depth + 1)
-            if isinstance(flag, Fault):
-                return flag
-            if type(flag) is not bool:
-                return Fault("wrong-type", f"{function} was given something that is no yes or no.")
-            if function == "if":
-                return self.value(of[1] if flag else of[2], depth + 1)
-            if function == "holds":
-                return self.value(of[2], depth + 1) if flag else _not_held(self.value(of[1], depth + 1))
-            if flag is (function == "or"):
-                return flag
-        return function == "and"
-
-    def _on_column(self, entry: Function, of: list[Any], depth: int) -> Value:
+    def on_column(self, function: str, entry: Function, of: list[Any], depth: int) -> Part:
         name = of[0].get("series") if isinstance(of[0], dict) else None
         if not isinstance(name, str):
-            return Fault("wrong-type", "One number stands where a column of numbers belongs.")
-        if name not in self.series:
-            return Fault("unknown-name", f"There is no column of numbers named {name}.")
-        column = _column(self.series[name])
-        if column is None:
-            return Fault("wrong-type", f"{name} holds something that is no number.")
-        given: list[Value] = []
-        for part in of[1:]:
-            value = self.value(part, depth + 1)
-            if isinstance(value, Fault):
-                return value
-            given.append(value)
-        assert entry.apply is not None
-        return entry.apply(column, *given)
+            return nodes.stops(Fault("wrong-type", "One number stands where a column of numbers belongs."))
+        if self.arguments is not None:
+            return nodes.stops(nodes.no_column(name))
+        self.columns = True
+        parts = [self.part(p, depth + 1) for p in of[1:]]
+        runs = [nodes.number(p, wrong_type(function)) for p in parts]
+        assert entry.make is not None
+        return _whole(entry.make(nodes.column(name), *runs), entry.number, parts, False)
 
-    def _library(self, function: Any, of: list[Any], depth: int) -> Value:
+    def library(self, function: Any, of: list[Any], depth: int) -> Part:
         if not isinstance(function, str) or function not in self.formulas:
-            return Fault("unknown-function", f"There is no formula named {function}.")
+            return nodes.stops(Fault("unknown-function", f"There is no formula named {function}."))
         formula = self.formulas[function]
-        arguments = _part(formula, "arguments")
+        arguments = nodes.aspect(formula, "arguments")
         if not isinstance(arguments, list | tuple) or len(arguments) != len(of):
-            return Fault("bad-tree", f"{function} was given {len(of)} values.")
-        given: dict[str, Any] = {}
-        for argument, part in zip(arguments, of, strict=True):
-            value = self.value(part, depth + 1)
-            if isinstance(value, Fault):
-                return value
-            outside = _outside(function, argument, value)
-            if outside is not None:
-                return outside
-            given[_part(argument, "name")] = value
-        caller, self.names, columns, self.series = self.names, given, self.series, {}
-        value = self.value(_part(formula, "tree"), depth + 1)
-        self.names, self.series = caller, columns
-        return value
+            return nodes.stops(_miscounted(function, of))
+        names = [nodes.aspect(a, "name") for a in arguments]
+        if not all(isinstance(name, str) for name in names):
+            return nodes.stops(nodes.bad_tree())
+        parts = [self.part(p, depth + 1) for p in of]
+        body = self.body(function, formula, names, depth + 1)
+        given = [nodes.ranged(function, a, p) for a, p in zip(arguments, parts, strict=True)]
+        return _whole(nodes.called(body.run, given), body.number, [*parts, body], _fixed(parts))
 
-    def _table(self, table: Any, depth: int) -> Value:
+    def body(self, function: str, formula: Any, names: list[str], depth: int) -> Part:
+        """The tree of a formula, made ready the first time that it is called."""
+        if function not in self.bodies:
+            self.bodies[function] = None
+            outer = self.arguments, self.size
+            self.arguments, self.size = {name: k for k, name in enumerate(names)}, 0
+            made = self.part(nodes.aspect(formula, "tree"), depth)
+            self.bodies[function] = made, self.size
+            self.arguments, self.size = outer
+        found = self.bodies[function]
+        if found is None:  # it calls itself
+            raise _too_deep()
+        self.count(depth + found[0].height, found[1])
+        return found[0]
+
+    def table(self, table: Any, depth: int) -> Part:
         if not isinstance(table, dict) or not isinstance(table.get("x"), list) or not isinstance(table.get("y"), list):
-            return _bad_tree()
-        at = self.value(table.get("of"), depth + 1)
-        if isinstance(at, Fault):
-            return at
-        if type(at) is not float:
-            return Fault("wrong-type", "A table was asked with something that is no number.")
-        xs, ys = _numbers(table["x"]), _numbers(table["y"])
-        if xs is None or ys is None or len(xs) != len(ys) or len(xs) < 2:
-            return _bad_tree()
-        return _interpolate(str(table.get("name")), at, xs, ys)
+            return nodes.stops(nodes.bad_tree())
+        at = self.part(table.get("of"), depth + 1)
+        asked = nodes.number(at, Fault("wrong-type", "A table was asked with something that is no number."))
+        return _whole(nodes.table(table, asked), True, [at], at.fixed)
 
 
-def _not_held(says: Value) -> Fault:
-    """The answer of `holds` where its condition does not hold; `says` tells the person which one."""
-    if isinstance(says, Fault):
-        return says
-    return Fault("out-of-range", says) if isinstance(says, str) else Fault("wrong-type", "holds has no sentence.")
+def _fixed(parts: list[Part]) -> bool:
+    return all(p.fixed for p in parts)
 
 
-def _interpolate(name: str, at: float, xs: list[float], ys: list[float]) -> Value:
-    """Linear between neighbours; at a node exactly the node's value."""
-    if at < xs[0] or at > xs[-1]:
-        return Fault("out-of-range", f"{name}: {values.round12(at)} is outside the table, in SI units.")
-    k = 0
-    while k < len(xs) - 2 and at >= xs[k + 1]:
-        k += 1
-    if xs[k + 1] <= xs[k]:
-        return _bad_tree()
-    if at == xs[k + 1]:
-        return ys[k + 1]
-    value = ys[k] + (ys[k + 1] - ys[k]) * ((at - xs[k]) / (xs[k + 1] - xs[k]))
-    return value if math.isfinite(value) else Fault("overflow", f"The result of {name} is too large.")
+def _whole(run: Run, number: bool, parts: list[Part], fixed: bool) -> Part:
+    """A node over its parts; asked at once where nothing can change its answer."""
+    height = 1 + max((p.height for p in parts), default=-1)
+    if not fixed:
+        return Part(run, number, height=height)
+    try:
+        value = run(())
+    except Stop as stop:
+        return nodes.stops(stop.fault, height)
+    return nodes.constant(value, height)
 
 
-def _outside(function: str, argument: Any, value: Value) -> Fault | None:
-    """The Fault where an argument lies outside the range for which the formula holds."""
-    name, low, high = _part(argument, "name"), _part(argument, "low"), _part(argument, "high")
-    if type(value) is not float:
-        return Fault("wrong-type", f"{function}: {name} is no number.")
-    least, most = _end(low), _end(high)
-    factor, offset = _end(_part(argument, "factor")), _end(_part(argument, "offset"))
-    if isinstance(least, Fault) or isinstance(most, Fault):
-        return _bad_tree()
-    if not isinstance(factor, float) or not isinstance(offset, float) or factor <= 0.0:
-        return _bad_tree()
-    whole = _part(argument, "whole")
-    if whole is not None and type(whole) is not bool:
-        return _bad_tree()
-    unit = _Scale(str(_part(argument, "factor")), str(_part(argument, "offset")))
-    symbol = str(_part(argument, "unit"))
-    after = "" if symbol in ("", "1") else f" {symbol}"
-    if (least is not None and value < least) or (most is not None and value > most):
-        ends = [("from", least), ("to", most)]
-        span = " ".join(f"{word} {values.to_shown(end, unit)}" for word, end in ends if end is not None)
-        says = f"{function}: {name} is {values.to_shown(value, unit)}{after}; the formula holds {span}{after}."
-        return Fault("out-of-range", says)
-    if whole and value != math.floor(value):
-        shown = values.to_shown(value, unit)
-        return Fault("out-of-range", f"{function}: {name} is {shown}{after}; only whole numbers.")
-    return None
+def _miscounted(function: str, of: list[Any]) -> Fault:
+    return Fault("bad-tree", f"{function} was given {len(of)} values.")
 
 
-def _end(text: Any) -> float | Fault | None:
-    """A decimal text as a number, None as none; a Fault for anything else."""
-    if text is None:
-        return None
-    return values.number(text) if isinstance(text, str) else _bad_tree()
-
-
-class _Scale:
-    def __init__(self, factor: str, offset: str) -> None:
-        self.factor = factor
-        self.offset = offset
-
-
-def _column(given: Any) -> tuple[float, ...] | None:
-    """Doubles, where every one is a finite number; None where one is not."""
-    if not isinstance(given, list | tuple):
-        return None
-    if not all(isinstance(v, int | float) and not isinstance(v, bool) and abs(v) <= _LARGEST for v in given):
-        return None
-    return tuple(float(v) for v in given)
-
-
-_LARGEST = float_info.max
-
-
-def _numbers(texts: list[Any]) -> list[float] | None:
-    found = [values.number(t) if isinstance(t, str) else None for t in texts]
-    good = [v for v in found if isinstance(v, float)]
-    return good if len(good) == len(found) else None
-
-
-def _part(thing: Any, name: str) -> Any:
-    """A part of a FormulaUsed or Argument, or of the same as plain JSON."""
-    return thing.get(name) if isinstance(thing, Mapping) else getattr(thing, name, None)
-
-
-def _bad_tree() -> Fault:
-    return Fault("bad-tree", "The formula in the sheet is damaged.")
+def _too_deep() -> Stop:
+    return Stop(Fault("too-deep", "The formula is nested too deeply, or is too long."))

@@ -1,231 +1,201 @@
 /**
  * What a formula tree gives: a number, a flag, a text or a Fault. Total: never throws, never NaN or infinity.
  *
- * Twin of fieldkit/formula/evaluate.py, arm by arm; its docstring says how Faults travel. Trees come in the JSON form
- * that sheets carry; whatever is not a tree is a Fault "bad-tree". No DOM, no IO.
+ * Twin of fieldkit/formula/evaluate.py, arm by arm; its docstring says how Faults travel and what making ready is. Here
+ * a Fault travels as a value. Trees come in the JSON form that sheets carry; whatever is not a tree is a Fault
+ * "bad-tree" where it is reached. No DOM, no IO.
  */
 
 import { FUNCTIONS } from "./functions.js";
-import { Fault, number, round12, to_shown } from "./values.js";
+import * as nodes from "./nodes.js";
+import { Fault, number } from "./values.js";
 
 /** @typedef {import("./functions.js").Value} Value */
-/** @typedef {{name: string, unit: string, low: string | null, high: string | null, factor: string, offset: string, whole?: boolean}} Argument */
-/** @typedef {{arguments: Argument[], tree: any}} FormulaUsed */
+/** @typedef {import("./functions.js").Run} Run */
+/** @typedef {import("./nodes.js").Part} Part */
+/** @typedef {{value: (names?: Record<string, any>, series?: Record<string, number[]>) => Value}} Prepared */
 
 export const DEEPEST = 120;
 export const MOST_WORK = 20000;
 
+const NOTHING = Object.freeze({});
+
+/** Trees made ready, by the tree and the formulas. @type {WeakMap<object, WeakMap<object, Prepared>>} */
+const KEPT = new WeakMap();
+
 /**
- * The value of `tree`, in SI.
+ * The value of `tree`, in SI. What is made ready is kept for the next time, so tree and formulas must never be changed;
+ * use `prepare` for those that are.
  * @param {any} tree
  * @param {Record<string, any>} [names] numbers, flags, texts and Faults (DEVELOPERS.md, "Names")
  * @param {Record<string, number[]>} [series] columns of numbers
  * @param {Record<string, any>} [formulas] the library formulas aboard the sheet
  * @returns {Value}
  */
-export function evaluate(tree, names = {}, series = {}, formulas = {}) {
-  return new Work(names, series, formulas).value(tree, 0);
+export function evaluate(tree, names = NOTHING, series = NOTHING, formulas = NOTHING) {
+  if (!nodes.is_block(tree)) return nodes.bad_tree();
+  const aboard = nodes.is_block(formulas) ? formulas : NOTHING;
+  let kept = KEPT.get(tree);
+  if (kept === undefined) KEPT.set(tree, (kept = new WeakMap()));
+  let prepared = kept.get(aboard);
+  if (prepared === undefined) kept.set(aboard, (prepared = prepare(tree, aboard)));
+  return prepared.value(names, series);
 }
 
-/** @param {any} thing @param {string} key */
-function has(thing, key) {
-  return Object.prototype.hasOwnProperty.call(thing, key);
+/**
+ * `tree` made ready, with the formulas that it calls. Never throws, whatever the tree is.
+ * @param {any} tree @param {Record<string, any>} [formulas] @returns {Prepared}
+ */
+export function prepare(tree, formulas = NOTHING) {
+  const found = new Making(formulas).part(tree, 0);
+  const run = (found ?? nodes.stops(too_deep())).run;
+  return { value: (names = NOTHING, series = NOTHING) => run(names, series) };
 }
 
-/** @param {any} thing */
-function is_block(thing) {
-  return typeof thing === "object" && thing !== null && !Array.isArray(thing);
-}
-
-/** One evaluation: what names mean, and how much work is left. */
-class Work {
-  /** @param {Record<string, any>} names @param {Record<string, number[]>} series @param {Record<string, any>} formulas */
-  constructor(names, series, formulas) {
-    this.names = names;
-    this.series = series;
+/** Makes one tree ready, and once each the formulas that it calls. A part that is null: the whole is too deep. */
+class Making {
+  /** @param {Record<string, any>} formulas */
+  constructor(formulas) {
     this.formulas = formulas;
-    this.left = MOST_WORK;
+    /** nodes so far, of the tree or of the formula that is being made ready */
+    this.size = 0;
+    /** inside a formula: its arguments, and which of them each is @type {Map<string, number> | null} */
+    this.arguments = null;
+    /** formulas made ready, with their sizes; null while one is being made @type {Map<string, {part: Part, size: number} | null>} */
+    this.bodies = new Map();
   }
 
-  /** @param {any} tree @param {number} depth @returns {Value} */
-  value(tree, depth) {
-    this.left -= 1;
-    if (depth > DEEPEST || this.left < 0) {
-      return new Fault("too-deep", "The formula is nested too deeply, or is too long.");
+  /** Whether it is too much. @param {number} depth @param {number} size */
+  count(depth, size) {
+    this.size += size;
+    return depth > DEEPEST || this.size > MOST_WORK;
+  }
+
+  /** @param {any} tree @param {number} depth @returns {Part | null} */
+  part(tree, depth) {
+    if (this.count(depth, 1)) return null;
+    if (!nodes.is_block(tree)) return nodes.stops(nodes.bad_tree());
+    if (nodes.has(tree, "number")) {
+      return nodes.constant(typeof tree.number === "string" ? number(tree.number) : nodes.bad_tree());
     }
-    if (!is_block(tree)) return bad_tree();
-    if (has(tree, "number")) return typeof tree.number === "string" ? number(tree.number) : bad_tree();
-    if (has(tree, "text")) return typeof tree.text === "string" ? tree.text : bad_tree();
-    if (has(tree, "flag")) return typeof tree.flag === "boolean" ? tree.flag : bad_tree();
-    if (has(tree, "name")) return this.name(tree.name);
-    if (has(tree, "table")) return this.table(tree.table, depth);
-    if (has(tree, "call") && Array.isArray(tree.of)) return this.call(tree.call, tree.of, depth);
-    if (has(tree, "series")) return new Fault("wrong-type", "A column of numbers stands where one number belongs.");
-    return bad_tree();
+    if (nodes.has(tree, "text")) return nodes.constant(typeof tree.text === "string" ? tree.text : nodes.bad_tree());
+    if (nodes.has(tree, "flag")) return nodes.constant(typeof tree.flag === "boolean" ? tree.flag : nodes.bad_tree());
+    if (nodes.has(tree, "name")) return this.named(tree.name);
+    if (nodes.has(tree, "table")) return this.table(tree.table, depth);
+    if (nodes.has(tree, "call") && Array.isArray(tree.of)) return this.call(tree.call, tree.of, depth);
+    if (nodes.has(tree, "series")) {
+      return nodes.stops(new Fault("wrong-type", "A column of numbers stands where one number belongs."));
+    }
+    return nodes.stops(nodes.bad_tree());
   }
 
-  /** @param {any} name @returns {Value} */
-  name(name) {
-    if (typeof name !== "string") return bad_tree();
-    if (!has(this.names, name)) return new Fault("unknown-name", `There is no value named ${name}.`);
-    const found = this.names[name];
-    if (typeof found === "boolean" || typeof found === "string" || found instanceof Fault) return found;
-    if (typeof found === "number" && Number.isFinite(found)) return found;
-    return new Fault("wrong-type", `${name} is no number, text or flag.`);
+  /** All of them, or null. @param {any[]} of @param {number} depth @returns {Part[] | null} */
+  parts(of, depth) {
+    const found = [];
+    for (const tree of of) {
+      const part = this.part(tree, depth);
+      if (part === null) return null;
+      found.push(part);
+    }
+    return found;
   }
 
-  /** @param {any} name @param {any[]} of @param {number} depth @returns {Value} */
+  /** @param {any} name @returns {Part} */
+  named(name) {
+    if (typeof name !== "string") return nodes.stops(nodes.bad_tree());
+    if (this.arguments === null) return nodes.named(name);
+    const place = this.arguments.get(name);
+    return place === undefined ? nodes.stops(nodes.unknown(name)) : nodes.argument(place);
+  }
+
+  /** @param {any} name @param {any[]} of @param {number} depth @returns {Part | null} */
   call(name, of, depth) {
     const entry = typeof name === "string" ? FUNCTIONS.get(name) : undefined;
     if (!entry) return this.library(name, of, depth);
     if (of.length < entry.least || (entry.most !== null && of.length > entry.most)) {
-      return new Fault("bad-tree", `${name} was given ${of.length} values.`);
+      return nodes.stops(miscounted(name, of));
     }
-    if (entry.apply === null) return this.choose(name, of, depth);
-    if (entry.column) return this.on_column(entry.apply, of, depth);
-    const given = this.all(of, depth);
-    return given instanceof Fault ? given : entry.apply(...given);
+    if (entry.column) return this.on_column(entry, of, depth);
+    const parts = this.parts(of, depth + 1);
+    if (parts === null) return null;
+    const runs = parts.map((p) => p.run);
+    return whole(entry.make === null ? nodes.choice(name, runs) : entry.make(...runs), parts, fixed(parts));
   }
 
-  /** Every value, or the first Fault. @param {any[]} of @param {number} depth @returns {Value[] | Fault} */
-  all(of, depth) {
-    const given = [];
-    for (const part of of) {
-      const value = this.value(part, depth + 1);
-      if (value instanceof Fault) return value;
-      given.push(value);
-    }
-    return given;
-  }
-
-  /** if, holds, and, or. @param {string} name @param {any[]} of @param {number} depth @returns {Value} */
-  choose(name, of, depth) {
-    const parts = name === "if" || name === "holds" ? of.slice(0, 1) : of;
-    for (const part of parts) {
-      const flag = this.value(part, depth + 1);
-      if (flag instanceof Fault) return flag;
-      if (typeof flag !== "boolean") {
-        return new Fault("wrong-type", `${name} was given something that is no yes or no.`);
-      }
-      if (name === "if") return this.value(flag ? of[1] : of[2], depth + 1);
-      if (name === "holds") return flag ? this.value(of[2], depth + 1) : not_held(this.value(of[1], depth + 1));
-      if (flag === (name === "or")) return flag;
-    }
-    return name === "and";
-  }
-
-  /** @param {(...of: any[]) => Value} apply @param {any[]} of @param {number} depth @returns {Value} */
-  on_column(apply, of, depth) {
-    const name = is_block(of[0]) && has(of[0], "series") ? of[0].series : null;
+  /** @param {import("./functions.js").Entry} entry @param {any[]} of @param {number} depth @returns {Part | null} */
+  on_column(entry, of, depth) {
+    const name = nodes.is_block(of[0]) && nodes.has(of[0], "series") ? of[0].series : null;
     if (typeof name !== "string") {
-      return new Fault("wrong-type", "One number stands where a column of numbers belongs.");
+      return nodes.stops(new Fault("wrong-type", "One number stands where a column of numbers belongs."));
     }
-    if (!has(this.series, name)) return new Fault("unknown-name", `There is no column of numbers named ${name}.`);
-    const column = this.series[name];
-    if (!Array.isArray(column) || !column.every((v) => Number.isFinite(v))) {
-      return new Fault("wrong-type", `${name} holds something that is no number.`);
-    }
-    const given = this.all(of.slice(1), depth);
-    return given instanceof Fault ? given : apply(column, ...given);
+    if (this.arguments !== null) return nodes.stops(nodes.no_column(name));
+    const parts = this.parts(of.slice(1), depth + 1);
+    if (parts === null || entry.make === null) return null;
+    return whole(entry.make(nodes.column(name), ...parts.map((p) => p.run)), parts, false);
   }
 
-  /** @param {any} name @param {any[]} of @param {number} depth @returns {Value} */
+  /** @param {any} name @param {any[]} of @param {number} depth @returns {Part | null} */
   library(name, of, depth) {
-    if (typeof name !== "string" || !has(this.formulas, name)) {
-      return new Fault("unknown-function", `There is no formula named ${name}.`);
+    if (typeof name !== "string" || !nodes.has(this.formulas, name)) {
+      return nodes.stops(new Fault("unknown-function", `There is no formula named ${name}.`));
     }
     const formula = this.formulas[name];
-    const wanted = formula.arguments;
-    if (!Array.isArray(wanted) || wanted.length !== of.length) {
-      return new Fault("bad-tree", `${name} was given ${of.length} values.`);
-    }
-    /** @type {Record<string, any>} */
-    const given = Object.create(null);
-    for (let k = 0; k < of.length; k += 1) {
-      const value = this.value(of[k], depth + 1);
-      if (value instanceof Fault) return value;
-      const outside = out_of_range(name, wanted[k], value);
-      if (outside !== null) return outside;
-      given[wanted[k].name] = value;
-    }
-    const [caller, columns] = [this.names, this.series];
-    this.names = given;
-    this.series = {};
-    const value = this.value(formula.tree, depth + 1);
-    this.names = caller;
-    this.series = columns;
-    return value;
+    const wanted = nodes.aspect(formula, "arguments");
+    if (!Array.isArray(wanted) || wanted.length !== of.length) return nodes.stops(miscounted(name, of));
+    const names = wanted.map((argument) => nodes.aspect(argument, "name"));
+    if (!names.every((n) => typeof n === "string")) return nodes.stops(nodes.bad_tree());
+    const parts = this.parts(of, depth + 1);
+    const body = parts && this.body(name, formula, names, depth + 1);
+    if (!parts || !body) return null;
+    const given = parts.map((part, k) => nodes.ranged(name, wanted[k], part.run));
+    return whole(nodes.called(body.run, given), [...parts, body], fixed(parts));
   }
 
-  /** @param {any} table @param {number} depth @returns {Value} */
+  /**
+   * The tree of a formula, made ready the first time that it is called.
+   * @param {string} name @param {any} formula @param {string[]} names @param {number} depth @returns {Part | null}
+   */
+  body(name, formula, names, depth) {
+    if (!this.bodies.has(name)) {
+      this.bodies.set(name, null);
+      const [outer, size] = [this.arguments, this.size];
+      [this.arguments, this.size] = [new Map(names.map((n, k) => [n, k])), 0];
+      const part = this.part(nodes.aspect(formula, "tree"), depth);
+      if (part === null) return null;
+      this.bodies.set(name, { part, size: this.size });
+      [this.arguments, this.size] = [outer, size];
+    }
+    const found = this.bodies.get(name);
+    // without one it calls itself
+    return !found || this.count(depth + found.part.height, found.size) ? null : found.part;
+  }
+
+  /** @param {any} table @param {number} depth @returns {Part | null} */
   table(table, depth) {
-    if (!is_block(table) || !Array.isArray(table.x) || !Array.isArray(table.y)) return bad_tree();
-    const at = this.value(table.of, depth + 1);
-    if (at instanceof Fault) return at;
-    if (typeof at !== "number") {
-      return new Fault("wrong-type", "A table was asked with something that is no number.");
+    if (!nodes.is_block(table) || !Array.isArray(table.x) || !Array.isArray(table.y)) {
+      return nodes.stops(nodes.bad_tree());
     }
-    const xs = numbers(table.x);
-    const ys = numbers(table.y);
-    if (xs === null || ys === null || xs.length !== ys.length || xs.length < 2) return bad_tree();
-    return interpolate(String(table.name), at, xs, ys);
+    const at = this.part(table.of, depth + 1);
+    return at && whole(nodes.table(table, at.run), [at], at.fixed);
   }
 }
 
-/** The answer of `holds` where its condition does not hold. @param {Value} says which one @returns {Fault} */
-function not_held(says) {
-  if (says instanceof Fault) return says;
-  return typeof says === "string" ? new Fault("out-of-range", says) : new Fault("wrong-type", "holds has no sentence.");
+/** @param {Part[]} parts */
+function fixed(parts) {
+  return parts.every((p) => p.fixed);
 }
 
-/** Linear between neighbours. @param {string} name @param {number} at @param {number[]} xs @param {number[]} ys @returns {Value} */
-function interpolate(name, at, xs, ys) {
-  if (at < xs[0] || at > xs[xs.length - 1]) {
-    return new Fault("out-of-range", `${name}: ${round12(at)} is outside the table, in SI units.`);
-  }
-  let k = 0;
-  while (k < xs.length - 2 && at >= xs[k + 1]) k += 1;
-  if (xs[k + 1] <= xs[k]) return bad_tree();
-  if (at === xs[k + 1]) return ys[k + 1];
-  const value = ys[k] + (ys[k + 1] - ys[k]) * ((at - xs[k]) / (xs[k + 1] - xs[k]));
-  return Number.isFinite(value) ? value : new Fault("overflow", `The result of ${name} is too large.`);
+/** A node over its parts; asked at once where nothing can change its answer. @param {Run} run @param {Part[]} parts @param {boolean} once @returns {Part} */
+function whole(run, parts, once) {
+  const height = 1 + parts.reduce((found, p) => Math.max(found, p.height), -1);
+  return once ? nodes.constant(run(NOTHING, NOTHING), height) : { run, fixed: false, height };
 }
 
-/** @param {string} name @param {Argument} argument @param {Value} value @returns {Fault | null} */
-function out_of_range(name, argument, value) {
-  if (typeof value !== "number") return new Fault("wrong-type", `${name}: ${argument.name} is no number.`);
-  const [least, most] = [end_of(argument.low), end_of(argument.high)];
-  const [factor, offset] = [end_of(argument.factor), end_of(argument.offset)];
-  if (least instanceof Fault || most instanceof Fault) return bad_tree();
-  if (typeof factor !== "number" || typeof offset !== "number" || factor <= 0) return bad_tree();
-  const whole = argument.whole ?? null;
-  if (whole !== null && typeof whole !== "boolean") return bad_tree();
-  const shown = to_shown(value, argument);
-  const after = argument.unit === "" || argument.unit === "1" ? "" : ` ${argument.unit}`;
-  if ((least !== null && value < least) || (most !== null && value > most)) {
-    /** @type {[string, number | null][]} */
-    const ends = [["from", least], ["to", most]];
-    const span = ends.flatMap(([word, end]) => (end === null ? [] : [`${word} ${to_shown(end, argument)}`])).join(" ");
-    return new Fault("out-of-range", `${name}: ${argument.name} is ${shown}${after}; the formula holds ${span}${after}.`);
-  }
-  if (whole === true && value !== Math.floor(value)) {
-    return new Fault("out-of-range", `${name}: ${argument.name} is ${shown}${after}; only whole numbers.`);
-  }
-  return null;
+/** @param {string} name @param {any[]} of */
+function miscounted(name, of) {
+  return new Fault("bad-tree", `${name} was given ${of.length} values.`);
 }
 
-/** A decimal text as a number, null as none; a Fault for anything else. @param {any} text @returns {number | null | Fault} */
-function end_of(text) {
-  if (text === null) return null;
-  return typeof text === "string" ? number(text) : bad_tree();
-}
-
-/** @param {any[]} texts @returns {number[] | null} */
-function numbers(texts) {
-  const found = texts.map((t) => (typeof t === "string" ? number(t) : null));
-  return found.every((v) => typeof v === "number") ? /** @type {number[]} */ (found) : null;
-}
-
-function bad_tree() {
-  return new Fault("bad-tree", "The formula in the sheet is damaged.");
+function too_deep() {
+  return new Fault("too-deep", "The formula is nested too deeply, or is too long.");
 }

@@ -1,147 +1,242 @@
 /**
  * Every function and operator of the formula language, one entry a line in FUNCTIONS.
  *
- * Twin of fieldkit/formula/functions.py, same names, same order; a test compares the two lists. `apply` gets values
- * that are no Faults (a column as an array of numbers) and answers with a value or a Fault. `if`, `and`, `or`, `holds`
- * choose what is evaluated, so evaluate.js does them; their entries have no `apply`. No DOM, no IO.
+ * Twin of fieldkit/formula/functions.py, same names, same order; a test compares the two lists. `make` takes the parts
+ * of a call, each ready to run, and gives the whole, ready to run. A part runs on what names mean and gives a value or
+ * a Fault, which every function passes on as it is met; a column gives an array of numbers or a Fault. `if`, `and`,
+ * `or`, `holds` choose what is evaluated, so nodes.js makes them; their entries have no `make`. No DOM, no IO.
  */
 
 import * as elementary from "./elementary.js";
 import { Fault } from "./values.js";
 
 /** @typedef {number | boolean | string | Fault} Value */
-/** @typedef {{least: number, most: number | null, column: boolean, apply: ((...of: any[]) => Value) | null}} Entry */
+/** @typedef {(names: any, series: any) => any} Run */
+/** @typedef {{least: number, most: number | null, column: boolean, make: ((...parts: Run[]) => Run) | null}} Entry */
 
 /** @param {string} what */
 export function wrong_type(what) {
   return new Fault("wrong-type", `${what} was given something that is no number.`);
 }
 
-/** @param {string} name @param {(...of: number[]) => Value} apply @returns {(...of: any[]) => Value} */
-function numbers(name, apply) {
-  return (...of) => {
-    if (!of.every((v) => typeof v === "number")) return wrong_type(name);
-    const value = apply(...of);
-    if (value === Infinity || value === -Infinity) return new Fault("overflow", `The result of ${name} is too large.`);
-    return value;
+/** What a function answers that was given `value`, which is no number. @param {any} value @param {string} name */
+function refused(value, name) {
+  return value instanceof Fault ? value : wrong_type(name);
+}
+
+/** A number or a Fault as an answer: v - v is 0 for every finite v. @param {number | Fault} v @param {string} name */
+function answer(v, name) {
+  if (v instanceof Fault || v - v === 0) return v;
+  return new Fault("overflow", `The result of ${name} is too large.`);
+}
+
+// The four operators are what formulas are made of, so each is written out.
+
+/** @param {Run} a @param {Run} b @returns {Run} */
+function add(a, b) {
+  return (names, series) => {
+    const x = a(names, series);
+    if (typeof x !== "number") return refused(x, "add");
+    const y = b(names, series);
+    if (typeof y !== "number") return refused(y, "add");
+    const v = x + y;
+    return v - v === 0 ? v : answer(v, "add");
   };
 }
 
-/** @param {number} a @param {number} b */
+/** @param {Run} a @param {Run} b @returns {Run} */
+function sub(a, b) {
+  return (names, series) => {
+    const x = a(names, series);
+    if (typeof x !== "number") return refused(x, "sub");
+    const y = b(names, series);
+    if (typeof y !== "number") return refused(y, "sub");
+    const v = x - y;
+    return v - v === 0 ? v : answer(v, "sub");
+  };
+}
+
+/** @param {Run} a @param {Run} b @returns {Run} */
+function mul(a, b) {
+  return (names, series) => {
+    const x = a(names, series);
+    if (typeof x !== "number") return refused(x, "mul");
+    const y = b(names, series);
+    if (typeof y !== "number") return refused(y, "mul");
+    const v = x * y;
+    return v - v === 0 ? v : answer(v, "mul");
+  };
+}
+
+/** @param {Run} a @param {Run} b @returns {Run} */
 function div(a, b) {
-  return b !== 0 ? a / b : new Fault("divide-by-zero", "It would divide by zero.");
-}
-
-/** @param {number} a */
-function sqrt(a) {
-  return a >= 0 ? Math.sqrt(a) : new Fault("domain", "The square root needs a number that is not below zero.");
-}
-
-/** @param {number[]} of */
-function least(...of) {
-  return of.reduce((found, v) => (v < found ? v : found));
-}
-
-/** @param {number[]} of */
-function most(...of) {
-  return of.reduce((found, v) => (v > found ? v : found));
-}
-
-/** The plain sum from left to right. @param {number[]} of */
-function total(...of) {
-  return of.reduce((found, v) => found + v, 0);
-}
-
-/** @param {number[]} of */
-function average(...of) {
-  return total(...of) / of.length;
-}
-
-/** @param {Value} a @param {Value} b @returns {Value} */
-function equal(a, b) {
-  if (typeof a !== typeof b) return new Fault("wrong-type", "Two values of different kinds were compared.");
-  return a === b;
-}
-
-/** @param {Value} a @param {Value} b @returns {Value} */
-function unequal(a, b) {
-  const same = equal(a, b);
-  return same instanceof Fault ? same : !same;
-}
-
-/** @param {Value} a @returns {Value} */
-function not(a) {
-  return typeof a === "boolean" ? !a : new Fault("wrong-type", "not was given something that is no yes or no.");
-}
-
-/** @param {string} name @param {(...of: number[]) => Value} apply @returns {(column: number[]) => Value} */
-function column(name, apply) {
-  return (values) => {
-    if (values.length === 0) return new Fault("missing", `${name} has no values yet.`);
-    return numbers(name, apply)(...values);
+  return (names, series) => {
+    const x = a(names, series);
+    if (typeof x !== "number") return refused(x, "div");
+    const y = b(names, series);
+    if (typeof y !== "number") return refused(y, "div");
+    if (y === 0) return new Fault("divide-by-zero", "It would divide by zero.");
+    const v = x / y;
+    return v - v === 0 ? v : answer(v, "div");
   };
 }
 
-/** @param {number[]} values @param {Value} index @returns {Value} */
-function at(values, index) {
-  if (typeof index !== "number") return wrong_type("at");
-  if (index !== Math.floor(index) || index < 0 || index >= values.length) {
-    return new Fault("out-of-range", `There is no such place among ${values.length} values.`);
-  }
-  return values[index];
+/** A function of one number. @param {string} name @param {(x: number) => number | Fault} apply @returns {Entry} */
+function one(name, apply) {
+  return entry(1, 1, (a) => (names, series) => {
+    const x = a(names, series);
+    return typeof x === "number" ? answer(apply(x), name) : refused(x, name);
+  });
 }
 
-/** @param {string} name @param {number} few @param {number | null} many @param {(...of: number[]) => Value} apply @returns {Entry} */
-function numeric(name, few, many, apply) {
-  return { least: few, most: many, column: false, apply: numbers(name, apply) };
+/** A function of two numbers. @param {string} name @param {(x: number, y: number) => any} apply @returns {Entry} */
+function two(name, apply) {
+  return entry(2, 2, (a, b) => (names, series) => {
+    const x = a(names, series);
+    if (typeof x !== "number") return refused(x, name);
+    const y = b(names, series);
+    if (typeof y !== "number") return refused(y, name);
+    const v = apply(x, y);
+    return typeof v === "boolean" ? v : answer(v, name);
+  });
 }
 
-/** @param {number} few @param {number | null} many @param {((...of: any[]) => Value) | null} apply @returns {Entry} */
-function general(few, many, apply) {
-  return { least: few, most: many, column: false, apply };
+/** A function of one number or more. @param {string} name @param {(of: number[]) => number} apply @returns {Entry} */
+function many(name, apply) {
+  return entry(1, null, (...parts) => (names, series) => {
+    const given = [];
+    for (const part of parts) {
+      const x = part(names, series);
+      if (typeof x !== "number") return refused(x, name);
+      given.push(x);
+    }
+    return answer(apply(given), name);
+  });
 }
 
-/** @param {number} count @param {(...of: any[]) => Value} apply @returns {Entry} */
-function on_column(count, apply) {
-  return { least: count, most: count, column: true, apply };
+/** For a column that has numbers in it. @param {string} name @param {(of: number[]) => number} apply @returns {Entry} */
+function column(name, apply) {
+  return on_column(1, (values_of) => (names, series) => {
+    const values = values_of(names, series);
+    if (values instanceof Fault) return values;
+    return values.length === 0 ? new Fault("missing", `${name} has no values yet.`) : answer(apply(values), name);
+  });
+}
+
+/** @param {Run} values_of @returns {Run} */
+function length(values_of) {
+  return (names, series) => {
+    const values = values_of(names, series);
+    return values instanceof Fault ? values : values.length;
+  };
+}
+
+/** @param {Run} values_of @param {Run} index_of @returns {Run} */
+function at(values_of, index_of) {
+  return (names, series) => {
+    const values = values_of(names, series);
+    if (values instanceof Fault) return values;
+    const index = index_of(names, series);
+    if (typeof index !== "number") return refused(index, "at");
+    if (index !== Math.floor(index) || index < 0 || index >= values.length) {
+      return new Fault("out-of-range", `There is no such place among ${values.length} values.`);
+    }
+    return values[index];
+  };
+}
+
+/** @param {number} x */
+function sqrt(x) {
+  return x >= 0 ? Math.sqrt(x) : new Fault("domain", "The square root needs a number that is not below zero.");
+}
+
+/** @param {number[]} values */
+function least(values) {
+  return values.reduce((found, v) => (v < found ? v : found));
+}
+
+/** @param {number[]} values */
+function most(values) {
+  return values.reduce((found, v) => (v > found ? v : found));
+}
+
+/** The plain sum from left to right. @param {number[]} values */
+function total(values) {
+  return values.reduce((found, v) => found + v, 0);
+}
+
+/** @param {number[]} values */
+function average(values) {
+  return total(values) / values.length;
+}
+
+/** @param {Run} a @param {Run} b @param {boolean} same @returns {Run} */
+function equal(a, b, same) {
+  return (names, series) => {
+    const x = a(names, series);
+    if (x instanceof Fault) return x;
+    const y = b(names, series);
+    if (y instanceof Fault) return y;
+    if (typeof x !== typeof y) return new Fault("wrong-type", "Two values of different kinds were compared.");
+    return (x === y) === same;
+  };
+}
+
+/** @param {Run} a @returns {Run} */
+function not(a) {
+  return (names, series) => {
+    const flag = a(names, series);
+    if (typeof flag === "boolean") return !flag;
+    return flag instanceof Fault ? flag : new Fault("wrong-type", "not was given something that is no yes or no.");
+  };
+}
+
+/** @param {number} few @param {number | null} many @param {((...parts: Run[]) => Run) | null} make @returns {Entry} */
+function entry(few, many, make) {
+  return { least: few, most: many, column: false, make };
+}
+
+/** @param {number} count @param {(...parts: Run[]) => Run} make @returns {Entry} */
+function on_column(count, make) {
+  return { least: count, most: count, column: true, make };
 }
 
 /** @type {ReadonlyMap<string, Entry>} */
 export const FUNCTIONS = new Map([
-  ["add", numeric("add", 2, 2, (a, b) => a + b)],
-  ["sub", numeric("sub", 2, 2, (a, b) => a - b)],
-  ["mul", numeric("mul", 2, 2, (a, b) => a * b)],
-  ["div", numeric("div", 2, 2, div)],
-  ["neg", numeric("neg", 1, 1, (a) => -a)],
-  ["lt", numeric("lt", 2, 2, (a, b) => a < b)],
-  ["le", numeric("le", 2, 2, (a, b) => a <= b)],
-  ["gt", numeric("gt", 2, 2, (a, b) => a > b)],
-  ["ge", numeric("ge", 2, 2, (a, b) => a >= b)],
-  ["eq", general(2, 2, equal)],
-  ["ne", general(2, 2, unequal)],
-  ["and", general(2, null, null)],
-  ["or", general(2, null, null)],
-  ["not", general(1, 1, not)],
-  ["if", general(3, 3, null)],
-  ["holds", general(3, 3, null)],
-  ["min", numeric("min", 1, null, least)],
-  ["max", numeric("max", 1, null, most)],
-  ["average", numeric("average", 1, null, average)],
-  ["abs", numeric("abs", 1, 1, Math.abs)],
-  ["sqrt", numeric("sqrt", 1, 1, sqrt)],
-  ["pow", numeric("pow", 2, 2, elementary.pow)],
-  ["exp", numeric("exp", 1, 1, elementary.exp)],
-  ["log", numeric("log", 1, 1, elementary.log)],
-  ["sin", numeric("sin", 1, 1, elementary.sin)],
-  ["cos", numeric("cos", 1, 1, elementary.cos)],
-  ["atan", numeric("atan", 1, 1, elementary.atan)],
-  ["erf", numeric("erf", 1, 1, elementary.erf)],
-  ["length", on_column(1, (x) => x.length)],
+  ["add", entry(2, 2, add)],
+  ["sub", entry(2, 2, sub)],
+  ["mul", entry(2, 2, mul)],
+  ["div", entry(2, 2, div)],
+  ["neg", one("neg", (x) => -x)],
+  ["lt", two("lt", (x, y) => x < y)],
+  ["le", two("le", (x, y) => x <= y)],
+  ["gt", two("gt", (x, y) => x > y)],
+  ["ge", two("ge", (x, y) => x >= y)],
+  ["eq", entry(2, 2, (a, b) => equal(a, b, true))],
+  ["ne", entry(2, 2, (a, b) => equal(a, b, false))],
+  ["and", entry(2, null, null)],
+  ["or", entry(2, null, null)],
+  ["not", entry(1, 1, not)],
+  ["if", entry(3, 3, null)],
+  ["holds", entry(3, 3, null)],
+  ["min", many("min", least)],
+  ["max", many("max", most)],
+  ["average", many("average", average)],
+  ["abs", one("abs", Math.abs)],
+  ["sqrt", one("sqrt", sqrt)],
+  ["pow", two("pow", elementary.pow)],
+  ["exp", one("exp", elementary.exp)],
+  ["log", one("log", elementary.log)],
+  ["sin", one("sin", elementary.sin)],
+  ["cos", one("cos", elementary.cos)],
+  ["atan", one("atan", elementary.atan)],
+  ["erf", one("erf", elementary.erf)],
+  ["length", on_column(1, length)],
   ["at", on_column(2, at)],
-  ["first", on_column(1, column("first", (...x) => x[0]))],
-  ["last", on_column(1, column("last", (...x) => x[x.length - 1]))],
-  ["lowest", on_column(1, column("lowest", least))],
-  ["highest", on_column(1, column("highest", most))],
-  ["total", on_column(1, column("total", total))],
-  ["mean", on_column(1, column("mean", average))],
+  ["first", column("first", (x) => x[0])],
+  ["last", column("last", (x) => x[x.length - 1])],
+  ["lowest", column("lowest", least)],
+  ["highest", column("highest", most)],
+  ["total", column("total", total)],
+  ["mean", column("mean", average)],
 ]);
