@@ -226,13 +226,16 @@ def _shipped() -> list[Path]:
 
 
 def _release(paths: list[Path]) -> None:
+    """Puts procedures in use, with the formulas that `fieldkit check` gives them. Raises Problems."""
     if not paths:
         return
-    from fieldkit.formula import library
+    from fieldkit.cli import check
 
-    found = library.load(files.folder("procedures") / "formulas")
     for path in paths:
-        digest = procedures.release_file(HOUSE, path, found)
+        formulas = check.formulas_for(path)
+        if formulas.problems:
+            raise Problems(list(formulas.problems))
+        digest = procedures.release_file(HOUSE, path, formulas)
         print(f"In use: {path.name}, sheet {digest[:16]} (checked, not proved)")
 
 

@@ -61,15 +61,12 @@ def plain(si: float, unit: Unit, digits: int = MOST_DIGITS) -> str:
     exact = Decimal(values.to_shown(si, unit))
     if exact == 0:
         return "0"
-    size = exact.adjusted()
-    if size not in _PLAIN:
-        mantissa, _, power = f"{exact:.{digits - 1}e}".partition("e")
+    mantissa, _, power = f"{exact:.{digits - 1}e}".partition("e")
+    # the power before and after rounding: 9999999999 keeps its digits, 0.000099999999 becomes 0.0001
+    if exact.adjusted() not in _PLAIN and int(power) not in _PLAIN:
         return f"{values.to_text(values.trim(values.dec(mantissa)))}e{int(power)}"
-    return values.to_text(values.trim(values.dec(values.to_text(_dec(exact), max(0, digits - 1 - size)))))
-
-
-def _dec(exact: Decimal) -> values.Dec:
-    return values.dec(f"{exact:f}")
+    places = max(0, digits - 1 - int(power))
+    return values.to_text(values.trim(values.dec(values.to_text(values.dec(f"{exact:f}"), places))))
 
 
 def with_unit(number: str, unit: Unit) -> str:

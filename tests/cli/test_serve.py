@@ -9,6 +9,7 @@ import ssl
 import subprocess
 import threading
 import time
+from pathlib import Path
 
 import psycopg
 import pytest
@@ -22,6 +23,7 @@ from fieldkit.store.db import db
 from fieldkit.trust import receipts
 from fieldkit.web.app import create_app
 
+ROOT = Path(__file__).resolve().parents[2]
 FIRST = ("--station", "Skarrow Fell", "--admin", "orme", "--admin-name", "K. Orme")
 
 
@@ -110,6 +112,26 @@ def test_a_procedure_with_problems_stops_with_where_and_what(folder, tmp_path):
     bad.write_text("procedure: bad\nedition: one\n")
     done = finished("--data", str(folder), "--set-up-only", "--release", str(bad))
     assert done.returncode == 1 and "bad.yaml:" in done.stderr
+
+
+def test_a_procedure_is_released_with_the_stations_own_formulas(folder, tmp_path):
+    (tmp_path / "formulas").mkdir()
+    own = tmp_path / "formulas" / "own.yaml"
+    own.write_text(
+        "subject: own\nformulas:\n  twice_over:\n    meaning: two quotients\n    arguments:\n"
+        "      a: {unit: V, low: 0 V, high: 9 V}\n      b: {unit: A, low: 0.1 A, high: 9 A}\n"
+        "    expression: 2 * a / b\n    unit: ohm\n    reference: none needed\n    decides: nothing\n"
+        "    examples:\n      - {with: {a: 4 V, b: 2 A}, gives: 4 ohm, within: 0 ohm}\n"
+    )
+    step = (ROOT / "tests" / "steps" / "work_out.yaml").read_text()
+    procedure = tmp_path / "work-out.yaml"
+    procedure.write_text(step.replace("volts / amps", "twice_over(a=volts, b=amps)"))
+    released = ("--data", str(folder), "--set-up-only", "--release", str(procedure))
+    done = finished(*released)
+    assert done.returncode == 0 and "In use: work-out.yaml" in done.stdout, done.stdout + done.stderr
+    own.write_text(own.read_text().replace("gives: 4 ohm", "gives: 5 ohm"))
+    done = finished(*released)
+    assert done.returncode == 1 and "own.yaml:13:9:" in done.stderr and "[example-differs]" in done.stderr
 
 
 def test_every_receipt_survives_a_server_that_is_killed_at_any_moment(tmp_path):
