@@ -124,8 +124,12 @@ class _Maker:
             return {"call": "if", "of": [self.flag(depth - 1), self.number(depth - 1), self.number(depth - 1)]}
         if pick < 0.95:
             return self.column(depth)
-        if pick < 0.98:
-            return self.call(self.rnd.choice(["square", "ranged"]), 1, depth)
+        if pick < 0.96:
+            says = self.rnd.choice([{"text": "it does not hold"}, {"text": "it does not hold"}, self.literal()])
+            return {"call": "holds", "of": [self.flag(depth - 1), says, self.number(depth - 1)]}
+        if pick < 0.985:
+            name = self.rnd.choice(list(FORMULAS))
+            return self.call(name, len(FORMULAS[name]["arguments"]), depth)
         xs = sorted({round(self.rnd.uniform(-5, 5), 2) for _ in range(self.rnd.randint(2, 6))})
         ys = [f"{self.rnd.uniform(-9, 9):.4f}" for _ in xs]
         return {"table": {"name": "t", "of": self.number(depth - 1), "x": [str(x) for x in xs], "y": ys}}
@@ -154,16 +158,23 @@ class _Maker:
         return numbers | {"flag": self.rnd.random() < 0.5, "word": "on", "lost": Fault("missing", "Not read yet.")}
 
 
-def _argument(low: str | None, high: str | None) -> dict[str, Any]:
-    return {"name": "x", "unit": "kV", "factor": "1000", "offset": "0", "low": low, "high": high}
+def _argument(name: str, low: str | None, high: str | None, **more: Any) -> dict[str, Any]:
+    return {"name": name, "unit": "kV", "factor": "1000", "offset": "0", "low": low, "high": high} | more
 
 
-def _formula(name: str, argument: dict[str, Any]) -> dict[str, Any]:
-    tree = {"call": "mul", "of": [{"name": "x"}, {"name": "x"}]}
-    return {"name": name, "meaning": "", "arguments": [argument], "result_unit": "1", "tree": tree, "reference": ""}
+def _formula(expression: str, *arguments: dict[str, Any]) -> dict[str, Any]:
+    tree = ast.to_json(parse.parse(expression, {"ranged": ("x",), "constant": ()}))
+    return {"name": "", "meaning": "", "arguments": list(arguments), "result_unit": "1", "tree": tree, "reference": ""}
 
 
-FORMULAS = {"square": _formula("square", _argument(None, None)), "ranged": _formula("ranged", _argument("-3.5", "700"))}
+FORMULAS = {
+    "square": _formula("x * x", _argument("x", None, None)),
+    "ranged": _formula("x * x", _argument("x", "-3.5", "700")),
+    "counted": _formula("x + 1", _argument("x", "-12", None, unit="1", factor="1", whole=True)),
+    "constant": _formula("2 * 4.5 / 7"),
+    "inner": _formula("ranged(x=x) + constant() * y", _argument("x", None, "9"), _argument("y", None, None)),
+    "five": _formula("p - q * r / s + t", *[_argument(n, None, None) for n in "pqrst"]),
+}
 
 
 def test_twenty_thousand_random_formulas_agree_bit_for_bit(twins: Any) -> None:
