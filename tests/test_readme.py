@@ -24,6 +24,14 @@ def test_every_command_that_the_readme_names_exists():
     assert {"check", "demo", "serve", "sheet", "verify"} <= named <= {command.name for command in COMMANDS}
 
 
+def test_the_sum_of_the_readme_gives_what_it_shows(capsys):
+    shown = re.findall(r"^    \$ fieldkit calc '([^']+)'\n    (.+)$", TEXT, re.M)
+    assert shown
+    for expression, value in shown:
+        assert main(["calc", expression]) == 0
+        assert capsys.readouterr().out.splitlines()[0] == value
+
+
 def test_the_pictures_and_files_that_the_readme_shows_are_there():
     named = re.findall(r"\]\((\.readme/[^)]+)\)", TEXT) + re.findall(r"`((?:procedures|tests)/[\w./-]+)`", TEXT)
     assert len(named) >= 5

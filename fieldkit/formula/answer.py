@@ -25,6 +25,7 @@ from fieldkit.formula.locate import locate
 from fieldkit.formula.parse import Parsed, Term
 from fieldkit.formula.spots import Spot, Unreadable, nearest, one_of
 from fieldkit.units import Dimension, Unit
+from fieldkit.values import Fault
 
 #: so many misspelt units are told in one answer
 _MOST_REPAIRS = 20
@@ -166,6 +167,8 @@ class _Part:
         self.library = library
         self.pair = pair
         self.kind: check.Kind | None = None
+        #: what the evaluator gave, once `problems` found nothing
+        self.got: object = None
 
     def problems(self, *, units_lost: bool) -> list[Spot]:
         """What is wrong with names, arguments and units, and, where nothing is, what has no answer."""
@@ -177,7 +180,16 @@ class _Part:
             return [s for s in spots if s.code in (*_WITHOUT_UNITS, "unknown-name", "no-run")]
         if not spots and self.kind == "text":
             spots = [self.parsed.term.spot("not-a-number", "this is a word, not a sum", "write numbers and formulas")]
-        return [self._worded(s) for s in spots or locate(self.parsed, self.library)]
+        return [self._worded(s) for s in spots or self._faults()]
+
+    def _faults(self) -> list[Spot]:
+        """Works the sum out; the places of its faults where it has no answer."""
+        tree = ast.to_json(self.parsed.tree(self.library.signatures()))
+        self.got = evaluate(tree, formulas=self.library.used(_called(self.parsed.term)))
+        if not isinstance(self.got, Fault):
+            return []
+        whole = self.parsed.term.spot(self.got.code, self.got.says.rstrip("."), "work it out in parts")
+        return locate(self.parsed, self.library) or [whole]
 
     def _worded(self, spot: Spot) -> Spot:
         """Problems with one formula of a pair name the pair, which is what was written; nothing far off is offered."""
@@ -193,12 +205,10 @@ class _Part:
         return replace(spot, message=message, remedy=remedy)
 
     def result(self) -> Union[Value, bool]:
-        term = self.parsed.term
-        tree = self.parsed.tree(self.library.signatures())
-        si = evaluate(ast.to_json(tree), formulas=self.library.used(_called(term)))
+        term, si = self.parsed.term, self.got
         if isinstance(si, bool):
             return si
-        assert isinstance(si, float) and isinstance(self.kind, Dimension), "locate found no fault, and there is one"
+        assert isinstance(si, float) and isinstance(self.kind, Dimension)
         unit = self._unit(term) or display.fitting(si, self.kind)
         formula = self.library.formulas[term.what] if term.kind == "library" else None
         return Value(
