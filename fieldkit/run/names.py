@@ -12,7 +12,7 @@ from __future__ import annotations
 
 from collections import OrderedDict
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any
 
 from fieldkit import values
@@ -48,6 +48,8 @@ class Context:
     missing: dict[str, Fault]
     #: values of the givens of the run that was asked about last
     givens: tuple[dict[str, Any] | None, Scope] | None = None
+    #: trees of the sheet made ready, by identity
+    ready: dict[int, tuple[dict[str, Any], evaluation.Prepared]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)
@@ -266,8 +268,12 @@ def stands(ctx: Context, state: dict[str, Any], name: str) -> str:
 
 
 def value(ctx: Context, where: Scope, tree: dict[str, Any]) -> Any:
-    """The value of a tree in the sheet's JSON form: float, bool, str, or a Fault."""
-    return evaluation.evaluate(tree, where.names, where.series, ctx.sheet["formulas"])
+    """The value of a tree of the sheet, in its JSON form: float, bool, str, or a Fault."""
+    kept = ctx.ready.get(id(tree))
+    if kept is None or kept[0] is not tree:
+        kept = ctx.ready[id(tree)] = (tree, evaluation.prepare(tree, ctx.sheet["formulas"]))
+    found: evaluation.Value = kept[1].value(where.names, where.series)
+    return found
 
 
 def reasons(ctx: Context, where: Scope, gate: list[dict[str, Any]], skip: str | None = None) -> list[dict[str, Any]]:
