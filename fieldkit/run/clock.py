@@ -23,6 +23,7 @@ UNTOLD_MS = 86_400_000
 _WALL = re.compile(r"^(\d{4})-(\d\d)-(\d\d)T(\d\d):(\d\d):(\d\d)(?:\.(\d{1,9}))?(Z|[+-]\d\d:\d\d)$", re.ASCII)
 _MONO = re.compile(r"^(\d{1,13})(?:\.\d+)?$", re.ASCII)
 _SECONDS = re.compile(r"^(-?)(\d{1,12})(?:\.(\d{1,3})\d*)?$", re.ASCII)
+_DAY = re.compile(r"^(\d{4})-(\d\d)-(\d\d)$", re.ASCII)
 _MONTHS = (31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31)
 
 
@@ -34,9 +35,7 @@ def wall_ms(text: Any) -> int | None:
     year, month, day, hour, minute, second = (int(found.group(i)) for i in range(1, 7))
     if not 1 <= month <= 12 or hour > 23 or minute > 59 or second > 59:
         return None
-    leap = year % 4 == 0 and (year % 100 != 0 or year % 400 == 0)
-    longest = 29 if month == 2 and leap else _MONTHS[month - 1]
-    if not 1 <= day <= longest:
+    if not 1 <= day <= _longest(year, month):
         return None
     millis = int(((found.group(7) or "") + "000")[:3])
     zone = found.group(8)
@@ -45,6 +44,28 @@ def wall_ms(text: Any) -> int | None:
         offset = int(zone[1:3]) * 60 + int(zone[4:6])
         offset = -offset if zone[0] == "-" else offset
     return ((_days(year, month, day) * 24 + hour) * 60 + minute - offset) * 60_000 + second * 1000 + millis
+
+
+def _longest(year: int, month: int) -> int:
+    """How many days the month has."""
+    leap = year % 4 == 0 and (year % 100 != 0 or year % 400 == 0)
+    return 29 if month == 2 and leap else _MONTHS[month - 1]
+
+
+def months_later(date: Any, months: Any) -> str | None:
+    """The date so many months after a date (YYYY-MM-DD), the day clipped to the month's end; None where it is none.
+
+    A calibration of 31 August with an interval of 6 months is valid to the end of 28 (or 29) February.
+    """
+    found = _DAY.match(date) if isinstance(date, str) else None
+    if not found or isinstance(months, bool) or not isinstance(months, int) or months < 0:
+        return None
+    year, month, day = (int(found.group(i)) for i in (1, 2, 3))
+    if not 1 <= year or not 1 <= month <= 12 or not 1 <= day <= _longest(year, month):
+        return None
+    passed_months = month - 1 + months
+    year, month = year + passed_months // 12, passed_months % 12 + 1
+    return f"{year:04d}-{month:02d}-{min(day, _longest(year, month)):02d}" if year <= 9999 else None
 
 
 def _days(year: int, month: int, day: int) -> int:

@@ -16,6 +16,7 @@ const UNTOLD_MS = 86400000;
 const WALL = /^(\d{4})-(\d\d)-(\d\d)T(\d\d):(\d\d):(\d\d)(?:\.(\d{1,9}))?(Z|[+-]\d\d:\d\d)$/;
 const MONO = /^(\d{1,13})(?:\.\d+)?$/;
 const SECONDS = /^(-?)(\d{1,12})(?:\.(\d{1,3})\d*)?$/;
+const DAY = /^(\d{4})-(\d\d)-(\d\d)$/;
 const MONTHS = [31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31];
 
 /** @param {unknown} text @returns {number | null} milliseconds since 1970 */
@@ -24,9 +25,7 @@ export function wall_ms(text) {
   if (!found) return null;
   const [year, month, day, hour, minute, second] = found.slice(1, 7).map(Number);
   if (month < 1 || month > 12 || hour > 23 || minute > 59 || second > 59) return null;
-  const leap = year % 4 === 0 && (year % 100 !== 0 || year % 400 === 0);
-  const longest = month === 2 && leap ? 29 : MONTHS[month - 1];
-  if (day < 1 || day > longest) return null;
+  if (day < 1 || day > longest(year, month)) return null;
   const thousandths = Number(((found[7] || "") + "000").slice(0, 3));
   const zone = found[8];
   let offset = 0;
@@ -35,6 +34,27 @@ export function wall_ms(text) {
     if (zone[0] === "-") offset = -offset;
   }
   return ((days(year, month, day) * 24 + hour) * 60 + minute - offset) * 60000 + second * 1000 + thousandths;
+}
+
+/** How many days the month has. @param {number} year @param {number} month */
+function longest(year, month) {
+  const leap = year % 4 === 0 && (year % 100 !== 0 || year % 400 === 0);
+  return month === 2 && leap ? 29 : MONTHS[month - 1];
+}
+
+/** The date so many months after a date, the day clipped to the month's end; null where it is none.
+ * @param {unknown} date @param {unknown} months @returns {string | null} */
+export function months_later(date, months) {
+  const found = typeof date === "string" ? DAY.exec(date) : null;
+  if (!found || typeof months !== "number" || !Number.isSafeInteger(months) || months < 0) return null;
+  const [of_year, of_month, of_day] = found.slice(1, 4).map(Number);
+  if (of_year < 1 || of_month < 1 || of_month > 12 || of_day < 1 || of_day > longest(of_year, of_month)) return null;
+  const passed_months = of_month - 1 + months;
+  const year = of_year + Math.floor(passed_months / 12);
+  const month = (passed_months % 12) + 1;
+  if (year > 9999) return null;
+  const two = (/** @type {number} */ n) => String(n).padStart(2, "0");
+  return `${String(year).padStart(4, "0")}-${two(month)}-${two(Math.min(of_day, longest(year, month)))}`;
 }
 
 /** @param {number} year @param {number} month @param {number} day */

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import json
 import random
-from datetime import UTC, datetime, timedelta, timezone
+from datetime import UTC, date, datetime, timedelta, timezone
 from typing import Any
 
 import pytest
 import run_driver as drive
+from dateutil.relativedelta import relativedelta
 from run_twin import Twin
 
 from fieldkit.run import clock
@@ -64,3 +65,28 @@ def test_seconds_and_millis_are_inverse() -> None:
     rng = random.Random(5)
     for ms in [0, -1, 999, *(rng.randrange(-(10**12), 10**12) for _ in range(500))]:
         assert clock.millis(clock.seconds(ms)) == ms
+
+
+def test_months_are_counted_as_dateutil_counts_them(twin: Twin) -> None:
+    # outside check: relativedelta of python-dateutil, whose day is clipped to the end of a shorter month
+    rng = random.Random(11)
+    first, last = date(1900, 1, 1).toordinal(), date(2200, 12, 31).toordinal()
+    days = [date.fromordinal(rng.randrange(first, last)) for _ in range(3000)]
+    days += [date(year, month, day) for year in (1900, 2000, 2023, 2024) for month in (1, 3, 5, 8, 12) for day in (28, 31)]
+    for day in days:
+        months = rng.randrange(0, 240)
+        want = (day + relativedelta(months=months)).isoformat()
+        assert clock.months_later(day.isoformat(), months) == want
+        assert twin.call("clock.months_later", day.isoformat(), months) == want
+
+
+@pytest.mark.parametrize("date_", ["", "2026-7-1", "2026-02-29", "2026-13-01", "0000-01-01", "2026-07-31T10:00", None, 20260731])
+def test_what_is_no_date_has_no_later_one(date_: Any, twin: Twin) -> None:
+    assert clock.months_later(date_, 12) is None
+    assert twin.call("clock.months_later", date_, 12) is None
+
+
+@pytest.mark.parametrize("months", [-1, 1.5, None, "12", True, 10**6])
+def test_what_is_no_number_of_months_gives_no_date(months: Any, twin: Twin) -> None:
+    assert clock.months_later("2026-07-31", months) is None
+    assert twin.call("clock.months_later", "2026-07-31", months) is None
