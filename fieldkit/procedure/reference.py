@@ -24,8 +24,9 @@ INTRO = """# How a procedure is written
 Made from the checker's own models; `fieldkit check FILE` says the same, with line and column. A procedure is a YAML
 file of plain texts: `no`, `on`, `12:30` and `1e3` mean what a person reads. A value is a number, a space and a unit:
 `27 kV`, `12 L/min`, `0.5 uA`. Where a value is a formula it may use givens and earlier readings by name, `+ - * / ^`,
-comparisons, `if(condition, a, b)` and the formulas of `procedures/formulas`; units are checked. In a formula a choice
-is written `choice(history) = cold`. Quotes are needed where a text has `: ` or ` #` in it, or a comma inside `{ }`.
+comparisons, `if(condition, a, b)`, the formulas that come along (`fieldkit calc --list` shows them) and those in a
+folder `formulas` beside the procedure; units are checked. In a formula a choice is written `choice(history) = cold`.
+Quotes are needed where a text has `: ` or ` #` in it, or a comma inside `{ }`.
 """
 
 LIMITS = f"""## Limits
