@@ -137,9 +137,8 @@ def _token(text: str, at: int, found: str) -> Spot:
         return Spot(at + 1, 1, "formula-syntax", "two equals signs", "write one =")
     if found in ("<", ">", "<=", ">=", "=", "!=", "≤", "≥", "≠"):
         return Spot(at + 1, len(found), "formula-syntax", "a second comparison", "write a < b and b < c")
-    return Spot(
-        at + 1, max(1, len(found)), "formula-syntax", f'"{found}" cannot stand here', "look at what stands before it"
-    )
+    remedy = "write a comma before it" if re.match(r"\w+ *=", text[at:]) else "look at what stands before it"
+    return Spot(at + 1, max(1, len(found)), "formula-syntax", f'"{found}" cannot stand here', remedy)
 
 
 def _character(text: str, at: int) -> Spot:

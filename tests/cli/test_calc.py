@@ -240,6 +240,7 @@ WRONG = [
     ("1 000 V", ("formula-syntax", "000", "number follows a number", "without a space")),
     ("3\u202fV", ("formula-syntax", "\u202f", "ordinary space", "ordinary space")),
     ("π * 2", ("formula-syntax", "π", "pi", "3.14159")),
+    ("beam_power(voltage=1 kV current=1 A)", ("formula-syntax", "current", "cannot stand here", "a comma before it")),
     ('"cold"', ("not-a-number", '"cold"', "a word", "numbers")),
     ("(3 V", ("formula-syntax", "V", "never closed", ")")),
 ]  # fmt: skip
