@@ -14,7 +14,7 @@ from typing import Any
 import mpmath
 import pytest
 
-from fieldkit.formula import elementary
+from fieldkit.formula import elementary, pairs, quick
 from fieldkit.values import Fault
 
 POINTS = 1000
@@ -82,6 +82,49 @@ def test_the_same_bits_in_both_languages(twins: Any) -> None:
     requests = [(name, list(args)) for name in REFERENCE for args in _points(name)]
     assert len(requests) > 15_000
     assert twins.python(requests) == twins.javascript(requests)
+
+
+def _off(got: float, want: Any) -> float:
+    """How far a double is from mpmath's value, in units of its last place."""
+    return float(abs(mpmath.mpf(got) - want) / mpmath.mpf(math.ulp(got)))
+
+
+def test_the_short_way_gives_the_nearest_double_or_nothing() -> None:
+    """Outside check: mpmath. The long way gives the same double, so that it never shows which way was taken."""
+    rnd, doubtful = random.Random(8), 0
+    with mpmath.workprec(400):
+        for _ in range(4000):
+            x = rnd.uniform(-1, 1) * 10 ** rnd.uniform(-12, 2.84)
+            got = quick.exp(x, 0.0, quick.EXP_DOUBT)
+            e, k = pairs.exp((x, 0.0))
+            if got == got:
+                assert _off(got, mpmath.exp(x)) <= 0.5
+                assert got == pairs.scale(e[0], k) == elementary.exp(x)
+            doubtful += got != got
+    assert 0 < doubtful < 80
+
+
+def test_the_short_way_to_a_logarithm_is_as_near_as_it_says() -> None:
+    """Outside check: mpmath. Far and near numbers, and those about 1, where the first digits cancel."""
+    rnd = random.Random(9)
+    with mpmath.workprec(400):
+        for k in range(4000):
+            x = math.exp(rnd.uniform(-700, 700)) if k % 2 else _near_one(rnd)
+            value, rest = quick.log(x)
+            assert abs(mpmath.mpf(value) + mpmath.mpf(rest) - mpmath.log(mpmath.mpf(x))) <= quick.LOG_DOUBT
+            assert elementary.log(x) == pairs.log(x)[0]
+
+
+def test_a_power_is_the_nearest_double() -> None:
+    """Outside check: mpmath. Exponents as formulas have them, and any."""
+    rnd = random.Random(10)
+    with mpmath.workprec(400):
+        for k in range(4000):
+            x = 10 ** rnd.uniform(-12, 12)
+            y = rnd.choice([0.5, 1.5, 2.0, 3.0, 4.0, -1.0, -2.0, 0.57, 0.1]) if k % 2 else rnd.uniform(-20, 20)
+            got = elementary.pow(x, y)
+            assert isinstance(got, float)
+            assert _off(got, mpmath.power(mpmath.mpf(x), mpmath.mpf(y))) <= 0.5
 
 
 def test_symmetry_and_order() -> None:
