@@ -1,7 +1,8 @@
 """The kit: all that a tablet takes to site, as a signed manifest of hashes and the bytes behind them.
 
-The registers' form stands in DEVELOPERS.md, "Registers". What is in a kit depends only on what is stored, so the same
-content has the same hash and is fetched once. Not here: making the control templates (fieldkit.web.step_form).
+The registers' form stands in DEVELOPERS.md, "Registers". What is in a kit depends only on what is stored and on the
+formula files, so the same content has the same hash and is fetched once. Not here: making the control templates
+(fieldkit.web.step_form), making the sums (sums.py).
 """
 
 from __future__ import annotations
@@ -12,7 +13,7 @@ from typing import Any
 
 from fieldkit import units
 from fieldkit.errors import Refusal
-from fieldkit.operations import board, enrol, moment, people, procedures, registers, settings
+from fieldkit.operations import board, enrol, moment, people, procedures, registers, settings, sums
 from fieldkit.operations.station import Station
 from fieldkit.store.db import db, writing
 from fieldkit.store.tables import Blob, SheetRow, Source
@@ -32,6 +33,8 @@ def make(station: Station, controls: str) -> str:
         "registers": (_json(registers_now()), "application/json"),
         "controls": (controls.encode(), "text/html"),
     }
+    if (formulas := sums.data()) is not None:
+        made["sums"] = (formulas, "application/json")
     for name, (data, media) in made.items():
         blobs.append(_entry(name, _keep(data, media), media, len(data)))
     blobs.sort(key=lambda blob: str(blob["name"]))

@@ -7,9 +7,12 @@ import { personName, time } from "./words.js";
 /** Height of a past or coming row in px, as tokens.css has it: larger in glove mode. */
 const rowHeight = () => Number.parseInt(getComputedStyle(document.documentElement).getPropertyValue("--minor"), 10) || 48;
 
+/** MAKE SAFE, wherever it stands. @param {() => void} open */
+export const makeSafeMark = (open) => h("button", { type: "button", class: "makesafe", "data-make-safe": true, "aria-label": "MAKE SAFE: open the list", on: { click: open } }, icon("make-safe"), h("span", {}, "MAKE", h("br"), "SAFE"));
+
 /** @param {any} sheet @param {{makeSafe: () => void, thisRun: () => void}} acts */
 export function frame(sheet, acts) {
-  const safe = h("button", { type: "button", class: "makesafe", "data-make-safe": true, "aria-label": "MAKE SAFE: open the list", on: { click: acts.makeSafe } }, icon("make-safe"), h("span", {}, "MAKE", h("br"), "SAFE"));
+  const safe = makeSafeMark(acts.makeSafe);
   const title = h("b"), under = h("span"), who = h("b", { "data-recorder": true }), saved = h("span", { "data-saved": true });
   const dl = h("div", { "data-live": true }), mini = h("div", { class: "mini", "aria-hidden": "true" });
   const more = h("button", { type: "button", class: "thisrun", "data-this-run": true, on: { click: acts.thisRun } }, "This run");

@@ -3,7 +3,7 @@
  * The host: everything that the screens may ask of the tablet, in one place. Screens import this file and no other of
  * the plumbing.
  *
- * open, enrol, enrolStatus, fetchKit, startRun, openRun, unlockPerson, inbox, sync, onsync, ontrouble, onupdate, update.
+ * open, enrol, enrolStatus, fetchKit, sums, startRun, openRun, unlockPerson, inbox, sync, onsync, ontrouble, onupdate, update.
  * A call throws Refused {code, says}; a command to a run answers {ok, state} or {refused: {code, says}} and does so
  * only when what it recorded is on disk. Not here: how any of it is done; each file beside this one does one thing.
  */
@@ -136,6 +136,9 @@ export async function fetchKit(progress = () => undefined) {
   loop?.soon();
   return kits.view(ready());
 }
+
+/** The sums of the kit that is aboard; null where it has none. Throws Refused damaged-kit, unknown-version. */
+export const sums = () => kits.sums(ready());
 
 /**
  * Begins a run and returns its name. Throws Refused: what begin.js or core/decide.js say.

@@ -125,3 +125,25 @@ export async function view(store) {
     store: kit.store,
   };
 }
+
+/** The sums last read, under their hash: they are large, and asked for again and again. @type {{sha256: string, book: any} | null} */
+let read = null;
+
+/**
+ * The sums of the kit (fieldkit/formula/sums.py says their form); null where there is no kit, or one from before them.
+ * @param {Store} store
+ */
+export async function sums(store) {
+  /** @type {Kit | undefined} */
+  const kit = await get(store, "meta", "kit");
+  const row = kit?.blobs.find((b) => b.name === "sums");
+  if (!row) return null;
+  if (read?.sha256 !== row.sha256) {
+    const book = JSON.parse(await blob(store, row.sha256));
+    if (!["subjects", "formulas", "pairs", "units"].every((key) => key in book)) {
+      throw new Refused("unknown-version", "This page does not know these sums. Connect once and reload.");
+    }
+    read = { sha256: row.sha256, book };
+  }
+  return read.book;
+}

@@ -13,9 +13,10 @@ import { kitScreen } from "./screens/kit.js";
 import { startScreen } from "./screens/start.js";
 import { cardScreen } from "./screens/card.js";
 import { runScreen } from "./screens/run.js";
+import { sumsScreen } from "./screens/sums.js";
 
 /** name in the address -> screen */
-const SCREENS = { home: homeScreen, enrol: enrolScreen, kit: kitScreen, start: startScreen, card: cardScreen, run: runScreen };
+const SCREENS = { home: homeScreen, enrol: enrolScreen, kit: kitScreen, start: startScreen, card: cardScreen, sums: sumsScreen, run: runScreen };
 
 /**
  * @typedef {object} App

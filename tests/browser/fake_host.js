@@ -26,6 +26,7 @@ export async function fetchKit(told) {
   if (scene.kitSays) throw scene.kitSays;
   return scene.held.kit;
 }
+export async function sums() { return scene.sums === null ? null : (await fetch("/sums.json")).json(); }
 export async function startRun(asked) {
   globalThis.commands.push({ do: "start", ...asked });
   if (scene.startSays) throw scene.startSays;

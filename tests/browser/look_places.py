@@ -161,6 +161,33 @@ def wrong_passphrase(page: Any) -> None:
     page.wait_for_selector("[data-refused]:not(:empty)")
 
 
+def waiting(one: str) -> Act:
+    return lambda page: page.wait_for_selector(one)
+
+
+def sum_typed(page: Any) -> None:
+    page.wait_for_selector("[data-one-sum]")
+    page.click("[data-fill]")
+    page.locator("[data-one-sum] input").first.focus()
+
+
+def sum_refused(page: Any) -> None:
+    sum_typed(page)
+    page.fill("[data-typed=inlet]", "120")
+
+
+def sums_found(page: Any) -> None:
+    page.click("[data-subject=coolant]")
+    page.click("[data-sum=coolant_heat_water]")
+    page.click("[data-all-sums]")
+    page.fill("[data-find]", "flow")
+
+
+def sum_over(page: Any) -> None:
+    over("sums", "[data-subject='high voltage']", "[data-sum=discharge_voltage]")(page)
+    sum_typed(page)
+
+
 # ---- places ----------------------------------------------------------------------------------------------------------
 
 
@@ -188,6 +215,14 @@ def _outside() -> list[Place]:
         Place("start", "screen start", scene, hash="#start"),
         Place("start, refused", "screen start", lambda: scene(startSays=ALONE), choosing, "#start"),
         Place("site card", "screen card", scene, hash="#card"),
+        Place("sums", "screen sums", scene, waiting("[data-find]"), "#sums"),
+        Place("sums, found", "screen sums", scene, sums_found, "#sums"),
+        Place("sums, a run open", "screen sums", begun, clicking("[data-subject=coolant]"), "#sums"),
+        Place("sums, an older kit", "screen sums", lambda: scene(sums=None), waiting("[data-no-sums]"), "#sums"),
+        Place("a sum", "screen sums", scene, sum_typed, "#sums?name=coolant_heat_water"),
+        Place("a sum, out of range", "screen sums", scene, sum_refused, "#sums?name=coolant_heat_water"),
+        Place("a sum of two results", "screen sums", scene, sum_typed, "#sums?name=directivity_bounds"),
+        Place("a sum in any unit", "screen sums", scene, sum_typed, "#sums?name=conformance_probability"),
         Place("a page that cannot be shown", "screen run", begun, hash="#run?run=no-such-run"),
     ]
 
@@ -240,6 +275,8 @@ def _beside() -> list[Place]:
         Place("make safe, the site card", "over card", lambda: at("warm"), clicking("[data-make-safe]", "[data-card]")),
         Place("this run", "over this_run", lambda: at("warm"), clicking("[data-this-run]")),
         Place("trip", "over trip", lambda: at("warm"), over("trip", "[data-record-trip]")),
+        Place("sums over a run", "over sums", lambda: at("warm"), over("sums", "[data-subject=coolant]")),
+        Place("a sum over a run", "over sums", lambda: at("warm"), sum_over),
         Place("locks and earths", "over board", lambda: at("warm"), over("board")),
         Place("pause", "over pause", lambda: at("warm"), over("pause")),
         Place("another person", "over person", lambda: at("warm"), changing),

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import json
 import threading
+from functools import cache
 from http.server import BaseHTTPRequestHandler, ThreadingHTTPServer
 from pathlib import Path
 from typing import Any
@@ -15,6 +16,8 @@ from typing import Any
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from look_play import STATION, Play, sheet_of
 
+from fieldkit.files import folder
+from fieldkit.formula import library, sums
 from fieldkit.web import step_form
 from fieldkit.web.assets import MEDIA
 from fieldkit.web.security import POLICY
@@ -66,6 +69,12 @@ def scene(*plays: Play, held_more: dict[str, Any] | None = None, **more: Any) ->
     return {"held": held(list(plays), **(held_more or {})), "sheets": sheets, "runs": runs, **more}
 
 
+@cache
+def sums_json() -> bytes:
+    """The shipped formulas, as the kit holds them."""
+    return json.dumps(sums.sums(library.load(folder("procedures") / "formulas"))).encode()
+
+
 class LookServer:
     """The page at `url`; `show(scene)` sets what its host holds."""
 
@@ -89,6 +98,8 @@ class LookServer:
                     self._send(server.page, "text/html; charset=utf-8")
                 elif path == "/scene.json":
                     self._send(json.dumps(server.scene).encode(), "application/json")
+                elif path == "/sums.json":
+                    self._send(sums_json(), "application/json")
                 elif path == "/manifest.webmanifest":
                     self._send(b"{}", "application/manifest+json")
                 elif path.startswith("/static/look/"):

@@ -18,6 +18,7 @@ export function thisRunPage(ctx) {
   const node = overWork([overHead(ctx, "This run", `Run ${ctx.state.run}`), h("div", { class: "menu" },
     can("trip") ? way("Trip, or something odd", "Which indicator, at what level, what was done", () => ctx.over("trip"), { "data-to": "trip" }) : null,
     way("Site card", "Emergency off, telephone, first aid", () => ctx.over("card", { back: "this_run" }), { "data-to": "card" }),
+    way("Sums", "Work a number out; nothing is recorded", () => ctx.over("sums"), { "data-to": "sums" }),
     way("Locks and earths", "On this cabinet now, with their holders", () => ctx.over("board"), { "data-to": "board" }),
     can("pause") ? way("Pause", "Everything is confirmed again afterwards", () => ctx.over("pause"), { "data-to": "pause" }) : null,
     can("change-person") ? way("Another person records", "The one who leaves signs", () => ctx.over("person"), { "data-to": "person" }) : null,

@@ -85,13 +85,16 @@ function healthBand(app) {
       app.newer ? h("button", { type: "button", class: "act", "data-update": true, on: { click: () => { void Promise.resolve(app.host.update()).catch((/** @type {any} */ problem) => app.trouble(problem.says ?? String(problem))); } } }, "Take the newer version") : null));
 }
 
+/** What is looked up, not done. @param {any} app */
+const lookUps = (app) => [h("button", { type: "button", class: "act", on: { click: () => app.go("card") } }, "Site card"), h("button", { type: "button", class: "act", "data-sums": true, on: { click: () => app.go("sums") } }, "Sums")];
+
 /** The one thing to do next. @param {any} app @param {any[]} returned */
 function frontBand(app, returned) {
   const { held } = app, open = held.runs.find((/** @type {any} */ r) => !["ended", "voided"].includes(r.phase));
-  const go = (/** @type {string} */ label, /** @type {() => void} */ run, /** @type {string} */ name) => h("div", { class: "buttons" }, h("button", { type: "button", class: "act", on: { click: () => app.go("card") } }, "Site card"), h("button", { type: "button", class: "act first", "data-next": name, on: { click: run } }, label));
+  const go = (/** @type {string} */ label, /** @type {() => void} */ run, /** @type {string} */ name) => h("div", { class: "buttons" }, lookUps(app), h("button", { type: "button", class: "act first", "data-next": name, on: { click: run } }, label));
   if (held.health.storage !== "ok") {
     // After a loss nothing is put forward as the next thing to do; what is possible stays possible.
-    return band({ name: "front" }, h("div", { class: "buttons" }, h("button", { type: "button", class: "act", on: { click: () => app.go("card") } }, "Site card"),
+    return band({ name: "front" }, h("div", { class: "buttons" }, lookUps(app),
       open ? h("button", { type: "button", class: "act", on: { click: () => app.go("run", { run: open.run }) } }, "Look at the open run") : null,
       held.enrolled && held.kit ? h("button", { type: "button", class: "act", on: { click: () => app.go("start") } }, "Start a run all the same") : null));
   }

@@ -2,10 +2,11 @@
 import { makeSafePage } from "./make_safe.js";
 import { pastPage } from "./past.js";
 import { personPage } from "./person.js";
+import { sumsPage } from "./sums.js";
 import { boardPage, cardPage, endEarlyPage, pausePage, picturePage, remarkPage, thisRunPage, tripPage, voidPage } from "./beside.js";
 
 /** name -> page */
-const OVERS = { make_safe: makeSafePage, this_run: thisRunPage, remark: remarkPage, picture: picturePage, trip: tripPage, pause: pausePage, past: pastPage, person: personPage, card: cardPage, board: boardPage, end_early: endEarlyPage, void_run: voidPage };
+const OVERS = { make_safe: makeSafePage, this_run: thisRunPage, remark: remarkPage, picture: picturePage, trip: tripPage, pause: pausePage, past: pastPage, person: personPage, card: cardPage, sums: sumsPage, board: boardPage, end_early: endEarlyPage, void_run: voidPage };
 
 /** @param {any} ctx @param {string} name @param {any} args */
 export function overPage(ctx, name, args) {

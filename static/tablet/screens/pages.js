@@ -15,13 +15,13 @@ export function lookTools(kind = "tool") {
 }
 
 /**
- * @param {any} app @param {{title: string, under?: any, back?: boolean, tools?: any[]}} spec @param {...any} bands
+ * @param {any} app @param {{title: string, under?: any, back?: boolean, tools?: any[], lead?: any}} spec @param {...any} bands
  * @returns {HTMLElement}
  */
 export function page(app, spec, ...bands) {
   const back = spec.back === false ? null : h("button", { type: "button", class: "tool", "data-back": true, on: { click: () => app.go("home") } }, "Back");
   return h("div", { class: "page" },
-    h("header", { class: "page-head" }, h("div", {}, h("h1", { tabindex: "-1" }, spec.title), spec.under ? h("p", {}, spec.under) : null), h("div", { class: "tools" }, spec.tools, back)),
+    h("header", { class: `page-head ${spec.lead ? "led" : ""}` }, spec.lead, h("div", {}, h("h1", { tabindex: "-1" }, spec.title), spec.under ? h("p", {}, spec.under) : null), h("div", { class: "tools" }, spec.tools, back)),
     h("main", { class: "page-body" }, bands));
 }
 
