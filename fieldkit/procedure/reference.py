@@ -14,7 +14,7 @@ from fieldkit.steps.base import StepWritten
 from fieldkit.steps.caution import Panel
 from fieldkit.steps.choose import OptionWritten
 from fieldkit.steps.judged import Judged
-from fieldkit.steps.meters import ROLES
+from fieldkit.steps.meters import ROLES, MeterWritten
 from fieldkit.steps.raise_ import Rule
 from fieldkit.steps.sources import FOLLOWS, SOURCES
 from fieldkit.steps.words import Written
@@ -33,8 +33,9 @@ LIMITS = f"""## Limits
 
 `limits`, `caution_band` and `typical` say where a value lies: {limits.FORM}. A limit itself is inside; `below` and
 `above` mean the same as `at most` and `at least`. Each side may be a formula of givens and earlier readings. It is
-rounded inward to the resolution before it is shown and applied. `guarded` limits are pulled in by the uncertainty of
-the meter. `typical` only warns.
+rounded inward to the resolution before it is shown and applied. `guarded` limits are pulled in by the uncertainty U
+(k = 2) of the meter's range, those of a result by its own; without `guarded` a value inside the limits passes, however
+near. `typical` only warns.
 
 A fail offers what `on_fail` lists: {judged.ON_FAIL}. To stop and make safe is always among it.
 """
@@ -64,6 +65,11 @@ that is left out where the condition does not hold; and `- aside: TITLE` with `s
 Keys of every step:
 """
 
+METERS = """
+A `meter` or a `tester` is a meter of the cabinet or an instrument, as in `meter: heater_volts`. Where more is to be
+said of it, its keys are written, as in `meter: {name: heater_volts, overdue: refuse}`:
+"""
+
 GATES = """
 Gates that need not be written: switching a source on needs everyone out and the source free of locks, the beam supply
 also every earth lifted; switching off is closed while a rule of a live source needs it; `earth` needs its source proved
@@ -77,6 +83,8 @@ def _steps() -> Iterator[str]:
     yield from _keys(StepWritten)
     yield "\nFurther keys of `read` and `work_out`:\n"
     yield from _keys(Judged, StepWritten)
+    yield METERS
+    yield from _keys(MeterWritten)
     for word, kind in KINDS.items():
         yield f"\n### {word}\n\n{kind.about[0].upper()}{kind.about[1:]}.\n"
         yield from _keys(kind.model, Judged if issubclass(kind.model, Judged) else StepWritten)

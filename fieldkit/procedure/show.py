@@ -109,7 +109,8 @@ def _meter(control: controls.Number) -> str:
     if control.meter is None:
         return ""
     at = f" at {control.meter.hand_at}" if control.meter.hand_at else ""
-    return f", meter {control.meter.role or control.meter.instrument}{at}"
+    late = ", none that is overdue" if control.meter.overdue == "refuse" else ""
+    return f", meter {control.meter.role or control.meter.instrument}{at}{late}"
 
 
 def _judged(control: controls.Number | controls.Result) -> Iterator[str]:

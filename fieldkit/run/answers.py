@@ -135,7 +135,7 @@ def _confirm(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
 
 def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     body, control, seq = event["body"], event["step"]["control"], event["seq"]
-    meter = readings.instrument(state, body["instrument"])
+    meter = readings.instrument(state, body["instrument"], body["range"])
     limits = readings.bounds(ctx, where, control, meter)
     if body["unit"] != control["unit"]["symbol"]:
         disagree(state, seq, "unit", f"Event {seq} is in '{body['unit']}', the step in '{control['unit']['symbol']}'.")
@@ -147,6 +147,7 @@ def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
             "unit": body["unit"],
             "verdict": "not judged",
             "instrument": body["instrument"],
+            "range": _range(body, meter),
         }
     si = readings.si_text(body["text"], control["unit"])
     _keep(state, event["step"]["id"], body["text"], control["unit"]["symbol"], si, seq)
@@ -155,8 +156,14 @@ def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
         "unit": body["unit"],
         "limits": limits,
         "instrument": body["instrument"],
+        "range": _range(body, meter),
         **_of_verdict(verdict),
     }
+
+
+def _range(body: Plain, meter: Plain | None) -> str:
+    """The name of the range that was used; the only one of an instrument need not be named."""
+    return str(body["range"] or (meter["range"] if meter else "") or "")
 
 
 def _judged(
@@ -214,7 +221,7 @@ def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
 
 def _prove(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
     body, control, seq = event["body"], event["step"]["control"], event["seq"]
-    meter = readings.instrument(state, body["instrument"])
+    meter = readings.instrument(state, body["instrument"], body["range"])
     typed = {point["name"]: point["text"] for point in body["points"]}
     for point in control["points"]:
         if point["name"] not in typed:
@@ -242,6 +249,7 @@ def _prove(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
         "verdict": worst,
         "unit": control["unit"]["symbol"],
         "instrument": body["instrument"],
+        "range": _range(body, meter),
         "overdue": judge.overdue(meter, event["at"]["wall"]),
         "points": points,
     }

@@ -11,6 +11,7 @@ from typing import Literal
 
 from pydantic import BaseModel, ConfigDict
 
+from fieldkit.run.instruments import Instrument
 from fieldkit.sheet.parts import SourceState
 
 
@@ -30,21 +31,6 @@ class Person(Body):
     id: str
     name: str
     roles: tuple[str, ...]
-
-
-class Instrument(Body):
-    """What an instrument was at the time: accuracy is percent of reading plus digits of the resolution."""
-
-    id: str
-    reads: str
-    unit: str
-    low: str | None = None
-    high: str | None = None
-    resolution: str
-    percent: str = "0"
-    digits: str = "0"
-    calibrated_to: str | None = None
-    certificate: str = ""
 
 
 class LockOnBoard(Body):
@@ -140,9 +126,12 @@ class Confirmed(Answer):
 
 
 class Read(Answer):
+    """One reading. `range` names the range of the instrument that was used; "" is the only one that it has."""
+
     text: str
     unit: str
     instrument: str | None = None
+    range: str = ""
 
 
 class PointRead(Body):
@@ -155,6 +144,7 @@ class Proved(Answer):
     before: str
     points: tuple[PointRead, ...]
     after: str
+    range: str = ""
 
 
 class Locked(Answer):

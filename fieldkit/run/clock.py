@@ -61,7 +61,7 @@ def months_later(date: Any, months: Any) -> str | None:
     if not found or isinstance(months, bool) or not isinstance(months, int) or months < 0:
         return None
     year, month, day = (int(found.group(i)) for i in (1, 2, 3))
-    if not 1 <= year or not 1 <= month <= 12 or not 1 <= day <= _longest(year, month):
+    if year < 1 or not 1 <= month <= 12 or not 1 <= day <= _longest(year, month):
         return None
     passed_months = month - 1 + months
     year, month = year + passed_months // 12, passed_months % 12 + 1

@@ -3,7 +3,7 @@
     decide(sheet, state, command, now)  ->  {"events": [{"kind", "body"}, ...]} | {"refused": {"code", "says"}}
 
 A command is `{"do": kind of the event, ...}` with the event's body but for what is filled in here: step, unit,
-instrument, point, stick, statement, value, move, states, locks, earths, times. The rules for people, locks and
+instrument, range, point, stick, statement, value, move, states, locks, earths, times. The rules for people, locks and
 energy states stand in fieldkit.run.rules, the start of a run in fieldkit.run.start. Twin: static/core/decide.js.
 """
 
@@ -195,7 +195,7 @@ def _corrected(given: Given) -> Plain:
     if text == now:
         raise Refusal("nothing-changed", "It says so already.")
     if row["kind"] in ("read", "proved"):
-        rules.number(text, readings.instrument(state, row["instrument"]), row["unit"])
+        rules.number(text, readings.instrument(state, row["instrument"], row["range"]), row["unit"])
     return {**asked, "text": text, "move": _corrected_move(given, row, text)}
 
 
@@ -207,7 +207,7 @@ def _corrected_move(given: Given, row: Plain, text: str) -> str | None:
         return None
     step = ctx.steps[row["step"]]
     control = step["control"]
-    meter = readings.instrument(state, row["instrument"])
+    meter = readings.instrument(state, row["instrument"], row["range"])
     resolution = readings.resolution_of(control, meter)
     verdict = judge.judge(text, row["unit"], row["limits"], resolution, meter, control["protects"])
     if verdict.get("outcome") != "pass":

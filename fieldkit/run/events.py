@@ -21,10 +21,11 @@ from typing import Any
 from pydantic import ValidationError
 
 from fieldkit.errors import Refusal
-from fieldkit.run.bodies import EVENTS, Body, Earlier, GivenValue, Instrument
+from fieldkit.run.bodies import EVENTS, Body, Earlier, GivenValue
+from fieldkit.run.instruments import Instrument, with_ranges
 
 __all__ = ["EVENTS", "UPCASTS", "VERSION", "Body", "Earlier", "Envelope", "Event", "GivenValue", "Instrument"]
-__all__ += ["digest", "next_event", "parse", "plain", "read_body", "to_text"]
+__all__ += ["digest", "next_event", "parse", "plain", "read_body", "to_text", "with_ranges"]
 
 VERSION = 1
 
@@ -107,6 +108,9 @@ def digest(raw: bytes) -> str:
 
 def read_body(kind: str, body: dict[str, Any]) -> Body:
     """A body as its model has it. Strict: "1" is no number and 1 no flag, as on the tablet. Raises ValidationError."""
+    found = body.get("instruments") if kind == "run-started" else None
+    if isinstance(found, list | tuple):
+        body = {**body, "instruments": [with_ranges(one) for one in found]}
     return EVENTS[kind].model_validate_json(json.dumps(body), strict=True)
 
 

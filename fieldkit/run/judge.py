@@ -3,21 +3,21 @@
     bounds(...)   limits of a step as they are shown and applied: trees -> SI -> unit -> 12 digits -> inward
     judge(...)    a reading as typed against them: verdict, outcome, margin, U, and the sentence under the scale
 
-Readings are compared as typed, in decimal. Accuracy is percent of reading plus digits of the resolution, taken as
-rectangular: a, u = a / sqrt(3) (JCGM 100, 4.3.7), U = 2 u. Guarded limits are pulled in by the U that the meter has
-at the limit itself, so that what is shown is what is applied; the four verdicts are those of ILAC-G8. Neither the
-caution band nor an overdue calibration ever changes a verdict. Twin: static/core/judge.js.
+Readings are compared as typed, in decimal. U is that of the meter's range (fieldkit.run.worth). Guarded limits are
+pulled in by the U that the meter has at the limit itself, so that what is shown is what is applied; a result's by its
+own U. The four verdicts are those of ILAC-G8. Neither the caution band nor an overdue calibration ever changes a
+verdict. "Meter" is the flat view of the range in use (fieldkit.run.readings); for a result {"unit", "u"}. What a range
+ends at is asked only of ranges with a name: older registers have one without. Twin: static/core/judge.js.
 """
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable
 from typing import Any
 
 from fieldkit import values
 from fieldkit.errors import Refusal
-from fieldkit.run import clock
+from fieldkit.run import clock, worth
 from fieldkit.values import Dec, Fault
 
 Value = Callable[[dict[str, Any]], object]
@@ -68,15 +68,33 @@ def bounds(
         if fault and key in ("low", "high"):
             out["fault"] = f"the {_NAMES[key]} limit has no value ({fault})"
         if text is not None and key in ("low", "high") and _lost(text, out[key], key):
-            out["coarse"] = f"the meter's steps of {resolution} {unit['symbol']} are too coarse for this limit"
+            out["coarse"] = f"{_whose(instrument)} steps of {resolution} {unit['symbol']} are too coarse for this limit"
     if typical is not None:
         out["typical_low"] = _shown(typical.get("low"), unit, value)[0]
         out["typical_high"] = _shown(typical.get("high"), unit, value)[0]
     if out["low"] is not None and out["high"] is not None and _less(out["high"], out["low"]):
         out["coarse"] = "no reading of this meter lies between the limits"
+    if not out["fault"] and not out["coarse"]:
+        out["coarse"] = _beyond_range(out, unit, instrument)
     if out["guarded"] and not out["fault"] and not out["coarse"]:
         _guard(out, unit, instrument)
     return out
+
+
+def _whose(meter: dict[str, Any] | None) -> str:
+    return "its" if meter is not None and "u" in meter else "the meter's"
+
+
+def _beyond_range(out: dict[str, Any], unit: dict[str, Any], meter: dict[str, Any] | None) -> str:
+    """Why no reading on this range can keep the limits; empty where one can."""
+    if meter is None or not meter.get("range") or meter["unit"] != unit["symbol"]:
+        return ""
+    low, high, tail = out["low"], out["high"], f" {unit['symbol']}".rstrip()
+    if low is not None and meter["high"] is not None and _less(meter["high"], low):
+        return f"this range ends at {meter['high']}{tail}, below the limit of {low}{tail}"
+    if high is not None and meter["low"] is not None and _less(high, meter["low"]):
+        return f"this range begins at {meter['low']}{tail}, above the limit of {high}{tail}"
+    return ""
 
 
 _NAMES = {"low": "lower", "high": "upper"}
@@ -124,29 +142,16 @@ def _lost(text: str, rounded: str, side: str) -> bool:
     return (before > 0 and after <= 0) if side == "high" else (before < 0 and after >= 0)
 
 
-def uncertainty(reading: str, instrument: dict[str, Any] | None, unit: str) -> str | None:
-    """U (k = 2) of the instrument at a reading, in its unit, 12 digits; None where its accuracy is not known."""
-    if instrument is None or instrument["unit"] != unit:
-        return None
-    try:
-        percent, digits = values.dec(instrument["percent"]), values.dec(instrument["digits"])
-        step, size = values.dec(instrument["resolution"]), values.magnitude(values.dec(reading))
-    except ValueError:
-        return None
-    part = values.mul(values.mul(percent, values.dec("0.01")), size)
-    half = values.add(part, values.mul(digits, step))
-    return values.round12(2.0 * values.to_float(half) / math.sqrt(3.0))
-
-
 def _guard(out: dict[str, Any], unit: dict[str, Any], instrument: dict[str, Any] | None) -> None:
-    """Pull the limits in by the meter's U at each of them."""
-    zero = values.dec("0")
+    """Pull the limits in by the meter's U at each of them, or by a result's own."""
+    zero, whose = values.dec("0"), _whose(instrument)
     for side in ("low", "high"):
         if out[side] is None:
             continue
-        u = uncertainty(out[side], instrument, unit["symbol"])
+        u = worth.expanded(out[side], instrument, unit["symbol"])
         if u is None:
-            out["coarse"] = "the meter's accuracy is not known, and the limits are guarded"
+            what = "the meter's accuracy" if whose != "its" else "its uncertainty"
+            out["coarse"] = f"{what} is not known, and the limits are guarded"
             return
         limit, guard = values.dec(out[side]), values.dec(u)
         pulled = values.add(limit, guard) if side == "low" else values.sub(limit, guard)
@@ -155,10 +160,10 @@ def _guard(out: dict[str, Any], unit: dict[str, Any], instrument: dict[str, Any]
         accept = values.dec(out["accept_" + side])
         was, now = values.compare(limit, zero), values.compare(accept, zero)
         if (was > 0 and now <= 0) if side == "high" else (was < 0 and now >= 0):
-            out["coarse"] = "the meter's uncertainty is as large as the limit"
+            out["coarse"] = f"{whose} uncertainty is as large as the limit"
     low, high = out["accept_low"], out["accept_high"]
     if low is not None and high is not None and _less(high, low):
-        out["coarse"] = "the meter's uncertainty is wider than the limits"
+        out["coarse"] = f"{whose} uncertainty is wider than the limits"
 
 
 def judge(
@@ -179,9 +184,9 @@ def judge(
     if isinstance(typed, Refusal):
         return {"refused": {"code": typed.code, "says": typed.sentence}}
     plain = values.to_text(typed)
-    verdict, reason = _verdict(typed, limits)
+    verdict, reason = _verdict(typed, limits, instrument)
     side, margin = _margin(typed, limits)
-    u = uncertainty(plain, instrument, unit)
+    u = worth.expanded(plain, instrument, unit)
     bounded = limits or {}
     inside = verdict in ("pass", "conditional pass")
     out = {
@@ -215,13 +220,15 @@ def overdue(instrument: dict[str, Any] | None, day: str) -> bool:
     return bool(due) and clock.day(day) > str(due)
 
 
-def _verdict(x: Dec, limits: dict[str, Any] | None) -> tuple[str, str]:
+def _verdict(x: Dec, limits: dict[str, Any] | None, meter: dict[str, Any] | None) -> tuple[str, str]:
     if limits is None or (limits["low"] is None and limits["high"] is None and not limits["fault"]):
         return "not judged", "no limit is set"
     if limits["fault"]:
         return "not judged", limits["fault"]
     if limits["coarse"]:
         return "not judged", limits["coarse"]
+    if _at_its_end(x, limits, meter):
+        return "not judged", "the meter stands at the end of this range, and the limit lies beyond it"
     for side, sign in (("low", 1), ("high", -1)):
         if limits[side] is None:
             continue
@@ -234,6 +241,20 @@ def _verdict(x: Dec, limits: dict[str, Any] | None) -> tuple[str, str]:
     if limits["guarded"] and _beyond(x, limits["accept_low"], limits["accept_high"]):
         return "conditional pass", ""
     return "pass", ""
+
+
+def _at_its_end(x: Dec, limits: dict[str, Any], meter: dict[str, Any] | None) -> bool:
+    """The range ends before a limit, and the meter stands there: what it would show beyond, nobody knows."""
+    if meter is None or not meter.get("range"):
+        return False
+    for side, sign in (("low", -1), ("high", 1)):
+        if limits[side] is None or meter[side] is None:
+            continue
+        end = values.dec(meter[side])
+        short = values.compare(values.dec(limits[side]), end) * sign > 0
+        if short and end.digits and values.compare(x, end) * sign >= 0:
+            return True
+    return False
 
 
 def _beyond(x: Dec, low: str | None, high: str | None) -> bool:
@@ -266,8 +287,10 @@ def _words(
     """The sentence under the scale."""
     tail = f" {unit}" if unit else ""
     head = f"{plain}{tail}: "
-    meter = _meter(out["u"], resolution or plain, tail)
-    said = f", meter {meter}" if meter else ""
+    own = instrument is not None and "u" in instrument
+    u = _own(out["u"], resolution, tail) if own else _meter(out["u"], resolution or plain, tail)
+    said = f", {'uncertainty' if own else 'meter'} {u}" if u else ""
+    within = f"its uncertainty of {u}" if own else f"the meter's {u}"
     verdict, side = out["verdict"], out["nearest"]
     if verdict == "not judged":
         body = f"not judged, {out['reason']}{said}"
@@ -278,9 +301,9 @@ def _words(
         if verdict == "pass":
             body = f"{_inside(limits, tail)}, margin {size}{tail}{said}"
         elif verdict == "conditional pass":
-            body = f"{_inside(limits, tail)}, but within the meter's {meter} of {limit}{tail}"
+            body = f"{_inside(limits, tail)}, but within {within} of {limit}{tail}"
         elif verdict == "conditional fail":
-            body = f"{where} {limit}{tail} by {size}{tail}, within the meter's {meter}"
+            body = f"{where} {limit}{tail} by {size}{tail}, within {within}"
         else:
             body = f"{where} {limit}{tail} by {size}{tail}{said}"
     return head + body.removesuffix(".") + "." + _remarks(out, limits, tail, instrument)
@@ -304,6 +327,11 @@ def _meter(u: str | None, like: str, tail: str) -> str:
     if values.dec(shown).digits == 0 and values.dec(u).digits != 0:
         shown = values.to_text(Dec(1, places))
     return f"±{shown}{tail}"
+
+
+def _own(u: str | None, resolution: str | None, tail: str) -> str:
+    """±U of a result, with two digits at most."""
+    return "" if u is None else f"±{worth.rounded(u, resolution)}{tail}"
 
 
 def _remarks(out: dict[str, Any], limits: dict[str, Any], tail: str, instrument: dict[str, Any] | None) -> str:

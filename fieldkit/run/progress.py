@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from fieldkit.run import ahead, clock, judge, moves, names, readings, rows
+from fieldkit.run import ahead, clock, judge, moves, names, ranges, readings, rows
 from fieldkit.run.moves import State
 from fieldkit.run.names import LIVE, Context, Scope, context
 from fieldkit.sheet.model import Sheet
@@ -23,16 +23,20 @@ LABELS = {
 }
 
 
-def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) -> Plain:
-    """Where the run stands at the moment `now` ({"wall", "mono", "boot"}); DEVELOPERS.md spells the answer."""
+def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any], using: Plain | None = None) -> Plain:
+    """Where the run stands at the moment `now` ({"wall", "mono", "boot"}); DEVELOPERS.md spells the answer.
+
+    `using` asks for another instrument or range than is proposed: {"instrument", "range"}, either may be left out.
+    """
     ctx = context(sheet)
     where = names.scope(ctx, state, now)
     step = ctx.steps.get(state["node"])
     reasons = closed(ctx, state, where)
     ways = offered(ctx, state, where)
     path = ahead.ahead(ctx, state, where)
-    meter = _meter(state, step)
+    meter = ranges.in_use(ctx, state, where, step, using)
     limits = _limits(ctx, where, step, meter)
+    points = _points(ctx, where, step, meter)
     return {
         "node": state["node"],
         "step": step,
@@ -41,12 +45,13 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any]) 
         "moves": ways,
         "next": _next(ways),
         "limits": limits,
-        "points": _points(ctx, where, step, meter),
+        "points": points,
         "instrument": meter,
+        **ranges.offers(state, step, meter),
         "plate": _plate(ctx, where, step, meter),
         "value": _value(ctx, where, step),
         "level": rows.level_text(ctx, where, step) if step and step["level"] else "",
-        "judgeable": _judgeable(ctx, where, step, meter, limits, now),
+        "judgeable": _judgeable(ctx, where, step, meter, [limits, *(one["limits"] for one in points)], now),
         "waits": ahead.waits(ctx, where, state, path),
         "live": [name for name in state["sources"] if names.stands(ctx, state, name) in LIVE],
         "next_change": ahead.next_change(state, ctx, path),
@@ -165,12 +170,6 @@ def _is(step: Plain | None, *controls: str) -> bool:
     return step is not None and step["control"]["control"] in controls
 
 
-def _meter(state: State, step: Plain | None) -> Plain | None:
-    """The instrument that the step is read with, as this run carries it."""
-    control = step["control"] if step else {}
-    return readings.instrument(state, readings.meter_of(state, control.get("meter") or control.get("tester")))
-
-
 def _limits(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> Plain | None:
     if step is None or not _is(step, "number", "result"):
         return None
@@ -203,20 +202,31 @@ def _plate(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) 
 
 
 def _judgeable(
-    ctx: Context, where: Scope, step: Plain | None, meter: Plain | None, limits: Plain | None, now: Plain
+    ctx: Context, where: Scope, step: Plain | None, meter: Plain | None, limits: list[Plain | None], now: Plain
 ) -> Plain:
-    """Whether a reading could be judged now, and what keeps it from being so."""
+    """Whether a reading could be judged now, and what keeps it from being so; known before anyone takes it.
+
+    `refused` says that this meter is not taken at all; `says` is what the person is told, in whole sentences.
+    """
     if step is None or not _is(step, "number", "prove", "result"):
-        return {"ok": True, "why": "", "overdue": False}
-    asked = step["control"].get("meter") or step["control"].get("tester")
-    why = ""
+        return {"ok": True, "why": "", "overdue": False, "refused": False, "says": []}
+    asked = readings.asked_of(step["control"])
+    out_of_date, refused = judge.overdue(meter, now["wall"]), ranges.overdue(asked, meter, now["wall"])
+    why, says = "", [refused] if refused else []
+    if out_of_date and meter is not None and not refused:
+        says.append(f"The calibration of {meter['id']} ran out on {meter['calibrated_to']}. The record will say so.")
     if asked and meter is None:
         why = f"This run carries no instrument for {asked['role'] or asked['instrument']}."
     elif _is(step, "result"):
         why = readings.result_text(ctx, where, step["control"])[2]
-    if limits and not why:
-        why = limits["fault"] or limits["coarse"]
-    return {"ok": not why, "why": why, "overdue": judge.overdue(meter, now["wall"])}
+    found = next((one for one in limits if one and (one["fault"] or one["coarse"])), None)
+    if why:
+        says.append(why)
+    elif found:
+        why = found["fault"] or found["coarse"]
+        says.append(f"A reading cannot be judged: {why.removesuffix('.')}.")
+    why = why or refused
+    return {"ok": not why, "why": why, "overdue": out_of_date, "refused": bool(refused), "says": says}
 
 
 _MAY = {

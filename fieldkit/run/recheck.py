@@ -72,16 +72,26 @@ def _differs(one: Plain, control: Plain, *keys: str) -> Found:
 
 def _read(ctx: Context, state: State, one: Plain, control: Plain) -> Found:
     body = one["body"]
-    meter = readings.instrument(state, body["instrument"])
+    meter = readings.instrument(state, body["instrument"], body["range"])
     if meter is None and (body["instrument"] or control["meter"]):
         yield "no-instrument", f"Event {one['seq']} names no instrument that this run carries."
+    yield from _metered(state, one, control, meter)
     for code, says in _refused(lambda: rules.number(body["text"], meter, body["unit"])):
         if code == "outside-range":
             yield code, says
 
 
+def _metered(state: State, one: Plain, control: Plain, meter: Plain | None) -> Found:
+    """What the instrument and its range must be, whichever answer they gave."""
+    body = one["body"]
+    yield from _refused(lambda: rules.in_range(state, control, body["instrument"], body["range"]))
+    yield from _refused(lambda: rules.in_date(control, meter, one["at"]["wall"]))
+
+
 def _proved(ctx: Context, state: State, one: Plain, control: Plain) -> Found:
-    yield from _refused(lambda: rules.tester(state, control, one["body"]["instrument"]))
+    body = one["body"]
+    yield from _refused(lambda: rules.tester(state, control, body["instrument"]))
+    yield from _metered(state, one, control, readings.instrument(state, body["instrument"], body["range"]))
 
 
 def _locked(ctx: Context, state: State, one: Plain, control: Plain) -> Found:

@@ -33,6 +33,7 @@ def add(ctx: Context, state: State, event: dict[str, Any], step: dict[str, Any] 
         "near": False,
         "untypical": False,
         "instrument": None,
+        "range": "",
         "overdue": False,
         "value": None,
         "words": "",

@@ -13,7 +13,7 @@ from typing import Any
 
 from fieldkit import values
 from fieldkit.errors import Refusal
-from fieldkit.run import answers, names, readings
+from fieldkit.run import answers, names, ranges, readings
 from fieldkit.run.command import Given
 from fieldkit.run.moves import State
 from fieldkit.run.names import Context
@@ -45,8 +45,34 @@ def number(text: str, meter: Plain | None, unit: str) -> None:
         return
     for side, sign, word in (("low", 1, "from"), ("high", -1, "up to")):
         if meter[side] is not None and values.compare(typed, values.dec(meter[side])) * sign < 0:
-            says = f"{meter['id']} reads {word} {meter[side]} {unit}. Read it again, or name the meter that was used."
+            on, what = (f" on its {meter['range']} range", "range") if meter["range"] else ("", "meter")
+            says = (
+                f"{meter['id']} reads {word} {meter[side]} {unit}{on}. Read it again, or name the {what} that was used."
+            )
             raise Refusal("outside-range", says)
+
+
+def in_range(state: State, control: Plain, used: str | None, name: str) -> None:
+    """Refuses a range that the instrument has not, or that reads in another unit while others read in the step's."""
+    one = readings.aboard(state, used)
+    if one is None:
+        return
+    unit = control["unit"]["symbol"]
+    fitting = [found["name"] for found in readings.usable(one, unit)]
+    found, told = readings.range_of(one, name), f"Name one of: {', '.join(fitting)}."
+    if found is None:
+        named = f"has no {name} range" if name else "has more than one range"
+        raise Refusal("unknown-range", f"{used} {named}. {told}")
+    if found["name"] not in fitting:
+        says = f"The {found['name']} range of {used} reads in {found['unit'] or 'plain numbers'}"
+        raise Refusal("wrong-range", f"{says}, the step in {unit or 'plain numbers'}. {told}")
+
+
+def in_date(control: Plain, meter: Plain | None, wall: str) -> None:
+    """Refuses an overdue meter where the step takes none."""
+    says = ranges.overdue(readings.asked_of(control), meter, wall)
+    if says:
+        raise Refusal("overdue", says)
 
 
 def row_text(row: Plain, field: str) -> str | None:
@@ -124,30 +150,43 @@ def _confirmed(given: Given, step: Plain) -> Plain:
     return {}
 
 
-def _meter(given: Given, asked: Plain | None, key: str) -> Plain | None:
-    """The instrument that was used: the one named, else the one that the cabinet's register means."""
-    named = given.text(key) or readings.meter_of(given.state, asked)
-    meter = readings.instrument(given.state, named)
-    if meter is None and (named or asked):
-        wanted = named or (asked or {}).get("role") or ""
-        raise Refusal("no-instrument", f"This run carries no instrument {wanted}. Name the one that was used.")
-    return meter
+def _meter(given: Given, step: Plain) -> Plain | None:
+    """The instrument that was used, on its range: those named, else what the register means and what is proposed."""
+    control = step["control"]
+    asked = readings.asked_of(control)
+    named = given.text("instrument") or readings.meter_of(given.state, asked)
+    if readings.aboard(given.state, named) is None:
+        if named or asked:
+            wanted = named or (asked or {}).get("role") or ""
+            raise Refusal("no-instrument", f"This run carries no instrument {wanted}. Name the one that was used.")
+        return None
+    chosen = given.text("range")
+    if chosen:
+        in_range(given.state, control, named, chosen)
+    where = names.scope(given.ctx, given.state, given.now)
+    return ranges.in_use(given.ctx, given.state, where, step, {"instrument": named, "range": chosen})
+
+
+def _range(meter: Plain | None) -> str:
+    return str((meter["range"] if meter else None) or "")
 
 
 def _read(given: Given, step: Plain) -> Plain:
     unit = step["control"]["unit"]["symbol"]
     if given.asked.get("unit", unit) != unit:
         raise Refusal("unit", f"This step is read in {unit or 'plain numbers'}.")
-    meter = _meter(given, step["control"]["meter"], "instrument")
+    meter = _meter(given, step)
+    in_date(step["control"], meter, given.now["wall"])
     text = given.asked.get("text")
     number(text if isinstance(text, str) else "", meter, unit)
-    return {"text": text, "unit": unit, "instrument": meter["id"] if meter else None}
+    return {"text": text, "unit": unit, "instrument": meter["id"] if meter else None, "range": _range(meter)}
 
 
 def _proved(given: Given, step: Plain) -> Plain:
     control = step["control"]
-    meter = _meter(given, control["tester"], "instrument")
+    meter = _meter(given, step)
     tester(given.state, control, meter["id"] if meter else "")
+    in_date(control, meter, given.now["wall"])
     points = given.asked.get("points")
     typed = (
         {p.get("name"): p.get("text") for p in points if isinstance(p, dict)}
@@ -162,6 +201,7 @@ def _proved(given: Given, step: Plain) -> Plain:
         number(text, meter, control["unit"]["symbol"])
     return {
         "instrument": meter["id"] if meter else "",
+        "range": _range(meter),
         **texts,
         "points": [{"name": p["name"], "text": typed[p["name"]]} for p in control["points"]],
     }

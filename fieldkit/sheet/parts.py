@@ -74,6 +74,10 @@ class Meter(Part):
     instrument: str | None = None
     #: a hand meter is held at a place, so the rules for hands apply; a panel meter is read from outside
     hand_at: str | None = None
+    #: a reading whose calibration has run out is taken and flagged, or not taken at all
+    overdue: Literal["take", "refuse"] = "take"
+    #: all readings on one range of it share their error, so that it adds up in a result, or cancels
+    correlated: bool = False
 
 
 class Condition(Part):

@@ -38,7 +38,9 @@ class Judged(Acting):
 
     limits: Any = key(words.texts, "where the value must lie: 6.10 V to 6.50 V, at most ion_back")
     caution_band: Any = key(words.texts, "inside the limits; a value outside it deserves attention, the verdict stays")
-    guarded: bool = key(words.yes_no, "pull the limits in by the meter's uncertainty", default=False)
+    guarded: bool = key(
+        words.yes_no, "pull the limits in by the uncertainty of the meter, or of the result", default=False
+    )
     limit_name: str = key(words.text, "where the limits come from, in words", default="")
     typical: Any = key(words.texts, "what common practice expects; a value outside it only warns")
     plate: Any = key(words.texts, "the nameplate's value, drawn as a chain line")

@@ -38,6 +38,9 @@ class ProveStep(StepWritten):
 def lower(written: ProveStep, id_: str, scope: Scope) -> Piece:
     for source in written.sources:
         scope.must_be_source(source, written.at("sources"))
+    if written.tester.correlated:
+        remedy = "delete correlated; no formula uses the values of a proof"
+        scope.found.add(written.at("tester"), "correlated-tester", "correlated stands here at a tester", remedy)
     dead = _limits(written, written.limits, scope)
     control = Prove(
         unit=written.unit,

@@ -148,7 +148,7 @@ function keep(state, step, text, unit, si, seq) {
 function number(ctx, state, where, event) {
   const { body, seq, step } = event;
   const { control } = step;
-  const meter = readings.instrument(state, body.instrument);
+  const meter = readings.instrument(state, body.instrument, body.range);
   const limits = readings.bounds(ctx, where, control, meter);
   if (body.unit !== control.unit.symbol) {
     disagree(state, seq, "unit", `Event ${seq} is in '${body.unit}', the step in '${control.unit.symbol}'.`);
@@ -156,11 +156,17 @@ function number(ctx, state, where, event) {
   const verdict = judged(control, body.text, limits, meter, control.protects, event);
   if (verdict.refused) {
     disagree(state, seq, "no-number", `Event ${seq} holds no number: ${verdict.refused.says}`);
-    return ["fail", { text: body.text, unit: body.unit, verdict: "not judged", instrument: body.instrument }];
+    const { text, unit, instrument } = body;
+    return ["fail", { text, unit, verdict: "not judged", instrument, range: range_name(body, meter) }];
   }
   keep(state, step.id, body.text, control.unit.symbol, readings.si_text(body.text, control.unit), seq);
-  const said = { text: body.text, unit: body.unit, limits, instrument: body.instrument, ...of_verdict(verdict) };
-  return [verdict.outcome, said];
+  const used = { instrument: body.instrument, range: range_name(body, meter) };
+  return [verdict.outcome, { text: body.text, unit: body.unit, limits, ...used, ...of_verdict(verdict) }];
+}
+
+/** The name of the range that was used; the only one of an instrument need not be named. @param {any} body @param {any} meter @returns {string} */
+function range_name(body, meter) {
+  return body.range || (meter && meter.range) || "";
 }
 
 /** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
@@ -194,7 +200,7 @@ function result(ctx, state, where, event) {
 function prove(ctx, state, where, event) {
   const { body, seq, step } = event;
   const { control } = step;
-  const meter = readings.instrument(state, body.instrument);
+  const meter = readings.instrument(state, body.instrument, body.range);
   const named = body.points.map((/** @type {any} */ p) => p.name);
   for (const point of control.points) {
     if (!named.includes(point.name)) disagree(state, seq, "point-missing", `Event ${seq} leaves out the point '${point.name}'.`);
@@ -217,6 +223,7 @@ function prove(ctx, state, where, event) {
     verdict: worst,
     unit: control.unit.symbol,
     instrument: body.instrument,
+    range: range_name(body, meter),
     overdue: judge.overdue(meter, event.at.wall),
     points,
   };

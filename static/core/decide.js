@@ -175,7 +175,7 @@ function corrected(given) {
   const text = given.need("text", "nothing-typed", "Write the right text.");
   given.need("reason", "reason-needed", "Say what was wrong.");
   if (text === now) throw new Refused("nothing-changed", "It says so already.");
-  if (["read", "proved"].includes(row.kind)) rules.number(text, readings.instrument(state, row.instrument), row.unit);
+  if (["read", "proved"].includes(row.kind)) rules.number(text, readings.instrument(state, row.instrument, row.range), row.unit);
   return { ...asked, text, move: corrected_move(given, row, text) };
 }
 
@@ -187,7 +187,7 @@ function corrected_move(given, row, text) {
   if (!pending || pending.seq !== row.seq || row.kind !== "read" || state.phase !== "going") return null;
   const step = ctx.steps[row.step];
   const { control } = step;
-  const meter = readings.instrument(state, row.instrument);
+  const meter = readings.instrument(state, row.instrument, row.range);
   const resolution = readings.resolution_of(control, meter);
   const verdict = judge.judge(text, row.unit, row.limits, resolution, meter, control.protects);
   if (verdict.outcome !== "pass") return null;

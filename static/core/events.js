@@ -22,9 +22,17 @@ const NOTE = maybe("text", "");
 const MOVE = maybe("text", null);
 const GIVEN = { texts: "texts", unit: NOTE, source: "text" };
 const PERSON = { id: "text", name: "text", roles: "texts" };
+const RANGE = {
+  name: "text", unit: "text", low: maybe("text", null), high: maybe("text", null), resolution: "text",
+  percent: maybe("text", "0"), digits: maybe("text", "0"), percent_of_range: maybe("text", "0"),
+};
+/** Under this key a rule says how an older form of its object is read as this one. */
+const OLDER = Symbol("older form");
+const FLAT = ["unit", "low", "high", "resolution", "percent", "digits"];
 const INSTRUMENT = {
-  id: "text", reads: "text", unit: "text", low: maybe("text", null), high: maybe("text", null), resolution: "text",
-  percent: maybe("text", "0"), digits: maybe("text", "0"), calibrated_to: maybe("text", null), certificate: NOTE,
+  id: "text", reads: "text", certificate: NOTE, calibrated_on: maybe("text", null), interval_months: maybe("count", null),
+  calibrated_to: maybe("text", null), temperature: maybe({ low: "text", high: "text" }, null), ranges: [RANGE],
+  [OLDER]: with_ranges,
 };
 const LOCK = {
   point: "text", sources: "texts", lock: "text", tag: NOTE, holder: "text", holder_name: NOTE, run: "text", since: "text",
@@ -45,9 +53,10 @@ export const BODIES = {
   "states-declared": { states: STATES, ages: maybe("map", {}), board_seen: "flag", locks: maybe([LOCK], []) },
   acknowledged: { step: "text", move: MOVE, heard: "texts" },
   confirmed: { step: "text", move: MOVE },
-  read: { step: "text", move: MOVE, text: "text", unit: "text", instrument: maybe("text", null) },
+  read: { step: "text", move: MOVE, text: "text", unit: "text", instrument: maybe("text", null), range: NOTE },
   proved: {
     step: "text", move: MOVE, instrument: "text", before: "text", points: [{ name: "text", text: "text" }], after: "text",
+    range: NOTE,
   },
   locked: { step: "text", move: MOVE, point: "text", lock: "text", tag: "text", holder: "text" },
   unlocked: {
@@ -93,6 +102,14 @@ export const UPCASTS = {};
 
 class Damage extends Error {}
 
+/** An instrument written with one unit, resolution and accuracy of its own has a single unnamed range.
+ * @param {Record<string, any>} data @returns {Record<string, any>} */
+function with_ranges(data) {
+  if (Object.hasOwn(data, "ranges") || !Object.hasOwn(data, "unit")) return data;
+  const of = (/** @type {boolean} */ flat) => Object.fromEntries(Object.entries(data).filter(([key]) => FLAT.includes(key) === flat));
+  return { ...of(false), ranges: [{ name: "", ...of(true) }] };
+}
+
 /** @param {any} data @returns {data is Record<string, any>} */
 const is_object = (data) => typeof data === "object" && data !== null && !Array.isArray(data);
 
@@ -116,8 +133,9 @@ function read_value(rule, data, where) {
   throw new Damage(`${where} is no ${rule}`);
 }
 
-/** @param {Record<string, any>} rules @param {Record<string, any>} data @param {string} where */
-function read_object(rules, data, where) {
+/** @param {Record<string | symbol, any>} rules @param {Record<string, any>} given @param {string} where */
+function read_object(rules, given, where) {
+  const data = rules[OLDER] ? rules[OLDER](given) : given;
   for (const key of Object.keys(data)) if (!Object.hasOwn(rules, key)) throw new Damage(`${where}.${key} is not known`);
   /** @type {Record<string, any>} */
   const out = {};

@@ -5,8 +5,9 @@
  */
 
 import { day as day_of } from "./clock.js";
-import { Dec, Fault, Refusal, add, compare, dec, decimals, fixed, inward, magnitude, mul, round12, sub, to_float, to_text, typed } from "./values.js";
+import { Dec, Fault, Refusal, add, compare, dec, decimals, fixed, inward, magnitude, sub, to_float, to_text, typed } from "./values.js";
 import * as values from "./values.js";
+import * as worth from "./worth.js";
 
 /** @typedef {{symbol: string, factor: string, offset: string}} Unit */
 /** @typedef {Record<string, any>} Bounds */
@@ -54,7 +55,7 @@ export function bounds(limits, typical, unit, resolution, instrument, value) {
     if (key !== side) continue;
     if (fault) out.fault = `the ${NAMES[key]} limit has no value (${fault})`;
     if (text !== null && lost(text, out[key], key)) {
-      out.coarse = `the meter's steps of ${resolution} ${unit.symbol} are too coarse for this limit`;
+      out.coarse = `${whose(instrument)} steps of ${resolution} ${unit.symbol} are too coarse for this limit`;
     }
   }
   if (typical !== null) {
@@ -64,8 +65,29 @@ export function bounds(limits, typical, unit, resolution, instrument, value) {
   if (out.low !== null && out.high !== null && less(out.high, out.low)) {
     out.coarse = "no reading of this meter lies between the limits";
   }
+  if (!out.fault && !out.coarse) out.coarse = beyond_range(out, unit, instrument);
   if (out.guarded && !out.fault && !out.coarse) guard(out, unit, instrument);
   return out;
+}
+
+/** @param {Instrument | null} meter */
+function whose(meter) {
+  return meter !== null && "u" in meter ? "its" : "the meter's";
+}
+
+/** Why no reading on this range can keep the limits; empty where one can.
+ * @param {Bounds} out @param {Unit} unit @param {Instrument | null} meter */
+function beyond_range(out, unit, meter) {
+  if (meter === null || !meter.range || meter.unit !== unit.symbol) return "";
+  const { low, high } = out;
+  const tail = ` ${unit.symbol}`.trimEnd();
+  if (low !== null && meter.high !== null && less(meter.high, low)) {
+    return `this range ends at ${meter.high}${tail}, below the limit of ${low}${tail}`;
+  }
+  if (high !== null && meter.low !== null && less(high, meter.low)) {
+    return `this range begins at ${meter.low}${tail}, above the limit of ${high}${tail}`;
+  }
+  return "";
 }
 
 /** @param {any} tree @param {Unit} unit @param {Value} value @returns {[string | null, string]} */
@@ -100,31 +122,15 @@ function lost(text, rounded, side) {
   return side === "high" ? before > 0 && after <= 0 : before < 0 && after >= 0;
 }
 
-/**
- * U (k = 2) of the instrument at a reading, in its unit; null where its accuracy is not known.
- * @param {string} reading @param {Instrument | null} instrument @param {string} unit @returns {string | null}
- */
-export function uncertainty(reading, instrument, unit) {
-  if (instrument === null || instrument.unit !== unit) return null;
-  let half;
-  try {
-    const part = mul(mul(dec(instrument.percent), dec("0.01")), magnitude(dec(reading)));
-    half = add(part, mul(dec(instrument.digits), dec(instrument.resolution)));
-  } catch (problem) {
-    if (problem instanceof RangeError) return null;
-    throw problem;
-  }
-  return round12((2 * to_float(half)) / Math.sqrt(3));
-}
-
 /** @param {Bounds} out @param {Unit} unit @param {Instrument | null} instrument */
 function guard(out, unit, instrument) {
   const zero = dec("0");
   for (const side of SIDES) {
     if (out[side] === null) continue;
-    const u = uncertainty(out[side], instrument, unit.symbol);
+    const u = worth.expanded(out[side], instrument, unit.symbol);
     if (u === null) {
-      out.coarse = "the meter's accuracy is not known, and the limits are guarded";
+      const what = whose(instrument) === "its" ? "its uncertainty" : "the meter's accuracy";
+      out.coarse = `${what} is not known, and the limits are guarded`;
       return;
     }
     const limit = dec(out[side]);
@@ -134,11 +140,11 @@ function guard(out, unit, instrument) {
     const was = compare(limit, zero);
     const now = compare(dec(out[`accept_${side}`]), zero);
     if (side === "high" ? was > 0 && now <= 0 : was < 0 && now >= 0) {
-      out.coarse = "the meter's uncertainty is as large as the limit";
+      out.coarse = `${whose(instrument)} uncertainty is as large as the limit`;
     }
   }
   if (out.accept_low !== null && out.accept_high !== null && less(out.accept_high, out.accept_low)) {
-    out.coarse = "the meter's uncertainty is wider than the limits";
+    out.coarse = `${whose(instrument)} uncertainty is wider than the limits`;
   }
 }
 
@@ -152,9 +158,9 @@ export function judge(text, unit, limits, resolution, instrument, protects, day 
   const number = typed(text);
   if (number instanceof Refusal) return { refused: { code: number.code, says: number.sentence } };
   const plain = to_text(number);
-  const [verdict, reason] = verdict_of(number, limits);
+  const [verdict, reason] = verdict_of(number, limits, instrument);
   const [side, margin] = margin_of(number, limits);
-  const u = uncertainty(plain, instrument, unit);
+  const u = worth.expanded(plain, instrument, unit);
   const bounded = limits || {};
   const inside = verdict === "pass" || verdict === "conditional pass";
   const out = {
@@ -185,11 +191,14 @@ export function overdue(instrument, day) {
   return Boolean(due) && day_of(day) > due;
 }
 
-/** @param {Dec} x @param {Bounds | null} limits @returns {[string, string]} */
-function verdict_of(x, limits) {
+/** @param {Dec} x @param {Bounds | null} limits @param {Instrument | null} meter @returns {[string, string]} */
+function verdict_of(x, limits, meter) {
   if (limits === null || (limits.low === null && limits.high === null && !limits.fault)) return ["not judged", "no limit is set"];
   if (limits.fault) return ["not judged", limits.fault];
   if (limits.coarse) return ["not judged", limits.coarse];
+  if (at_its_end(x, limits, meter)) {
+    return ["not judged", "the meter stands at the end of this range, and the limit lies beyond it"];
+  }
   for (const side of SIDES) {
     if (limits[side] === null) continue;
     const limit = dec(limits[side]);
@@ -200,6 +209,19 @@ function verdict_of(x, limits) {
     }
   }
   return [limits.guarded && beyond(x, limits.accept_low, limits.accept_high) ? "conditional pass" : "pass", ""];
+}
+
+/** The range ends before a limit, and the meter stands there: what it would show beyond, nobody knows.
+ * @param {Dec} x @param {Bounds} limits @param {Instrument | null} meter */
+function at_its_end(x, limits, meter) {
+  if (meter === null || !meter.range) return false;
+  return SIDES.some((side) => {
+    const sign = side === "low" ? -1 : 1;
+    if (limits[side] === null || meter[side] === null) return false;
+    const end = dec(meter[side]);
+    const short = compare(dec(limits[side]), end) * sign > 0;
+    return short && end.digits !== 0n && compare(x, end) * sign >= 0;
+  });
 }
 
 /** @param {Dec} x @param {string | null} low @param {string | null} high */
@@ -227,8 +249,10 @@ function margin_of(x, limits) {
  * @param {string | null} resolution @param {Instrument | null} instrument */
 function words(plain, unit, out, limits, resolution, instrument) {
   const tail = unit ? ` ${unit}` : "";
-  const meter = meter_words(out.u, resolution || plain, tail);
-  const said = meter ? `, meter ${meter}` : "";
+  const own = instrument !== null && "u" in instrument;
+  const u = own ? own_words(out.u, resolution, tail) : meter_words(out.u, resolution || plain, tail);
+  const said = u ? `, ${own ? "uncertainty" : "meter"} ${u}` : "";
+  const within = own ? `its uncertainty of ${u}` : `the meter's ${u}`;
   let body;
   if (out.verdict === "not judged") body = `not judged, ${out.reason}${said}`;
   else {
@@ -236,9 +260,8 @@ function words(plain, unit, out, limits, resolution, instrument) {
     const size = to_text(magnitude(dec(out.margin)));
     const where = out.nearest === "high" ? "above" : "below";
     if (out.verdict === "pass") body = `${inside_words(limits, tail)}, margin ${size}${tail}${said}`;
-    else if (out.verdict === "conditional pass") {
-      body = `${inside_words(limits, tail)}, but within the meter's ${meter} of ${limit}${tail}`;
-    } else if (out.verdict === "conditional fail") body = `${where} ${limit}${tail} by ${size}${tail}, within the meter's ${meter}`;
+    else if (out.verdict === "conditional pass") body = `${inside_words(limits, tail)}, but within ${within} of ${limit}${tail}`;
+    else if (out.verdict === "conditional fail") body = `${where} ${limit}${tail} by ${size}${tail}, within ${within}`;
     else body = `${where} ${limit}${tail} by ${size}${tail}${said}`;
   }
   return `${plain}${tail}: ${body.replace(/\.$/, "")}.${remarks(out, limits, tail, instrument)}`;
@@ -258,6 +281,11 @@ function meter_words(u, like, tail) {
   let text = fixed(to_float(dec(u)), places);
   if (dec(text).digits === 0n && dec(u).digits !== 0n) text = to_text(new Dec(1n, places));
   return `±${text}${tail}`;
+}
+
+/** ±U of a result, with two digits at most. @param {string | null} u @param {string | null} resolution @param {string} tail */
+function own_words(u, resolution, tail) {
+  return u === null ? "" : `±${worth.rounded(u, resolution)}${tail}`;
 }
 
 /** @param {any} out @param {Bounds} limits @param {string} tail @param {Instrument | null} instrument */

@@ -8,6 +8,7 @@ import * as clock from "./clock.js";
 import * as judge from "./judge.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
+import * as ranges from "./ranges.js";
 import * as readings from "./readings.js";
 import * as rows from "./rows.js";
 
@@ -19,16 +20,18 @@ import * as rows from "./rows.js";
 /** @type {Record<string, string>} */
 export const LABELS = { plain: "Go on", again: "Take it again", deviation: "Accept as a deviation", stop: "Stop and make safe" };
 
-/** Where the run stands at the moment `now`. @param {any} sheet @param {State} state @param {clock.At} now */
-export function progress(sheet, state, now) {
+/** Where the run stands at the moment `now`; `using` asks for another instrument or range than is proposed.
+ * @param {any} sheet @param {State} state @param {clock.At} now @param {ranges.Using} [using] */
+export function progress(sheet, state, now, using = null) {
   const ctx = names.context(sheet);
   const where = names.scope(ctx, state, now);
   const step = ctx.steps[state.node] ?? null;
   const reasons = closed(ctx, state, where);
   const ways = offered(ctx, state, where);
   const path = ahead.ahead(ctx, state, where);
-  const meter = meter_of(state, step);
+  const meter = ranges.in_use(ctx, state, where, step, using);
   const limits = is(step, "number", "result") ? readings.bounds(ctx, where, step.control, meter) : null;
+  const asked = points(ctx, where, step, meter);
   return {
     node: state.node,
     step,
@@ -37,12 +40,13 @@ export function progress(sheet, state, now) {
     moves: ways,
     next: next(ways),
     limits,
-    points: points(ctx, where, step, meter),
+    points: asked,
     instrument: meter,
+    ...ranges.offers(state, step, meter),
     plate: plate(ctx, where, step, meter),
     value: is(step, "result") ? readings.result_text(ctx, where, step.control)[1] || null : null,
     level: step && step.level ? rows.level_text(ctx, where, step) : "",
-    judgeable: judgeable(ctx, where, step, meter, limits, now),
+    judgeable: judgeable(ctx, where, step, meter, [limits, ...asked.map((one) => one.limits)], now),
     waits: ahead.waits(ctx, where, state, path),
     live: Object.keys(state.sources).filter((name) => names.LIVE.includes(names.stands(ctx, state, name))),
     next_change: ahead.next_change(state, ctx, path),
@@ -152,12 +156,6 @@ function is(step, ...controls) {
   return step !== null && controls.includes(step.control.control);
 }
 
-/** The instrument that the step is read with, as this run carries it. @param {State} state @param {any} step */
-function meter_of(state, step) {
-  const control = step ? step.control : {};
-  return readings.instrument(state, readings.meter_of(state, control.meter ?? control.tester ?? null));
-}
-
 /** What a proof asks for, in order, each with its limits.
  * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter */
 function points(ctx, where, step, meter) {
@@ -176,16 +174,26 @@ function plate(ctx, where, step, meter) {
   return rows.shown(names.value(ctx, where, control.plate), control.unit, readings.resolution_of(control, meter));
 }
 
-/** Whether a reading could be judged now, and what keeps it from being so.
- * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter @param {any} limits @param {clock.At} now */
+/** Whether a reading could be judged now, and what keeps it from being so; known before anyone takes it.
+ * @param {Context} ctx @param {Scope} where @param {any} step @param {any} meter @param {any[]} limits @param {clock.At} now */
 function judgeable(ctx, where, step, meter, limits, now) {
-  if (!is(step, "number", "prove", "result")) return { ok: true, why: "", overdue: false };
-  const asked = step.control.meter ?? step.control.tester ?? null;
+  if (!is(step, "number", "prove", "result")) return { ok: true, why: "", overdue: false, refused: false, says: [] };
+  const asked = readings.asked_of(step.control);
+  const out_of_date = judge.overdue(meter, now.wall);
+  const refused = ranges.overdue(asked, meter, now.wall);
+  const says = refused ? [refused] : [];
+  if (out_of_date && !refused) says.push(`The calibration of ${meter.id} ran out on ${meter.calibrated_to}. The record will say so.`);
   let why = "";
   if (asked && meter === null) why = `This run carries no instrument for ${asked.role || asked.instrument}.`;
   else if (is(step, "result")) why = readings.result_text(ctx, where, step.control)[2];
-  if (limits && !why) why = limits.fault || limits.coarse;
-  return { ok: !why, why, overdue: judge.overdue(meter, now.wall) };
+  const found = limits.find((one) => one && (one.fault || one.coarse));
+  if (why) says.push(why);
+  else if (found) {
+    why = found.fault || found.coarse;
+    says.push(`A reading cannot be judged: ${why.replace(/\.$/, "")}.`);
+  }
+  why ||= refused;
+  return { ok: !why, why, overdue: out_of_date, refused: Boolean(refused), says };
 }
 
 /** @type {Record<string, string[]>} */

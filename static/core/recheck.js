@@ -74,20 +74,34 @@ function differs(one, control, ...keys) {
     .map((key) => [`other-${key}`, `Event ${one.seq} says '${one.body[key]}' where the step says '${control[key]}'.`]);
 }
 
+/** What the instrument and its range must be, whichever answer they gave.
+ * @param {State} state @param {Event} one @param {any} control @param {any} meter @returns {Found} */
+function metered(state, one, control, meter) {
+  return [
+    ...refused(() => rules.in_range(state, control, one.body.instrument, one.body.range)),
+    ...refused(() => rules.in_date(control, meter, one.at.wall)),
+  ];
+}
+
 /** @type {Record<string, (ctx: Context, state: State, one: Event, control: any) => Found>} */
 const RULES = {
   read: (ctx, state, one, control) => {
     const { body, seq } = one;
-    const meter = readings.instrument(state, body.instrument);
+    const meter = readings.instrument(state, body.instrument, body.range);
     /** @type {Found} */
     const found = [];
     if (meter === null && (body.instrument || control.meter)) {
       found.push(["no-instrument", `Event ${seq} names no instrument that this run carries.`]);
     }
+    found.push(...metered(state, one, control, meter));
     const beyond = refused(() => rules.number(body.text, meter, body.unit)).filter(([code]) => code === "outside-range");
     return [...found, ...beyond];
   },
-  proved: (ctx, state, one, control) => refused(() => rules.tester(state, control, one.body.instrument)),
+  proved: (ctx, state, one, control) => {
+    const { instrument, range } = one.body;
+    const found = refused(() => rules.tester(state, control, instrument));
+    return [...found, ...metered(state, one, control, readings.instrument(state, instrument, range))];
+  },
   locked: (ctx, state, one, control) => {
     const found = differs(one, control, "point");
     if (!one.body.lock.trim()) found.push(["nothing-typed", `Event ${one.seq} gives no number of the lock.`]);

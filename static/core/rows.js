@@ -35,6 +35,7 @@ export function add(ctx, state, event, step = null, said = {}) {
     near: false,
     untypical: false,
     instrument: null,
+    range: "",
     overdue: false,
     value: null,
     words: "",

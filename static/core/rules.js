@@ -7,6 +7,7 @@
 import * as answers from "./answers.js";
 import { Refused } from "./command.js";
 import * as names from "./names.js";
+import * as ranges from "./ranges.js";
 import * as readings from "./readings.js";
 import { Refusal, compare, dec, typed } from "./values.js";
 
@@ -35,10 +36,35 @@ export function number(text, meter, unit) {
   if (meter === null || meter.unit !== unit) return;
   for (const [side, sign, word] of /** @type {[string, number, string][]} */ ([["low", 1, "from"], ["high", -1, "up to"]])) {
     if (meter[side] !== null && compare(found, dec(meter[side])) * sign < 0) {
-      const says = `${meter.id} reads ${word} ${meter[side]} ${unit}. Read it again, or name the meter that was used.`;
+      const [on, what] = meter.range ? [` on its ${meter.range} range`, "range"] : ["", "meter"];
+      const says = `${meter.id} reads ${word} ${meter[side]} ${unit}${on}. Read it again, or name the ${what} that was used.`;
       throw new Refused("outside-range", says);
     }
   }
+}
+
+/** Refuses a range that the instrument has not, or that reads in another unit while others read in the step's.
+ * @param {State} state @param {any} control @param {string | null} used @param {string} name */
+export function in_range(state, control, used, name) {
+  const one = readings.aboard(state, used);
+  if (one === null) return;
+  const unit = control.unit.symbol;
+  const fitting = readings.usable(one, unit).map((found) => found.name);
+  const found = readings.range_of(one, name);
+  const told = `Name one of: ${fitting.join(", ")}.`;
+  if (found === null) {
+    throw new Refused("unknown-range", `${used} ${name ? `has no ${name} range` : "has more than one range"}. ${told}`);
+  }
+  if (!fitting.includes(found.name)) {
+    const says = `The ${found.name} range of ${used} reads in ${found.unit || "plain numbers"}, the step in ${unit || "plain numbers"}.`;
+    throw new Refused("wrong-range", `${says} ${told}`);
+  }
+}
+
+/** Refuses an overdue meter where the step takes none. @param {any} control @param {any} meter @param {string} wall */
+export function in_date(control, meter, wall) {
+  const says = ranges.overdue(readings.asked_of(control), meter, wall);
+  if (says) throw new Refused("overdue", says);
 }
 
 /** What a field of a row says now; null where it has no such field. @param {any} row @param {string} field */
@@ -107,15 +133,26 @@ export function end_states(ctx, state) {
   }
 }
 
-/** The instrument that was used. @param {Given} given @param {any} asked @param {string} key @returns {any} */
-function meter_used(given, asked, key) {
-  const named = given.text(key) || readings.meter_of(given.state, asked);
-  const meter = readings.instrument(given.state, named);
-  if (meter === null && (named || asked)) {
+/** The instrument that was used, on its range: those named, else what the register means and what is proposed.
+ * @param {Given} given @param {any} step @returns {any} */
+function meter_used(given, step) {
+  const { control } = step;
+  const asked = readings.asked_of(control);
+  const named = given.text("instrument") || readings.meter_of(given.state, asked);
+  if (readings.aboard(given.state, named) === null) {
+    if (!named && !asked) return null;
     const wanted = named || (asked || {}).role || "";
     throw new Refused("no-instrument", `This run carries no instrument ${wanted}. Name the one that was used.`);
   }
-  return meter;
+  const chosen = given.text("range");
+  if (chosen) in_range(given.state, control, named, chosen);
+  const where = names.scope(given.ctx, given.state, given.now);
+  return ranges.in_use(given.ctx, given.state, where, step, { instrument: named, range: chosen });
+}
+
+/** @param {any} meter @returns {string} */
+function range_name(meter) {
+  return (meter && meter.range) || "";
 }
 
 /** @param {any} list @param {string} key @param {string} value @returns {Map<any, any>} */
@@ -166,15 +203,17 @@ export const ANSWERS = {
   read: (given, step) => {
     const unit = step.control.unit.symbol;
     if ((given.asked.unit ?? unit) !== unit) throw new Refused("unit", `This step is read in ${unit || "plain numbers"}.`);
-    const meter = meter_used(given, step.control.meter, "instrument");
+    const meter = meter_used(given, step);
+    in_date(step.control, meter, given.now.wall);
     const { text } = given.asked;
     number(typeof text === "string" ? text : "", meter, unit);
-    return { text, unit, instrument: meter ? meter.id : null };
+    return { text, unit, instrument: meter ? meter.id : null, range: range_name(meter) };
   },
   proved: (given, step) => {
     const { control } = step;
-    const meter = meter_used(given, control.tester, "instrument");
+    const meter = meter_used(given, step);
     tester(given.state, control, meter ? meter.id : "");
+    in_date(control, meter, given.now.wall);
     const written = pairs(given.asked.points, "name", "text");
     const { before = null, after = null } = given.asked;
     for (const [field, title] of readings.proof_fields(control)) {
@@ -183,7 +222,7 @@ export const ANSWERS = {
       number(text, meter, control.unit.symbol);
     }
     const points = control.points.map((/** @type {any} */ p) => ({ name: p.name, text: written.get(p.name) }));
-    return { instrument: meter ? meter.id : "", before, after, points };
+    return { instrument: meter ? meter.id : "", range: range_name(meter), before, after, points };
   },
   locked: (given, step) => {
     const { state } = given;

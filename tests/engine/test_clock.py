@@ -72,7 +72,9 @@ def test_months_are_counted_as_dateutil_counts_them(twin: Twin) -> None:
     rng = random.Random(11)
     first, last = date(1900, 1, 1).toordinal(), date(2200, 12, 31).toordinal()
     days = [date.fromordinal(rng.randrange(first, last)) for _ in range(3000)]
-    days += [date(year, month, day) for year in (1900, 2000, 2023, 2024) for month in (1, 3, 5, 8, 12) for day in (28, 31)]
+    days += [
+        date(year, month, day) for year in (1900, 2000, 2023, 2024) for month in (1, 3, 5, 8, 12) for day in (28, 31)
+    ]
     for day in days:
         months = rng.randrange(0, 240)
         want = (day + relativedelta(months=months)).isoformat()
@@ -80,7 +82,9 @@ def test_months_are_counted_as_dateutil_counts_them(twin: Twin) -> None:
         assert twin.call("clock.months_later", day.isoformat(), months) == want
 
 
-@pytest.mark.parametrize("date_", ["", "2026-7-1", "2026-02-29", "2026-13-01", "0000-01-01", "2026-07-31T10:00", None, 20260731])
+@pytest.mark.parametrize(
+    "date_", ["", "2026-7-1", "2026-02-29", "2026-13-01", "0000-01-01", "2026-07-31T10:00", None, 20260731]
+)
 def test_what_is_no_date_has_no_later_one(date_: Any, twin: Twin) -> None:
     assert clock.months_later(date_, 12) is None
     assert twin.call("clock.months_later", date_, 12) is None

@@ -12,7 +12,7 @@ import run_driver as drive
 from run_twin import Twin
 
 from fieldkit.formula.evaluate import evaluate
-from fieldkit.run import judge
+from fieldkit.run import judge, worth
 
 CASES: list[dict[str, Any]] = json.loads((drive.VECTORS / "judge" / "judge.json").read_text())
 
@@ -51,12 +51,12 @@ def specified(resolution: str, percent: str, digits: str) -> dict[str, Any]:
 def test_uncertainty_is_that_of_a_rectangular_specification() -> None:
     # JCGM 100:2008, 4.3.7: half-width a, u = a / sqrt(3); here 0.5 % of 6.300 V and 2 digits of 1 mV: a = 0.0335 V,
     # u = 0.0193 V (formulas.md F10.2). U = 2 u.
-    u = judge.uncertainty("6.300", specified("0.001", "0.5", "2"), "V")
+    u = worth.expanded("6.300", specified("0.001", "0.5", "2"), "V")
     assert u is not None
     assert float(u) / 2 == pytest.approx(0.0335 / math.sqrt(3), rel=1e-11)
     assert round(float(u) / 2, 4) == 0.0193
     # the same, by the GUM's own example of 4.3.7: a = 15.0 uV gives u = 8.66 uV (printed 8.7)
-    u = judge.uncertainty("0", specified("0.0000150", "0", "1"), "V")
+    u = worth.expanded("0", specified("0.0000150", "0", "1"), "V")
     assert u is not None
     assert round(float(u) / 2 * 1e6, 2) == 8.66
 

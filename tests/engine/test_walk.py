@@ -43,7 +43,8 @@ def play(name: str, sheet: Any, seed: int, length: int) -> tuple[drive.Driver, l
 
     for i in range(length):
         if d.state["started"] and i % 3 == 0:
-            note({"now": d.now}, d.progress)
+            using = walker.meter(d.progress) or None
+            note({"now": d.now, "using": using}, d.seen(using))
         if i < 2 and rng.random() < 0.1:
             note({"command": {"do": "read", "text": "1"}, "now": d.now}, d.ask("read", text="1"))
         if seed % 3 == 0 and i > 6 and rng.random() < 0.1:

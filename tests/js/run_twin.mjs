@@ -3,12 +3,13 @@
  *
  *   {"sheet": name, "body": sheet}                                  keeps a sheet
  *   {"walk": name, "run", "chain", "sha256", "steps": [...]}        plays a walk; a step is one of
- *       {"text": event text, "whole": bool, "digest": of the state after, brief or whole}   {"now": at, "digest": of progress}
+ *       {"text": event text, "whole": bool, "digest": of the state after, brief or whole}
+ *       {"now": at, "using": {"instrument", "range"} or nothing, "digest": of progress}
  *       {"command": {...}, "now": at, "digest": of the decision}
  *   {"play": name, "run", "chain", "sha256", "steps": [...]}        the same without digests; gives what every step says
  *   {"fold": name, "texts": [...]}                                  the whole state
  *   {"judge": case of tests/vectors/judge}, {"read": event text}
- *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events
+ *   {"call": "judge.judge", "args": [...]}                          one function of clock, judge, events, worth
  *
  * A walk answers {"ok": n} or the first step that differs with what was got. Digests are SHA-256 of `canonical`.
  */
@@ -21,9 +22,10 @@ import * as events from "../../static/core/events.js";
 import * as judge from "../../static/core/judge.js";
 import { progress } from "../../static/core/progress.js";
 import * as state from "../../static/core/state.js";
+import * as worth from "../../static/core/worth.js";
 
 const sheets = new Map();
-const MODULES = { clock, judge, events };
+const MODULES = { clock, judge, events, worth };
 const sha256 = (text) => createHash("sha256").update(text).digest("hex");
 
 /** JSON that both languages write alike: keys sorted, whole numbers plain, others as seconds with three decimals. */
@@ -52,6 +54,11 @@ function brief(found) {
   return { ...rest, log: log.slice(-2) };
 }
 
+/** The decision on a command, or progress. */
+function said(sheet, now, step) {
+  return "command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now, step.using ?? null);
+}
+
 function walk(request) {
   const sheet = sheets.get(request.walk);
   let run = state.begin(sheet);
@@ -62,7 +69,7 @@ function walk(request) {
       run = state.apply(run, events.read(step.text, sha256(step.text)));
       now = deep_freeze(run.state);
       got = step.whole ? now : brief(now);
-    } else got = "command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now);
+    } else got = said(sheet, now, step);
     if (step.digest && sha256(canonical(got)) !== step.digest) return { step: i, got };
   }
   return { ok: request.steps.length };
@@ -73,14 +80,14 @@ function play(request) {
   const sheet = sheets.get(request.play);
   let run = state.begin(sheet);
   let now = state.make(sheet, request.run, request.chain, request.sha256);
-  const said = [];
+  const all = [];
   for (const step of request.steps) {
     if ("text" in step) {
       run = state.apply(run, events.read(step.text, sha256(step.text)));
       now = deep_freeze(run.state);
-    } else said.push("command" in step ? decide(sheet, now, step.command, step.now) : progress(sheet, now, step.now));
+    } else all.push(said(sheet, now, step));
   }
-  return { said, state: now };
+  return { said: all, state: now };
 }
 
 /** Limits and judgement of one case of tests/vectors/judge. */

@@ -139,7 +139,11 @@ class Driver:
 
     @property
     def progress(self) -> dict[str, Any]:
-        return progress.progress(self.sheet, self.state, self.now)
+        return self.seen()
+
+    def seen(self, using: dict[str, Any] | None = None) -> dict[str, Any]:
+        """What progress says where another instrument or range is asked for."""
+        return progress.progress(self.sheet, self.state, self.now, using)
 
     def dump(self) -> str:
         return json.dumps(self.state, sort_keys=True)

@@ -5,7 +5,7 @@ A moment is one of
     {"later": [seconds by the wall, by the running timer]}   {"reload": seconds the page was gone}   {"set_clock": seconds}
     {"do": command}                       becomes events; signatures that are due follow
     {"refuse": command, "code": code}     is refused
-    {"see": {key of progress: value}}     what progress says now
+    {"see": {key of progress: value}}     what progress says now; beside it may stand "using": {"instrument", "range"}
     {"record": [kind, body, by]}          an event that decide would not make
     {"sign": [person, meaning]}
 
@@ -48,8 +48,9 @@ def play(vector: dict[str, Any]) -> tuple[Any, list[dict[str, Any]], list[Any]]:
                 d.do(**value)
             steps += [{"text": text} for text in d.texts[before:]]
         elif what == "see":
-            steps.append({"now": d.now})
-            said.append(d.progress)
+            using = moment.get("using")
+            steps.append({"now": d.now, "using": using})
+            said.append(d.seen(using))
         else:
             d.record(*value) if what == "record" else d.sign(*value)
             steps.append({"text": d.texts[-1]})
@@ -67,7 +68,7 @@ def written(vector: dict[str, Any]) -> dict[str, Any]:
             if "refuse" in moment:
                 moment = {**moment, "code": answer["refused"]["code"]}
             if "see" in moment:
-                moment = {"see": {key: answer[key] for key in moment["see"]}}
+                moment = {**moment, "see": {key: answer[key] for key in moment["see"]}}
         script.append(moment)
     return {**vector, "script": script, "texts": d.texts, "state": d.state}
 

@@ -96,11 +96,17 @@ class Walker:
         if kind == "acknowledged":
             more["heard"] = list(state["started"]["present"])
         elif kind == "read":
-            more["text"] = self.reading(progress["limits"], control)
+            more = self.meter(progress)
+            more["text"] = self.reading(self.d.seen(more)["limits"], control)
         elif kind == "proved":
             texts = {p["field"]: self.reading(p["limits"], control) for p in progress["points"]}
             points = [{"name": f[7:], "text": t} for f, t in texts.items() if f.startswith("points.")]
-            more = {"before": texts["before"], "after": texts["after"], "points": points}
+            more = {
+                "before": texts["before"],
+                "after": texts["after"],
+                "points": points,
+                **self.meter(progress, one=True),
+            }
         elif kind == "locked":
             more = {"lock": f"L-{rng.randrange(100, 999)}", "tag": "T"}
         elif kind == "unlocked":
@@ -117,6 +123,17 @@ class Walker:
         elif kind == "people-counted":
             more["names"] = ["J. Vell"]
         return {"do": kind, **more}
+
+    def meter(self, progress: dict[str, Any], one: bool = False) -> dict[str, Any]:
+        """Mostly what is proposed; sometimes another instrument or range, now and then one that there is not."""
+        rng, more = self.rng, dict[str, Any]()
+        if progress["ranges"] and rng.random() < 0.3:
+            more["range"] = rng.choice(progress["ranges"])
+        if len(progress["instruments"]) > 1 and not one and rng.random() < 0.2:
+            more = {"instrument": rng.choice(progress["instruments"])}
+        if rng.random() < 0.05 * (1 - self.care):
+            more["range"] = rng.choice(("", "20 V", "2 kV", "none"))
+        return more
 
     def reading(self, limits: dict[str, Any] | None, control: dict[str, Any]) -> str:
         """Mostly inside the limits, sometimes at, near or outside them."""
@@ -298,7 +315,7 @@ def decided(sheet: Sheet, state: dict[str, Any], step: dict[str, Any]) -> Any:
 
 
 def shown(sheet: Sheet, state: dict[str, Any], step: dict[str, Any]) -> Any:
-    return progress.progress(sheet, state, step["now"])
+    return progress.progress(sheet, state, step["now"], step.get("using"))
 
 
 def differences(here: Any, there: Any, path: str = "") -> list[str]:
