@@ -43,14 +43,14 @@ LARGEST_ANGLE = 1_000_000.0
 
 
 def exp(x: float) -> float | Fault:
-    if x > 710.0:
-        return _too_large("exp")
-    if x < -746.0:
-        return 0.0
     if -quick.MOST < x < quick.MOST:
         near = quick.exp(x, 0.0, quick.EXP_DOUBT)
         if near == near:
             return near
+    if x > 710.0:
+        return _too_large("exp")
+    if x < -746.0:
+        return 0.0
     e, k = pairs.exp((x, 0.0))
     value = pairs.scale(e[0], k)
     return _too_large("exp") if math.isinf(value) else value

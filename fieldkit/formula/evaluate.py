@@ -65,16 +65,17 @@ def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None 
         run = made.part(tree if isinstance(tree, dict) else ast.to_json(tree), 0).run
     except Stop as stop:
         run = nodes.stops(stop.fault).run
-    columns = made.columns
 
     def value(names: Mapping[str, Any] = _NOTHING, series: Mapping[str, Sequence[float]] = _NOTHING) -> Value:
         try:
-            found: Value = run({**names, nodes.COLUMNS: series} if columns else names)
+            return run(names)
         except Stop as stop:
             return stop.fault
-        return found
 
-    return Prepared(value)
+    def value_of_columns(names: Mapping[str, Any] = _NOTHING, series: Mapping[str, Any] = _NOTHING) -> Value:
+        return value({**names, nodes.COLUMNS: series})
+
+    return Prepared(value_of_columns if made.columns else value)
 
 
 class _Making:

@@ -22,7 +22,7 @@ from fieldkit.formula.functions import Run, Stop, Value
 from fieldkit.values import Fault
 
 #: where the columns stand among what names mean: under no name
-COLUMNS = object()
+COLUMNS: Any = object()
 
 _LARGEST = float_info.max
 

@@ -36,12 +36,12 @@ export const LARGEST_ANGLE = 1000000;
 
 /** @param {number} x @returns {number | Fault} */
 export function exp(x) {
-  if (x > 710) return too_large("exp");
-  if (x < -746) return 0;
   if (x > -quick.MOST && x < quick.MOST) {
     const near = quick.exp(x, 0, quick.EXP_DOUBT);
     if (near === near) return near;
   }
+  if (x > 710) return too_large("exp");
+  if (x < -746) return 0;
   const [e, k] = pairs.exp([x, 0]);
   const value = pairs.scale(e[0], k);
   return value === Infinity ? too_large("exp") : value;

@@ -49,7 +49,7 @@ export function evaluate(tree, names = NOTHING, series = NOTHING, formulas = NOT
 export function prepare(tree, formulas = NOTHING) {
   const found = new Making(formulas).part(tree, 0);
   const run = (found ?? nodes.stops(too_deep())).run;
-  return { value: (names = NOTHING, series = NOTHING) => run(names, series) };
+  return { value: (names = NOTHING, series = NOTHING) => run(names, series, null, null) };
 }
 
 /** Makes one tree ready, and once each the formulas that it calls. A part that is null: the whole is too deep. */
@@ -59,7 +59,7 @@ class Making {
     this.formulas = formulas;
     /** nodes so far, of the tree or of the formula that is being made ready */
     this.size = 0;
-    /** inside a formula: its arguments, and which of them each is @type {Map<string, number> | null} */
+    /** inside a formula: its arguments in order @type {string[] | null} */
     this.arguments = null;
     /** formulas made ready, with their sizes; null while one is being made @type {Map<string, {part: Part, size: number} | null>} */
     this.bodies = new Map();
@@ -104,8 +104,8 @@ class Making {
   named(name) {
     if (typeof name !== "string") return nodes.stops(nodes.bad_tree());
     if (this.arguments === null) return nodes.named(name);
-    const place = this.arguments.get(name);
-    return place === undefined ? nodes.stops(nodes.unknown(name)) : nodes.argument(place);
+    const place = this.arguments.lastIndexOf(name);
+    return place === -1 ? nodes.stops(nodes.unknown(name)) : nodes.argument(place, this.arguments.length);
   }
 
   /** @param {any} name @param {any[]} of @param {number} depth @returns {Part | null} */
@@ -147,7 +147,7 @@ class Making {
     const parts = this.parts(of, depth + 1);
     const body = parts && this.body(name, formula, names, depth + 1);
     if (!parts || !body) return null;
-    const given = parts.map((part, k) => nodes.ranged(name, wanted[k], part.run));
+    const given = parts.map((part, k) => nodes.ranged(name, wanted[k], part));
     return whole(nodes.called(body.run, given), [...parts, body], fixed(parts));
   }
 
@@ -159,7 +159,7 @@ class Making {
     if (!this.bodies.has(name)) {
       this.bodies.set(name, null);
       const [outer, size] = [this.arguments, this.size];
-      [this.arguments, this.size] = [new Map(names.map((n, k) => [n, k])), 0];
+      [this.arguments, this.size] = [names, 0];
       const part = this.part(nodes.aspect(formula, "tree"), depth);
       if (part === null) return null;
       this.bodies.set(name, { part, size: this.size });
@@ -188,7 +188,7 @@ function fixed(parts) {
 /** A node over its parts; asked at once where nothing can change its answer. @param {Run} run @param {Part[]} parts @param {boolean} once @returns {Part} */
 function whole(run, parts, once) {
   const height = 1 + parts.reduce((found, p) => Math.max(found, p.height), -1);
-  return once ? nodes.constant(run(NOTHING, NOTHING), height) : { run, fixed: false, height };
+  return once ? nodes.constant(run(null, null, null, null), height) : { run, fixed: false, height, name: null };
 }
 
 /** @param {string} name @param {any[]} of */

@@ -11,7 +11,11 @@ import * as elementary from "./elementary.js";
 import { Fault } from "./values.js";
 
 /** @typedef {number | boolean | string | Fault} Value */
-/** @typedef {(names: any, series: any) => any} Run */
+/**
+ * What names mean is, to a tree, (names, series); to a formula of the library its arguments, up to four, or all of them
+ * in an array. Nothing is packed and unpacked on the way.
+ * @typedef {(p: any, q: any, r: any, s: any) => any} Run
+ */
 /** @typedef {{least: number, most: number | null, column: boolean, make: ((...parts: Run[]) => Run) | null}} Entry */
 
 /** @param {string} what */
@@ -26,7 +30,7 @@ function refused(value, name) {
 
 /** A number or a Fault as an answer: v - v is 0 for every finite v. @param {number | Fault} v @param {string} name */
 function answer(v, name) {
-  if (v instanceof Fault || v - v === 0) return v;
+  if (typeof v !== "number" || v - v === 0) return v;
   return new Fault("overflow", `The result of ${name} is too large.`);
 }
 
@@ -34,10 +38,10 @@ function answer(v, name) {
 
 /** @param {Run} a @param {Run} b @returns {Run} */
 function add(a, b) {
-  return (names, series) => {
-    const x = a(names, series);
+  return (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (typeof x !== "number") return refused(x, "add");
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (typeof y !== "number") return refused(y, "add");
     const v = x + y;
     return v - v === 0 ? v : answer(v, "add");
@@ -46,10 +50,10 @@ function add(a, b) {
 
 /** @param {Run} a @param {Run} b @returns {Run} */
 function sub(a, b) {
-  return (names, series) => {
-    const x = a(names, series);
+  return (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (typeof x !== "number") return refused(x, "sub");
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (typeof y !== "number") return refused(y, "sub");
     const v = x - y;
     return v - v === 0 ? v : answer(v, "sub");
@@ -58,10 +62,10 @@ function sub(a, b) {
 
 /** @param {Run} a @param {Run} b @returns {Run} */
 function mul(a, b) {
-  return (names, series) => {
-    const x = a(names, series);
+  return (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (typeof x !== "number") return refused(x, "mul");
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (typeof y !== "number") return refused(y, "mul");
     const v = x * y;
     return v - v === 0 ? v : answer(v, "mul");
@@ -70,10 +74,10 @@ function mul(a, b) {
 
 /** @param {Run} a @param {Run} b @returns {Run} */
 function div(a, b) {
-  return (names, series) => {
-    const x = a(names, series);
+  return (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (typeof x !== "number") return refused(x, "div");
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (typeof y !== "number") return refused(y, "div");
     if (y === 0) return new Fault("divide-by-zero", "It would divide by zero.");
     const v = x / y;
@@ -83,18 +87,18 @@ function div(a, b) {
 
 /** A function of one number. @param {string} name @param {(x: number) => number | Fault} apply @returns {Entry} */
 function one(name, apply) {
-  return entry(1, 1, (a) => (names, series) => {
-    const x = a(names, series);
+  return entry(1, 1, (a) => (p, q, r, s) => {
+    const x = a(p, q, r, s);
     return typeof x === "number" ? answer(apply(x), name) : refused(x, name);
   });
 }
 
 /** A function of two numbers. @param {string} name @param {(x: number, y: number) => any} apply @returns {Entry} */
 function two(name, apply) {
-  return entry(2, 2, (a, b) => (names, series) => {
-    const x = a(names, series);
+  return entry(2, 2, (a, b) => (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (typeof x !== "number") return refused(x, name);
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (typeof y !== "number") return refused(y, name);
     const v = apply(x, y);
     return typeof v === "boolean" ? v : answer(v, name);
@@ -103,10 +107,10 @@ function two(name, apply) {
 
 /** A function of one number or more. @param {string} name @param {(of: number[]) => number} apply @returns {Entry} */
 function many(name, apply) {
-  return entry(1, null, (...parts) => (names, series) => {
+  return entry(1, null, (...parts) => (p, q, r, s) => {
     const given = [];
     for (const part of parts) {
-      const x = part(names, series);
+      const x = part(p, q, r, s);
       if (typeof x !== "number") return refused(x, name);
       given.push(x);
     }
@@ -116,8 +120,8 @@ function many(name, apply) {
 
 /** For a column that has numbers in it. @param {string} name @param {(of: number[]) => number} apply @returns {Entry} */
 function column(name, apply) {
-  return on_column(1, (values_of) => (names, series) => {
-    const values = values_of(names, series);
+  return on_column(1, (values_of) => (p, q, r, s) => {
+    const values = values_of(p, q, r, s);
     if (values instanceof Fault) return values;
     return values.length === 0 ? new Fault("missing", `${name} has no values yet.`) : answer(apply(values), name);
   });
@@ -125,18 +129,18 @@ function column(name, apply) {
 
 /** @param {Run} values_of @returns {Run} */
 function length(values_of) {
-  return (names, series) => {
-    const values = values_of(names, series);
+  return (p, q, r, s) => {
+    const values = values_of(p, q, r, s);
     return values instanceof Fault ? values : values.length;
   };
 }
 
 /** @param {Run} values_of @param {Run} index_of @returns {Run} */
 function at(values_of, index_of) {
-  return (names, series) => {
-    const values = values_of(names, series);
+  return (p, q, r, s) => {
+    const values = values_of(p, q, r, s);
     if (values instanceof Fault) return values;
-    const index = index_of(names, series);
+    const index = index_of(p, q, r, s);
     if (typeof index !== "number") return refused(index, "at");
     if (index !== Math.floor(index) || index < 0 || index >= values.length) {
       return new Fault("out-of-range", `There is no such place among ${values.length} values.`);
@@ -172,10 +176,10 @@ function average(values) {
 
 /** @param {Run} a @param {Run} b @param {boolean} same @returns {Run} */
 function equal(a, b, same) {
-  return (names, series) => {
-    const x = a(names, series);
+  return (p, q, r, s) => {
+    const x = a(p, q, r, s);
     if (x instanceof Fault) return x;
-    const y = b(names, series);
+    const y = b(p, q, r, s);
     if (y instanceof Fault) return y;
     if (typeof x !== typeof y) return new Fault("wrong-type", "Two values of different kinds were compared.");
     return (x === y) === same;
@@ -184,8 +188,8 @@ function equal(a, b, same) {
 
 /** @param {Run} a @returns {Run} */
 function not(a) {
-  return (names, series) => {
-    const flag = a(names, series);
+  return (p, q, r, s) => {
+    const flag = a(p, q, r, s);
     if (typeof flag === "boolean") return !flag;
     return flag instanceof Fault ? flag : new Fault("wrong-type", "not was given something that is no yes or no.");
   };

@@ -9,7 +9,11 @@ import { Fault, number, round12, to_shown } from "./values.js";
 
 /** @typedef {import("./functions.js").Value} Value */
 /** @typedef {import("./functions.js").Run} Run */
-/** @typedef {{run: Run, fixed: boolean, height: number}} Part fixed: always gives the same; height: nodes below it */
+/**
+ * A node made ready. fixed: it always gives the same. height: nodes below it. name: the name that it is, where the caller
+ * tells what names mean.
+ * @typedef {{run: Run, fixed: boolean, height: number, name: string | null}} Part
+ */
 
 /** @param {any} thing @param {string} key */
 export function has(thing, key) {
@@ -33,7 +37,7 @@ export function stops(fault) {
 
 /** @param {Value} value @param {number} [height] @returns {Part} */
 export function constant(value, height = 0) {
-  return { run: () => value, fixed: true, height };
+  return { run: () => value, fixed: true, height, name: null };
 }
 
 /** What the caller's name means. @param {string} name @returns {Part} */
@@ -47,13 +51,19 @@ export function named(name) {
     if (!has(names, name)) return unknown(name);
     return found instanceof Fault ? found : new Fault("wrong-type", `${name} is no number, text or flag.`);
   };
-  return { run, fixed: false, height: 0 };
+  return { run, fixed: false, height: 0, name };
 }
 
-/** An argument inside the formula: checked when it was called, so a number. @param {number} place @returns {Part} */
-export function argument(place) {
-  return { run: (given) => given[place], fixed: false, height: 0 };
+/**
+ * An argument inside the formula, one of `count`: checked when it was called, so a number.
+ * @param {number} place @param {number} count @returns {Part}
+ */
+export function argument(place, count) {
+  return { run: count <= 4 ? PLACES[place] : (given) => given[place], fixed: false, height: 0, name: null };
 }
+
+/** @type {Run[]} */
+const PLACES = [(p) => p, (p, q) => q, (p, q, r) => r, (p, q, r, s) => s];
 
 /** if, holds, and, or: only what is needed for the answer is asked. @param {string} name @param {Run[]} runs @returns {Run} */
 export function choice(name, runs) {
@@ -65,18 +75,18 @@ export function choice(name, runs) {
 
 /** @param {Run} condition @param {Run} held @param {Run} other @param {Fault} wrong @returns {Run} */
 function when(condition, held, other, wrong) {
-  return (names, series) => {
-    const flag = condition(names, series);
-    if (flag === true) return held(names, series);
-    if (flag === false) return other(names, series);
+  return (p, q, r, s) => {
+    const flag = condition(p, q, r, s);
+    if (flag === true) return held(p, q, r, s);
+    if (flag === false) return other(p, q, r, s);
     return flag instanceof Fault ? flag : wrong;
   };
 }
 
 /** What `holds` answers where its condition does not hold. @param {Run} says which one @returns {Run} */
 function not_held(says) {
-  return (names, series) => {
-    const text = says(names, series);
+  return (p, q, r, s) => {
+    const text = says(p, q, r, s);
     if (text instanceof Fault) return text;
     return typeof text === "string" ? new Fault("out-of-range", text) : new Fault("wrong-type", "holds has no sentence.");
   };
@@ -84,9 +94,9 @@ function not_held(says) {
 
 /** `until` where every flag is `until`, else the other. @param {Run[]} runs @param {boolean} until @param {Fault} wrong @returns {Run} */
 function every(runs, until, wrong) {
-  return (names, series) => {
+  return (p, q, r, s) => {
     for (const one of runs) {
-      const flag = one(names, series);
+      const flag = one(p, q, r, s);
       if (flag !== until) return flag === !until || flag instanceof Fault ? flag : wrong;
     }
     return until;
@@ -95,7 +105,7 @@ function every(runs, until, wrong) {
 
 /** A column of the caller, as numbers. @param {string} name @returns {Run} */
 export function column(name) {
-  return (_, series) => {
+  return (names, series) => {
     if (!has(series, name)) return no_column(name);
     const found = series[name];
     if (!Array.isArray(found) || !found.every((v) => Number.isFinite(v))) {
@@ -107,39 +117,45 @@ export function column(name) {
 
 /** A formula of the library, asked with its arguments. @param {Run} body @param {Run[]} given @returns {Run} */
 export function called(body, given) {
-  const [a, b] = given;
-  if (given.length === 1) {
-    return (names, series) => {
-      const x = a(names, series);
-      return typeof x === "number" ? body([x], null) : x;
-    };
-  }
-  if (given.length === 2) {
-    return (names, series) => {
-      const x = a(names, series);
-      if (typeof x !== "number") return x;
-      const y = b(names, series);
-      return typeof y === "number" ? body([x, y], null) : y;
-    };
-  }
-  return (names, series) => {
-    const found = [];
-    for (const one of given) {
-      const x = one(names, series);
-      if (typeof x !== "number") return x;
-      found.push(x);
-    }
-    return body(found, null);
+  const [a, b, c, d] = given;
+  if (given.length > 4) return called_with_many(body, given);
+  return (p, q, r, s) => {
+    let [w, x, y, z] = [0, 0, 0, 0];
+    if (a !== undefined && typeof (w = a(p, q, r, s)) !== "number") return w;
+    if (b !== undefined && typeof (x = b(p, q, r, s)) !== "number") return x;
+    if (c !== undefined && typeof (y = c(p, q, r, s)) !== "number") return y;
+    if (d !== undefined && typeof (z = d(p, q, r, s)) !== "number") return z;
+    return body(w, x, y, z);
   };
 }
 
-/** One argument of a formula, held to its range. @param {string} name @param {any} argument @param {Run} run @returns {Run} */
-export function ranged(name, argument, run) {
+/** @param {Run} body @param {Run[]} given @returns {Run} */
+function called_with_many(body, given) {
+  return (p, q, r, s) => {
+    const found = [];
+    for (const one of given) {
+      const x = one(p, q, r, s);
+      if (typeof x !== "number") return x;
+      found.push(x);
+    }
+    return body(found, null, null, null);
+  };
+}
+
+/** One argument of a formula, held to its range. @param {string} name @param {any} argument @param {Part} part @returns {Run} */
+export function ranged(name, argument, part) {
   const { low, high, whole } = range(argument) ?? { low: 1, high: 0, whole: false };
-  return (names, series) => {
-    const x = run(names, series);
+  const [inner, key] = [part.run, part.name];
+  /** @type {Run} */
+  const run = (p, q, r, s) => {
+    const x = inner(p, q, r, s);
     if (typeof x === "number" && x >= low && x <= high && (!whole || x === Math.floor(x))) return x;
     return x instanceof Fault ? x : outside(name, argument, x);
+  };
+  if (key === null || whole) return run;
+  return (p, q, r, s) => {
+    const x = p[key];
+    return typeof x === "number" && x >= low && x <= high ? x : run(p, q, r, s);
   };
 }
 
@@ -180,8 +196,8 @@ export function table(table, run) {
   const name = has(table, "name") && typeof table.name === "string" ? table.name : "the table";
   const [xs, ys] = [numbers(table.x), numbers(table.y)];
   const sound = xs !== null && ys !== null && xs.length === ys.length && xs.length >= 2 && rises(xs);
-  return (names, series) => {
-    const at = run(names, series);
+  return (p, q, r, s) => {
+    const at = run(p, q, r, s);
     if (at instanceof Fault) return at;
     if (typeof at !== "number") return new Fault("wrong-type", "A table was asked with something that is no number.");
     return sound ? between(name, at, xs, ys) : bad_tree();
