@@ -9,7 +9,7 @@ import math
 from dataclasses import dataclass
 from typing import Any
 
-from fieldkit.fits import columns, runs, squares, words
+from fieldkit.fits import columns, misfit, squares, words
 from fieldkit.fits.answer import Answer, answer
 from fieldkit.fits.columns import Columns, Refused
 from fieldkit.fits.logs import e_to, ln
@@ -18,8 +18,6 @@ from fieldkit.fits.squares import Fit
 FEWEST = 5
 #: the slope must be this many of its standard uncertainties below zero
 CLEAR_FALL = 3.0
-#: Fisher's F of a bend in the logarithms, from which the law does not hold (t = 4: a chance of 0.3 % at 12 readings)
-BENT = 16.0
 #: how far from the first reading the answer is trusted, in spans of the readings
 SPANS = 2.0
 
@@ -44,16 +42,17 @@ def reach(fall: Fall, times: Any, currents: Any, limit: Any, u: Any, show: words
     as far as they can be computed.
 
     Coefficients, covariance, s and residuals are those of ln I against t, or ln t. `span` is [first, last] time;
-    `reach` is how many spans after the first reading the limit is met; `runs` is z of the residuals' runs, `bend` F of
-    a parabola's term beside the line; `slope_u` the slope's standard uncertainty.
+    `reach` is how many spans after the first reading the limit is met; `misfit` how much more the fit
+    leaves than the readings scatter (misfit.ratio; about 1 where the law holds); `slope_u` the slope's standard
+    uncertainty.
 
     Refuses: bad-limit, not-positive (a current, or a time of the power law, at zero or below: its places are told;
     who leaves readings out says so), too-few (below 5), no-spread, not-falling (the slope is not three of its standard
-    uncertainties below zero), already-below, slows-down and quickens (the logarithms bend), residuals-run, beyond-span
+    uncertainties below zero), already-below, slows-down and quickens (a misfit above its limit), beyond-span
     (twice the span from the first reading).
     """
     show = words.guarded(show)
-    empty: Answer = dict.fromkeys(("value", "u", "limit", "span", "reach", "runs", "bend", "slope_u"))
+    empty: Answer = dict.fromkeys(("value", "u", "limit", "span", "reach", "misfit", "slope_u"))
     level = columns.positive("The limit", limit, "bad-limit")
     given = columns.read(("times", "currents"), times, currents, u, FEWEST)
     logged = given if isinstance(given, Refused) else _logs(fall, given)
@@ -67,14 +66,11 @@ def reach(fall: Fall, times: Any, currents: Any, limit: Any, u: Any, show: words
     for t in given.x:
         first, last = (t if t < first else first), (t if t > last else last)
     numbers = empty | squares.numbers(fit, fit.n)
-    numbers |= {"limit": level, "span": [first, last], "runs": runs.z(logged.x, fit.residuals, fit.floor)}
-    curve = squares.fit(logged, 2, "times")
-    slower = isinstance(curve, Fit) and curve.local[2] > 0.0
-    numbers["bend"] = _bend(fit, curve) if isinstance(curve, Fit) else None
+    numbers |= {"limit": level, "span": [first, last], "misfit": misfit.ratio(logged.x, fit)}
     numbers["slope_u"] = math.sqrt(fit.variance([0.0, 1.0]))
     if fit.local[1] < 0.0:
         numbers |= _met(fall, fit, ln(level), first, last)
-    refused = _refused(numbers, fit, slower, show)
+    refused = _refused(numbers, fit, misfit.above(logged.x, fit), show)
     return answer(fall.fit, numbers, refused, lambda: _says(fall, numbers, fit, show))
 
 
@@ -101,14 +97,6 @@ def _met(fall: Fall, fit: Fit, level: float, first: float, last: float) -> Answe
     return {"value": time, "u": deviation, "reach": (time - first) / (last - first)}
 
 
-def _bend(fit: Fit, curve: Fit) -> float | None:
-    """F of what the parabola explains beyond the line; None where nothing is left to explain."""
-    if fit.s == 0.0:
-        return None
-    scatter = curve.s if curve.s > fit.floor else fit.floor
-    return (fit.s * fit.s * fit.freedom - curve.s * curve.s * curve.freedom) / (scatter * scatter)
-
-
 def _refused(numbers: Answer, fit: Fit, slower: bool, show: words.Show) -> Refused | None:
     first, last = numbers["span"]
     time, limit = numbers["value"], show("y", numbers["limit"], None)
@@ -117,14 +105,10 @@ def _refused(numbers: Answer, fit: Fit, slower: bool, show: words.Show) -> Refus
     if numbers["reach"] < 0.0:
         return Refused("already-below", f"By this fit the current was below {limit} before the first reading.")
     promised = f"By this law the current would be at {limit} at {show('x', time, None)}"
-    if numbers["bend"] is not None and numbers["bend"] > BENT:
+    if numbers["misfit"] is not None and numbers["misfit"] > misfit.limit(fit.n):
         if slower:
-            return Refused(
-                "slows-down", f"{promised}, but its fall slows down against the law: it may never get there."
-            )
-        return Refused("quickens", f"{promised}, but it falls ever faster than the law: it may be there much sooner.")
-    if numbers["runs"] is not None and numbers["runs"] < runs.TOO_FEW:
-        return Refused("residuals-run", f"{promised}, but the readings lie above and below the law in long runs.")
+            return Refused("slows-down", f"{promised}, but the fall slows down against it: it may never get there.")
+        return Refused("quickens", f"{promised}, but the fall quickens against it: it may be there much sooner.")
     if not numbers["reach"] <= SPANS:
         until = show("x", first + (time - first) / SPANS, None)
         return Refused(

@@ -40,6 +40,7 @@ class Fit:
     s: float
     u_reading: float | None
     residuals: list[float]
+    weights: list[float]
     #: a residual below this is rounding
     floor: float
 
@@ -90,7 +91,7 @@ def fit(columns: Columns, degree: int, names: str = "settings") -> Fit | Refused
     for size, part in zip(found, in_z, strict=True):
         local = [a + size * b for a, b in zip(local, part, strict=True)]
     parts = [(variance / length, part) for (_, length, _), part in zip(basis, in_z, strict=True)]
-    return Fit(n, freedom, *ends, centre, local, parts, math.sqrt(s_squared), u_reading, left, floor)
+    return Fit(n, freedom, *ends, centre, local, parts, math.sqrt(s_squared), u_reading, left, weights, floor)
 
 
 def numbers(found: Fit | None, n: int) -> dict[str, Any]:

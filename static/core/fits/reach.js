@@ -7,7 +7,7 @@
 import { answer, nulls } from "./answer.js";
 import * as columns from "./columns.js";
 import { e_to, ln } from "./logs.js";
-import * as runs from "./runs.js";
+import * as misfit from "./misfit.js";
 import * as squares from "./squares.js";
 import * as words from "./words.js";
 
@@ -20,7 +20,6 @@ const { Refused } = columns;
 
 export const FEWEST = 5;
 export const CLEAR_FALL = 3;
-export const BENT = 16;
 export const SPANS = 2;
 
 export const FALLS = Object.freeze({
@@ -34,7 +33,7 @@ export const FALLS = Object.freeze({
  */
 export function reach(fall, times, currents, limit, u, show) {
   show = words.guarded(show);
-  const empty = nulls("value", "u", "limit", "span", "reach", "runs", "bend", "slope_u");
+  const empty = nulls("value", "u", "limit", "span", "reach", "misfit", "slope_u");
   const level = columns.positive("The limit", limit, "bad-limit");
   const given = columns.read(["times", "currents"], times, currents, u, FEWEST);
   const logged = given instanceof Refused ? given : logs(fall, given);
@@ -48,13 +47,10 @@ export function reach(fall, times, currents, limit, u, show) {
   for (const t of given.x) [first, last] = [t < first ? t : first, t > last ? t : last];
   /** @type {Answer} */
   const numbers = { ...empty, ...squares.numbers(fit, fit.n) };
-  Object.assign(numbers, { limit: level, span: [first, last], runs: runs.z(logged.x, fit.residuals, fit.floor) });
-  const curve = squares.fit(logged, 2, "times");
-  const slower = !(curve instanceof Refused) && curve.local[2] > 0;
-  numbers.bend = curve instanceof Refused ? null : bend(fit, curve);
+  Object.assign(numbers, { limit: level, span: [first, last], misfit: misfit.ratio(logged.x, fit) });
   numbers.slope_u = Math.sqrt(squares.variance(fit, [0, 1]));
   if (fit.local[1] < 0) Object.assign(numbers, met(fall, fit, ln(level), first, last));
-  return answer(fall.fit, numbers, refuse(numbers, fit, slower, show), () => sentence(fall, numbers, fit, show));
+  return answer(fall.fit, numbers, refuse(numbers, fit, misfit.above(logged.x, fit), show), () => sentence(fall, numbers, fit, show));
 }
 
 /** ln I with its uncertainty u / I, against t or ln t. @param {Fall} fall @param {Columns} given @returns {Columns | columns.Refused} */
@@ -82,13 +78,6 @@ function met(fall, fit, level, first, last) {
   return { value: time, u: deviation, reach: (time - first) / (last - first) };
 }
 
-/** F of what the parabola explains beyond the line; null where nothing is left to explain. @param {Fit} fit @param {Fit} curve */
-function bend(fit, curve) {
-  if (fit.s === 0) return null;
-  const scatter = curve.s > fit.floor ? curve.s : fit.floor;
-  return (fit.s * fit.s * fit.freedom - curve.s * curve.s * curve.freedom) / (scatter * scatter);
-}
-
 /** @param {Answer} numbers @param {Fit} fit @param {boolean} slower @param {words.Show} show */
 function refuse(numbers, fit, slower, show) {
   const [first, last] = numbers.span;
@@ -101,12 +90,9 @@ function refuse(numbers, fit, slower, show) {
     return new Refused("already-below", `By this fit the current was below ${limit} before the first reading.`);
   }
   const promised = `By this law the current would be at ${limit} at ${show("x", time, null)}`;
-  if (numbers.bend !== null && numbers.bend > BENT) {
-    if (slower) return new Refused("slows-down", `${promised}, but its fall slows down against the law: it may never get there.`);
-    return new Refused("quickens", `${promised}, but it falls ever faster than the law: it may be there much sooner.`);
-  }
-  if (numbers.runs !== null && numbers.runs < runs.TOO_FEW) {
-    return new Refused("residuals-run", `${promised}, but the readings lie above and below the law in long runs.`);
+  if (numbers.misfit !== null && numbers.misfit > misfit.limit(fit.n)) {
+    if (slower) return new Refused("slows-down", `${promised}, but the fall slows down against it: it may never get there.`);
+    return new Refused("quickens", `${promised}, but the fall quickens against it: it may be there much sooner.`);
   }
   if (!(numbers.reach <= SPANS)) {
     const until = show("x", first + (time - first) / SPANS, null);

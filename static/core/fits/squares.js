@@ -21,6 +21,7 @@ export const ROUNDING = 1e-13;
  * @property {number} centre @property {number[]} local
  * @property {[number, number[]][]} parts of each orthogonal polynomial: the variance of its coefficient, itself in z
  * @property {number} s @property {number | null} u_reading @property {number[]} residuals
+ * @property {number[]} weights
  * @property {number} floor a residual below this is rounding
  */
 
@@ -78,7 +79,7 @@ export function fit(columns, degree, names = "settings") {
   /** @type {[number, number[]][]} */
   const parts = basis.map(([, length], k) => [spread_squared / length, in_z[k]]);
   const [low, high] = ends;
-  return { n, freedom, low, high, centre, local, parts, s: Math.sqrt(s_squared), u_reading, residuals: left, floor };
+  return { n, freedom, low, high, centre, local, parts, s: Math.sqrt(s_squared), u_reading, residuals: left, weights, floor };
 }
 
 /** What every least-squares fit tells; nulls where there is none. @param {Fit | null} found @param {number} n */
