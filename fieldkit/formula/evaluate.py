@@ -60,7 +60,7 @@ def evaluate(
 
 def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None = None) -> Prepared:
     """`tree` made ready, with the formulas that it calls. Raises nothing, whatever the tree is."""
-    made = _Making(formulas or _NOTHING)
+    made = Making(formulas or _NOTHING)
     try:
         run = made.part(tree if isinstance(tree, dict) else ast.to_json(tree), 0).run
     except Stop as stop:
@@ -78,7 +78,7 @@ def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None 
     return Prepared(value_of_columns if made.columns else value)
 
 
-class _Making:
+class Making:
     """Makes one tree ready, and once each the formulas that it calls."""
 
     def __init__(self, formulas: Mapping[str, Any]) -> None:
@@ -151,7 +151,9 @@ class _Making:
         return _whole(entry.make(nodes.column(name), *runs), entry.number, parts, False)
 
     def library(self, function: Any, of: list[Any], depth: int) -> Part:
-        if not isinstance(function, str) or function not in self.formulas:
+        if not isinstance(function, str):
+            return nodes.stops(Fault("unknown-function", "The name of a formula is no text."))
+        if function not in self.formulas:
             return nodes.stops(Fault("unknown-function", f"There is no formula named {function}."))
         formula = self.formulas[function]
         arguments = nodes.aspect(formula, "arguments")

@@ -53,7 +53,7 @@ export function prepare(tree, formulas = NOTHING) {
 }
 
 /** Makes one tree ready, and once each the formulas that it calls. A part that is null: the whole is too deep. */
-class Making {
+export class Making {
   /** @param {Record<string, any>} formulas */
   constructor(formulas) {
     this.formulas = formulas;
@@ -136,7 +136,10 @@ class Making {
 
   /** @param {any} name @param {any[]} of @param {number} depth @returns {Part | null} */
   library(name, of, depth) {
-    if (typeof name !== "string" || !nodes.has(this.formulas, name)) {
+    if (typeof name !== "string") {
+      return nodes.stops(new Fault("unknown-function", "The name of a formula is no text."));
+    }
+    if (!nodes.has(this.formulas, name)) {
       return nodes.stops(new Fault("unknown-function", `There is no formula named ${name}.`));
     }
     const formula = this.formulas[name];

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import copy
 import math
 import random
 import struct
@@ -11,6 +12,7 @@ import pytest
 
 from fieldkit.formula import ast, evaluate, parse
 from fieldkit.formula.functions import FUNCTIONS
+from fieldkit.sheet import model
 from fieldkit.values import FAULTS, Fault
 
 FUZZED = 20_000
@@ -53,6 +55,26 @@ def test_too_much_work_is_a_fault_in_both_languages(twins: Any) -> None:
 def test_a_plain_tree_and_its_json_give_the_same() -> None:
     tree = parse.parse("1.4 * idle")
     assert evaluate.evaluate(tree, {"idle": 0.42}) == evaluate.evaluate(ast.to_json(tree), {"idle": 0.42}) == 0.42 * 1.4
+
+
+def test_a_tree_made_ready_is_asked_often() -> None:
+    ready = evaluate.prepare(parse.parse("last(levels) * gain"))
+    assert ready.value({"gain": 2.0}, {"levels": [1.0, 3.0]}) == 6.0
+    assert ready.value({"gain": 5}, {"levels": [4]}) == 20.0
+    assert ready.value({"gain": 2.0}) == Fault("unknown-name", "There is no column of numbers named levels.")
+    assert ready.value({"gain": 2.0}, {"levels": [1.0, 3.0]}) == 6.0
+
+
+def test_the_formulas_of_a_sheet_are_taken_as_they_are_or_as_json() -> None:
+    argument = model.Argument(name="x", unit="kV", factor="1000", low="0", high="60000")
+    tree = ast.to_json(parse.parse("2 * x"))
+    used = model.FormulaUsed(name="twice", meaning="", arguments=(argument,), result_unit="V", tree=tree, reference="")
+    plain = used.model_dump(mode="json")
+    old = plain | {"arguments": [{k: v for k, v in plain["arguments"][0].items() if k != "whole"}]}
+    for x, expected in ((12.0, 24.0), (61000.0, "twice: x is 61 kV; the formula holds from 0 to 60 kV.")):
+        for given in (used, plain, old):
+            got = evaluate.evaluate({"call": "twice", "of": [{"name": "x"}]}, {"x": x}, {}, {"twice": given})
+            assert (got.says if isinstance(got, Fault) else got) == expected
 
 
 SENTENCES = {
@@ -195,3 +217,43 @@ def test_twenty_thousand_random_formulas_agree_bit_for_bit(twins: Any) -> None:
     assert faults >= {"divide-by-zero", "overflow", "out-of-range", "missing", "wrong-type", "domain", "bad-tree"}
     values = [struct.unpack(">d", bytes.fromhex(v["bits"]))[0] for v in answered]
     assert all(math.isfinite(v) for v in values)
+
+
+JUNK: tuple[Any, ...] = (
+    *(None, 5, -0.5, True, "", "1e5", "x", [], [[]], {}, {"number": 5}, {"text": None}, {"flag": "yes"}),
+    *({"name": ["a"]}, {"call": "mul"}, {"call": ["mul"], "of": []}, {"call": "ranged", "of": {}}, {"series": None}),
+    *(
+        {"table": []},
+        {"table": {"x": ["1", "2"], "y": ["1", None], "of": {"number": "1"}}},
+        {"call": "last", "of": [5]},
+    ),
+)
+
+
+def _damaged(part: Any, rnd: random.Random, share: float) -> Any:
+    """A copy with some of its parts put out for junk, or left out."""
+    if rnd.random() < share:
+        return copy.deepcopy(rnd.choice(JUNK))
+    if isinstance(part, dict):
+        return {k: _damaged(v, rnd, share) for k, v in part.items() if rnd.random() > share / 2}
+    return [_damaged(v, rnd, share) for v in part] if isinstance(part, list) else part
+
+
+def test_whatever_json_comes_there_is_an_answer_and_the_same_in_both_languages(twins: Any) -> None:
+    maker, rnd = _Maker(7), random.Random(7)
+    requests: list[tuple[str, list[Any]]] = []
+    for k in range(3000):
+        tree = _damaged(maker.number(2 + k % 3), rnd, 0.03)
+        names = maker.names() | {"a": rnd.choice([None, 5, [1.0], {}, 3.5]), "word": rnd.choice(["on", "", 7])}
+        series = {"s": rnd.choice([[1.0, 2], [None], "abc", 5, None, [True]])}
+        formulas = _damaged(FORMULAS, rnd, 0.03)
+        requests.append(("evaluate", [tree, names, series, formulas if isinstance(formulas, dict) else {}]))
+    ours, theirs = twins.python(requests), twins.javascript(requests)
+    assert [(r[1], a, b) for r, a, b in zip(requests, ours, theirs, strict=True) if a != b][:1] == []
+    assert not any("threw" in a for a in ours)
+    assert {a["value"]["fault"] for a in ours if isinstance(a["value"], dict) and "fault" in a["value"]} >= {
+        "bad-tree",
+        "wrong-type",
+        "unknown-function",
+        "unknown-name",
+    }
