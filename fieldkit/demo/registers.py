@@ -11,6 +11,8 @@ import json
 from importlib import resources
 from typing import Any
 
+from fieldkit.run import clock
+
 WRITTEN_FOR = dt.date(2026, 7, 31)
 
 
@@ -19,7 +21,7 @@ def seed(today: dt.date) -> dict[str, Any]:
     data: dict[str, Any] = json.loads(resources.files("fieldkit.demo").joinpath("station.json").read_text("utf-8"))
     moved = today - WRITTEN_FOR
     for instrument in data["instruments"].values():
-        if instrument["calibrated_to"]:
-            date = dt.date.fromisoformat(instrument["calibrated_to"]) + moved
-            instrument["calibrated_to"] = date.isoformat()
+        on = (dt.date.fromisoformat(instrument["calibrated_on"]) + moved).isoformat()
+        due = clock.months_later(on, instrument["interval_months"])
+        instrument.update(calibrated_on=on, calibrated_to=due)
     return data

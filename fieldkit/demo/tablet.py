@@ -140,6 +140,14 @@ class Run:
             sync.picture(tablet.station, device, sha256, data)
 
 
+def _spare(names: set[str], registers: Plain) -> set[str]:
+    """Hand instruments that read the same as one that the sheet names."""
+    built_in = {one for cabinet in registers["cabinets"].values() for one in cabinet["meters"].values()}
+    hand = {name: one["reads"] for name, one in registers["instruments"].items() if name not in built_in}
+    reads = {hand[name] for name in names if name in hand}
+    return {name for name, what in hand.items() if what in reads}
+
+
 def start_body(run: Run, *, cabinet: str, tube: str, present: tuple[str, ...]) -> Plain:
     """The body of `run-started`, gathered from the registers as the tablet gathers it from its kit."""
     registers, sheet = kit.registers_now(), run.sheet.sheet
@@ -148,6 +156,7 @@ def start_body(run: Run, *, cabinet: str, tube: str, present: tuple[str, ...]) -
     origin = {"tube": plate["givens"], "cabinet": cab["givens"], "site": site["givens"]}
     meters = [m for step in sheet["steps"] if (m := step["control"].get("meter") or step["control"].get("tester"))]
     wanted = {m["instrument"] or cab["meters"][m["role"]] for m in meters}
+    wanted |= _spare({m["instrument"] for m in meters if m["instrument"]}, registers)
     people = [{"id": key, "name": p["name"], "roles": p["roles"]} for key, p in registers["people"].items()]
     device = run.tablet
     return {

@@ -16,6 +16,7 @@ from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from fieldkit.errors import Refusal
+from fieldkit.operations import instruments as instruments_register
 from fieldkit.operations import moment
 from fieldkit.operations.actor import Actor, require
 from fieldkit.run import events
@@ -100,8 +101,9 @@ def read(seed: Mapping[str, Any]) -> Registers:
         serial: {k: v for k, v in tube.items() if k not in ("confirmed", "photograph")}
         for serial, tube in dict(seed.get("tubes", {})).items()
     }
+    instruments = {name: events.with_ranges(one) for name, one in dict(seed.get("instruments", {})).items()}
     try:
-        return Registers.model_validate({**seed, "tubes": tubes})
+        return Registers.model_validate({**seed, "tubes": tubes, "instruments": instruments})
     except ValidationError as exc:
         first = exc.errors()[0]
         where = ".".join(str(p) for p in first["loc"])
@@ -126,7 +128,7 @@ def load(actor: Actor, seed: Mapping[str, Any]) -> None:
         for serial, tube in made.tubes.items():
             _put(session, Tube, serial, tube, cabinet=tube.cabinet)
         for instrument_id, instrument in made.instruments.items():
-            _put(session, Instrument, instrument_id, instrument)
+            _put(session, Instrument, instrument_id, instruments_register.due(instrument))
 
 
 def _check_references(made: Registers) -> None:
@@ -143,6 +145,10 @@ def _check_references(made: Registers) -> None:
         for source in listed:
             if source not in cabinet.sources:
                 raise Refusal("bad-register", f"Cabinet {name} maps {source!r}, which is none of its sources.")
+    for name, instrument in made.instruments.items():
+        wrong = instruments_register.wrong_with(name, instrument)
+        if wrong:
+            raise Refusal("bad-register", f"Instrument {name}: {wrong}.")
     for serial, tube in made.tubes.items():
         if tube.cabinet is not None and tube.cabinet not in made.cabinets:
             raise Refusal("bad-register", f"Tube {serial} is in {tube.cabinet!r}, which is no cabinet here.")
@@ -183,7 +189,10 @@ def cabinets() -> dict[str, CabinetData]:
 
 def instruments() -> dict[str, events.Instrument]:
     rows = db.session.scalars(select(Instrument).order_by(Instrument.id))
-    return {row.id: events.Instrument.model_validate_json(row.data) for row in rows}
+    return {
+        row.id: instruments_register.due(events.Instrument.model_validate(events.with_ranges(json.loads(row.data))))
+        for row in rows
+    }
 
 
 def tubes() -> dict[str, TubeLine]:

@@ -16,6 +16,7 @@ from fieldkit.record import course, lanes, summary, words
 from fieldkit.record.frame import Frame, titled
 from fieldkit.record.lines import Chain, Correction, Deviation, EarthLine, LockLine, Note, Reading, Signature
 from fieldkit.record.model import Attention, Review, Scale
+from fieldkit.run import readings
 
 #: a reading that moved by more than this part of its limits' distance since the last run is shown (own choice)
 MOVED = Decimal("0.25")
@@ -306,7 +307,8 @@ def overdue(frame: Frame, lists: Lists) -> Iterator[Attention]:
     for r in lists.readings:
         if r.overdue and r.instrument not in seen:
             seen.add(r.instrument)
-            due = next((i["calibrated_to"] for i in frame.started["instruments"] if i["id"] == r.instrument), "")
+            meter = readings.instrument(frame.final, r.instrument)
+            due = meter["calibrated_to"] if meter else ""
             says = f"The calibration of {r.instrument} ran out on {words.day(due or '')}; the verdicts stand."
             yield _item(
                 frame, "overdue", "Meter overdue", r.instrument or "", says, r.seq, by=f"First read at {r.time[:5]}."

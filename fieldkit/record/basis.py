@@ -6,9 +6,10 @@ import base64
 import json
 from typing import Any
 
-from fieldkit.record import words
+from fieldkit.record import meters, words
 from fieldkit.record.frame import Frame
 from fieldkit.record.lines import Chain, Disagreement, GivenLine, InstrumentLine, Signature
+from fieldkit.run import readings
 
 Plain = dict[str, Any]
 
@@ -66,34 +67,49 @@ def _claims(jws: str) -> Plain:
 
 
 def instruments(frame: Frame) -> tuple[InstrumentLine, ...]:
-    """Instruments that took a reading first, each with what it was at the time."""
-    used = {row["instrument"] for row in frame.rows.values() if row["instrument"]}
-    day = frame.first[:10]
-    found = []
+    """Instruments that took a reading first, each range that was used with what it was at the time."""
+    used = {(row["instrument"], row["range"]) for row in frame.rows.values() if row["instrument"]}
+    found: list[InstrumentLine] = []
     for one in frame.started["instruments"]:
-        unit = frame.unit(one["unit"])
-        span = f"{one['low'] or ''} to {one['high'] or ''} {unit}" if one["low"] or one["high"] else ""
-        percent = f"{one['percent']} % of reading" if _some(one["percent"]) else ""
-        digits = f"{one['digits']} × {one['resolution']} {unit}".strip() if _some(one["digits"]) else ""
-        found.append(
-            InstrumentLine(
-                id=one["id"],
-                reads=one["reads"],
-                unit=unit,
-                range=words.minus(span.strip()),
-                resolution=one["resolution"],
-                accuracy="±(" + " + ".join(p for p in (percent, digits) if p) + ")" if percent or digits else "",
-                calibrated_to=one["calibrated_to"] or "",
-                certificate=one["certificate"],
-                used=one["id"] in used,
-                overdue=bool(one["calibrated_to"]) and day > one["calibrated_to"],
-            )
-        )
+        found += _lines(frame, one, {range_ for name, range_ in used if name == one["id"]})
     return tuple(sorted(found, key=lambda i: (not i.used, i.id)))
 
 
-def _some(number: str) -> bool:
-    return number.strip("0.") != ""
+def _lines(frame: Frame, one: Plain, used: set[str]) -> list[InstrumentLine]:
+    """One line for each range that was used; for an instrument that was not, one for all of its ranges."""
+    ranges = one["ranges"]
+    if len(ranges) > 1:
+        ranges = [found for found in ranges if found["name"] in used]
+    if not ranges:
+        named = ", ".join(meters.name(found, frame.unit(found["unit"])) for found in one["ranges"])
+        return [_line(frame, one, {"unit": "", "range": named, "resolution": "", "accuracy": ""}, False)]
+    lines = []
+    for found in ranges:
+        unit = frame.unit(found["unit"])
+        name, span = meters.name(found, unit), meters.span(found, unit)
+        words_ = f"{name}: {span}" if name and span and len(one["ranges"]) > 1 else span or name
+        said = {
+            "unit": unit,
+            "range": words_,
+            "resolution": found["resolution"],
+            "accuracy": meters.accuracy(found, unit),
+        }
+        lines.append(_line(frame, one, said, bool(used)))
+    return lines
+
+
+def _line(frame: Frame, one: Plain, said: Plain, used: bool) -> InstrumentLine:
+    due = readings.flat(one, None)["calibrated_to"]
+    return InstrumentLine(
+        id=one["id"],
+        reads=one["reads"],
+        **said,
+        calibrated_to=due or "",
+        certificate=one["certificate"],
+        used=used,
+        overdue=bool(due) and frame.first[:10] > due,
+        holds=meters.holds(one),
+    )
 
 
 def givens(frame: Frame) -> tuple[GivenLine, ...]:

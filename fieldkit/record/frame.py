@@ -79,6 +79,11 @@ class Frame:
         """A unit as people read it: uA is µA."""
         return self.units.get(symbol, symbol)
 
+    def range(self, name: str) -> str:
+        """The name of a range as people read it: "5 uSv/h" is "5 µSv/h"."""
+        number, _, symbol = name.rpartition(" ")
+        return f"{number} {self.unit(symbol)}" if number else name
+
     def title(self, source: str) -> str:
         found = self.index.sources.get(source)
         return str(found["title"]) if found else source.replace("_", " ")

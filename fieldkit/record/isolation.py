@@ -104,6 +104,7 @@ def proofs(frame: Frame) -> tuple[Proof, ...]:
                 number=row["number"],
                 title=row["title"],
                 instrument=event["body"]["instrument"],
+                range=frame.range(row["range"]),
                 known_source=step["control"]["known_source"],
                 verdict=row["verdict"] or "not judged",
                 values=values,

@@ -108,6 +108,10 @@ class Reading(Piece):
     #: an instrument reading, or a result worked out
     kind: Literal["reading", "result", "proof"] = "reading"
     formulas: tuple[str, ...] = ()
+    #: the range of the instrument that was used; "" where it has no name
+    range: str = ""
+    #: a result with its U, without the unit: "41.54 ± 0.83"; "" where U is not worked out
+    shown: str = ""
 
 
 class FormulaLine(Piece):
@@ -209,6 +213,8 @@ class Proof(Piece):
     verdict: str
     #: one line a value, in order: tester before, points, tester after
     values: tuple[str, ...]
+    #: the range of the tester that was used; "" where it has no name
+    range: str = ""
 
 
 class Wait(Piece):
@@ -287,6 +293,8 @@ class InstrumentLine(Piece):
     #: it took a reading of this run
     used: bool
     overdue: bool
+    #: where and how long its accuracy holds, in words
+    holds: str = ""
 
 
 class GivenLine(Piece):

@@ -58,6 +58,7 @@ def _common(frame: Frame, event: Plain, row: Plain) -> Plain:
         "level": row["level"],
         "unit": frame.unit(row["unit"]),
         "instrument": row["instrument"],
+        "range": frame.range(row["range"]),
         "overdue": row["overdue"],
         "protects": bool(control.get("protects")) or event["kind"] == "proved",
     }
@@ -126,9 +127,9 @@ def _judged(row: Plain, symbol: str, unit: str) -> Plain:
 
 
 def _why(limits: Plain | None) -> str:
-    if limits is None:
+    if limits is None or (limits["low"] is None and limits["high"] is None and not limits["fault"]):
         return "no limit is set"
-    return str(limits["fault"] or limits["coarse"] or "no limit is set")
+    return str(limits["fault"] or limits["coarse"] or judge.AT_ITS_END)
 
 
 def _in_units(margin: str | None, u: str | None) -> str | None:

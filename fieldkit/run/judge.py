@@ -24,6 +24,8 @@ Value = Callable[[dict[str, Any]], object]
 
 #: the verdicts, from best to worst
 VERDICTS = ("pass", "conditional pass", "not judged", "conditional fail", "fail")
+#: why a reading is not judged that stands at the end of its range, short of a limit
+AT_ITS_END = "the meter stands at the end of this range, and the limit lies beyond it"
 
 
 def bounds(
@@ -228,7 +230,7 @@ def _verdict(x: Dec, limits: dict[str, Any] | None, meter: dict[str, Any] | None
     if limits["coarse"]:
         return "not judged", limits["coarse"]
     if _at_its_end(x, limits, meter):
-        return "not judged", "the meter stands at the end of this range, and the limit lies beyond it"
+        return "not judged", AT_ITS_END
     for side, sign in (("low", 1), ("high", -1)):
         if limits[side] is None:
             continue

@@ -12,7 +12,7 @@ from flask import Blueprint, Response, flash, redirect, render_template, request
 from flask.typing import ResponseReturnValue
 
 from fieldkit.errors import Refusal
-from fieldkit.operations import board, people, pictures, registers
+from fieldkit.operations import board, instruments, moment, people, pictures, registers
 from fieldkit.operations.registers import TubeLine
 from fieldkit.web import errors, forms
 from fieldkit.web.security import SANDBOX, actor, allowed, signed_in
@@ -32,7 +32,7 @@ def page() -> ResponseReturnValue:
         cabinets=cabinets,
         boards=board.boards(list(cabinets)),
         tubes=registers.tubes(),
-        instruments=registers.instruments(),
+        instruments=instruments.lines(registers.instruments(), moment.now().date().isoformat()),
     )
 
 

@@ -55,6 +55,16 @@ function metersOf(sheet) {
   return { roles: [...roles], names: [...names] };
 }
 
+/**
+ * Hand instruments that read the same as one that the sheet names: taken along, should that one be overdue.
+ * @param {string[]} names @param {any} registers
+ */
+function spare(names, registers) {
+  const built_in = Object.values(registers.cabinets).flatMap((/** @type {any} */ one) => Object.values(one.meters));
+  const reads = names.filter((id) => !built_in.includes(id)).map((id) => registers.instruments[id]?.reads);
+  return Object.keys(registers.instruments).filter((id) => !built_in.includes(id) && reads.includes(registers.instruments[id].reads));
+}
+
 /** @param {any} sheet @param {any} cabinet @param {any} registers */
 function instruments(sheet, cabinet, registers) {
   const { roles, names } = metersOf(sheet);
@@ -62,6 +72,7 @@ function instruments(sheet, cabinet, registers) {
   const ids = new Set([...roles.map((role) => cabinet.meters[role]).filter(Boolean), ...names]);
   const lacking = [...missing, ...[...ids].filter((id) => !registers.instruments[id])];
   if (lacking.length) throw new Refused("meter-missing", `The registers have no instrument for: ${lacking.join(", ")}. Have it entered at the desk, then fetch the kit.`);
+  for (const id of spare(names, registers)) ids.add(id);
   return [...ids].sort().map((id) => ({ ...registers.instruments[id], id }));
 }
 

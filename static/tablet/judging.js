@@ -3,18 +3,12 @@ import { judge } from "../core/judge.js";
 import { h, put } from "./dom.js";
 import { day, minus, pretty } from "./words.js";
 
-/** The instrument that a control's meter names in this run, or null. @param {any} state @param {any} meter */
-export function instrumentOf(state, meter) {
-  if (!meter || !state.started) return null;
-  const id = meter.instrument ?? state.started.meters?.[meter.role];
-  return state.started.instruments.find((/** @type {any} */ i) => i.id === id) ?? null;
-}
-
-/** "Deck meter DM-04, ±(0.3 % + 1 digit), calibrated to 30 Nov 2026", as parts. @param {any} instrument @param {any} meter @param {string} today */
+/** "Deck meter DM-04, ±(0.3 % + 1 digit), calibrated to 30 Nov 2026", as parts; `instrument` is that of progress. @param {any} instrument @param {any} meter @param {string} today */
 export function meterWords(instrument, meter, today) {
   if (!instrument) return null;
-  const digits = Number(instrument.digits), percent = Number(instrument.percent);
-  const accuracy = [percent ? `${instrument.percent} %` : "", digits ? `${instrument.digits} digit${digits === 1 ? "" : "s"}` : ""].filter(Boolean).join(" + ");
+  const { percent, digits, percent_of_range } = instrument;
+  const parts = [Number(percent) ? `${percent} %` : "", Number(percent_of_range) ? `${percent_of_range} % of range` : "", Number(digits) ? `${digits} digit${Number(digits) === 1 ? "" : "s"}` : ""];
+  const accuracy = parts.filter(Boolean).join(" + ");
   const overdue = Boolean(instrument.calibrated_to && today && instrument.calibrated_to.slice(0, 10) < today.slice(0, 10));
   const calibrated = instrument.calibrated_to ? (overdue ? `calibration ran out on ${day(instrument.calibrated_to)}` : `calibrated to ${day(instrument.calibrated_to)}`) : "";
   return {

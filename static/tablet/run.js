@@ -227,7 +227,7 @@ export async function open(store, start, sheet, app, hooks) {
     },
     command,
     sign,
-    progress: () => progress(folded.ctx, folded.state, clockwatch.now()),
+    progress: (/** @type {any} */ using = null) => progress(folded.ctx, folded.state, clockwatch.now(), using),
     now: () => clockwatch.now(),
     /** @param {(what: any) => void} cb */
     onchange(cb) {

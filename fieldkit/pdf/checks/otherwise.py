@@ -15,7 +15,7 @@ Plain = dict[str, Any]
 _READING = (
     "seq", "at", "step", "number", "level", "part", "text", "value", "unit", "u", "margin", "verdict", "overdue",
     "protects", "instrument", "deviation", "retaken", "kind", "limits.low", "limits.high", "limits.accept_low",
-    "limits.accept_high",
+    "limits.accept_high", "range", "shown",
 )  # fmt: skip
 #: section of the record -> its facts; a section that is a list has them in each entry
 FACTS: dict[str, tuple[str, ...]] = {

@@ -5,7 +5,7 @@
 import { h, part, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
 import { keypad } from "../keypad.js";
-import { instrumentOf, judged, meterWords, showSentence } from "../judging.js";
+import { judged, meterWords, showSentence } from "../judging.js";
 import { limitScale } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
 import { say } from "../announce.js";
@@ -22,7 +22,7 @@ export function showMeter(node, words) {
 export function mount(ctx, el) {
   const control = ctx.step.control, unit = control.unit.symbol;
   const input = part(el.l, "typed"), wrong = part(el.l, "wrong"), box = part(el.l, "verdict-box");
-  const instrument = instrumentOf(ctx.state, control.meter);
+  const { instrument } = ctx.progress;
   showMeter(part(el.l, "meter"), meterWords(instrument, control.meter, ctx.run.now().wall));
   put(part(el.l, "label"), `${ctx.step.title}, in ${pretty(unit)}`);
   put(part(el.l, "unit"), pretty(unit));
@@ -35,7 +35,7 @@ export function mount(ctx, el) {
   input.addEventListener("keydown", (/** @type {KeyboardEvent} */ e) => { if (e.key === "Enter") e.preventDefault(); });
 
   async function record() {
-    const answer = await ctx.answer({ do: "read", text: input.value.trim(), unit, instrument: instrument?.id ?? null });
+    const answer = await ctx.answer({ do: "read", text: input.value.trim(), unit, instrument: instrument?.id ?? null, range: instrument?.range ?? "" });
     if (!answer.refused) return;
     put(wrong, answer.refused.says);
     input.setAttribute("aria-invalid", "true");

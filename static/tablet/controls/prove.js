@@ -5,7 +5,7 @@
 import { h, part, put } from "../dom.js";
 import { acting, reasonList } from "../acting.js";
 import { keypad } from "../keypad.js";
-import { instrumentOf, judged, meterWords } from "../judging.js";
+import { judged, meterWords } from "../judging.js";
 import { smallScale } from "../scale.js";
 import { say } from "../announce.js";
 import { freshen } from "../step_page.js";
@@ -14,7 +14,7 @@ import { showMeter } from "./number.js";
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
-  const control = ctx.step.control, unit = control.unit.symbol, instrument = instrumentOf(ctx.state, control.tester);
+  const control = ctx.step.control, unit = control.unit.symbol, { instrument } = ctx.progress;
   const wrong = part(el.l, "wrong"), template = part(el.l, "row");
   showMeter(part(el.l, "meter"), meterWords(instrument, control.tester, ctx.run.now().wall));
   put(part(el.l, "known-source"), "Known source ", h("span", { class: "id" }, control.known_source), ". Work as if live until the last line is in.");
@@ -62,7 +62,7 @@ export function mount(ctx, el) {
   }
   async function record() {
     const points = rows.slice(1, -1).map((r) => ({ name: r.ask.name, text: r.input.value.trim() }));
-    const answer = await ctx.answer({ do: "proved", instrument: instrument?.id ?? control.tester.instrument ?? "", before: rows[0].input.value.trim(), points, after: rows.at(-1)?.input.value.trim() ?? "" });
+    const answer = await ctx.answer({ do: "proved", instrument: instrument?.id ?? control.tester.instrument ?? "", range: instrument?.range ?? "", before: rows[0].input.value.trim(), points, after: rows.at(-1)?.input.value.trim() ?? "" });
     if (answer.refused) put(wrong, answer.refused.says);
   }
   function update() {
