@@ -180,7 +180,7 @@ def test_from_the_open_step_to_a_sum_and_back_nothing_is_lost_or_recorded(page: 
     assert page.locator("[data-result]").inner_text().startswith("50.0")
     assert "heater" in page.inner_text("[data-live]") and "records" in page.inner_text("[data-recorder]")
     page.click("[data-all-sums]")
-    assert page.locator("[data-recent] [data-sum=discharge_voltage]").count() == 1
+    page.wait_for_selector("[data-recent] [data-sum=discharge_voltage]")
     page.click("[data-close]")
     assert page.inner_text("[data-step-title]") == title
     assert page.input_value("[data-typed]") == "6.4"
@@ -189,6 +189,16 @@ def test_from_the_open_step_to_a_sum_and_back_nothing_is_lost_or_recorded(page: 
     page.click("[data-to=sums]")
     page.click("[data-make-safe]")
     page.wait_for_selector("[data-over=make_safe]")
+
+
+def test_a_wait_that_ends_meanwhile_is_said_and_spoken_over_the_sums(page: Any, look: LookServer) -> None:
+    made = at("warm")
+    show(page, look, f"#run?run={made['runs'][0]['run']}&over=sums", made)
+    page.wait_for_selector("[data-find]")
+    assert ": opens in 4:" in page.inner_text("[data-step-waits]")
+    page.evaluate("() => globalThis.skip(400)")
+    page.wait_for_function("() => document.querySelector('[data-alert]').textContent.includes('the wait is over')")
+    assert "the wait is over" in page.inner_text("[data-step-waits]")
 
 
 def test_from_home_make_safe_stays_one_touch_away_while_a_run_is_open(page: Any, look: LookServer) -> None:
@@ -375,11 +385,12 @@ def test_an_older_kit_without_sums_says_what_to_do(page: Any, look: LookServer) 
 
 
 def test_every_formula_of_the_library_opens_and_its_example_gives_a_result(page: Any, look: LookServer) -> None:
-    """By the screens' own modules in the page, all in one turn: what the list offers, the page can answer."""
+    """By the screens' own modules in the page, all in one turn: what the list offers, the page can answer; and the ends
+    of a range that it shows, in every unit, are taken, but where they have more digits than a reading may."""
     show(page, look)
     failed = page.evaluate("""async () => {
       const near = (name) => document.querySelector("script[type=module]").src.replace("main.js", name), book = await (await fetch("/sums.json")).json();
-      const { sumOf, quantity, sameKind, firstAny, unitsFor, resultUnits } = await import(near("sums/book.js")), { prepared, reckon } = await import(near("sums/reckon.js"));
+      const { sumOf, quantity, sameKind, firstAny, unitsFor, resultUnits } = await import(near("sums/book.js")), { prepared, read, reckon } = await import(near("sums/reckon.js")), { end } = await import(near("sums/digits.js"));
       const failed = [];
       for (const name of book.subjects.flatMap((s) => s.formulas)) {
         const sum = sumOf(book, name), any = firstAny(book, sum), texts = {}, units = {};
@@ -391,6 +402,14 @@ def test_every_formula_of_the_library_opens_and_its_example_gives_a_result(page:
         }
         const got = reckon(sum, prepared(sum, book.formulas), texts, units);
         if (!got.results) failed.push(`${name}: ${got.says}`);
+        for (const a of sum.arguments) {
+          for (const u of unitsFor(book, a, any)) {
+            for (const side of ["low", "high"]) {
+              const text = end(a[side], u, side), got = text === null ? null : read(a, text, u);
+              if (got && got.state !== "good" && text.length <= 15) failed.push(`${name}: ${a.name} is refused at its own end, ${text} ${u.symbol}: ${got.says}`);
+            }
+          }
+        }
         if (!sum.results.every((r) => resultUnits(book, r, any).length)) failed.push(`${name}: no unit for its result`);
       }
       return failed;

@@ -32,5 +32,5 @@ export async function kitScreen(app) {
       take.removeAttribute("disabled");
     }
   }
-  return { node: page(app, { title: "Take the kit", under: "Needs the server" }, band({ front: true }, h("p", { class: "say" }, "Procedures, registers with the lock board, site cards, people and their certificates, and the pages of the controls."), bar, says, wrong, h("div", { class: "buttons" }, take))), title: "Take the kit" };
+  return { node: page(app, { title: "Take the kit", under: "Needs the server" }, band({ front: true }, h("p", { class: "say" }, "Procedures, registers with the lock board, site cards, people and their certificates, the formulas of the sums, and the pages of the controls."), bar, says, wrong, h("div", { class: "buttons" }, take))), title: "Take the kit" };
 }

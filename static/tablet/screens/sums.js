@@ -2,10 +2,14 @@
  * Sums: the formulas of the kit, to work a number out. A page of its own, and a page over the open step of a run, where
  * MAKE SAFE stays in reach. Nothing is recorded here; going back lands on the same step.
  */
+import { alertUser } from "../announce.js";
+import { chime } from "../chime.js";
 import { h, put } from "../dom.js";
 import { sumOf } from "../sums/book.js";
 import { listView } from "../sums/list.js";
 import { sumView } from "../sums/sum.js";
+import { opensWords } from "../opens.js";
+import { lower } from "../words.js";
 import { makeSafeMark } from "../frame.js";
 import { overHead } from "./over_parts.js";
 import { page } from "./pages.js";
@@ -52,8 +56,16 @@ export async function sumsScreen(app, args) {
 export function sumsPage(ctx, args) {
   const open = (/** @type {string} */ name) => ctx.over("sums", { name }), place = h("div", {}, h("p", { class: "say" }, "Opening the sums of the kit"));
   const heading = h("h1", { tabindex: "-1" }, "Sums"), ways = h("div", { class: "sums-ways" });
-  const node = h("div", { class: "work sums-work" }, h("div", { class: "panel-head" }, h("div", {}, h("p", { class: "with" }, args.name ? SHORT : UNRECORDED), heading), ways), place);
-  let stop = () => {};
+  const wait = h("b", { "data-step-waits": true });
+  const node = h("div", { class: "work sums-work" }, h("div", { class: "panel-head" }, h("div", {}, h("p", { class: "with" }, args.name ? `${SHORT}. ` : `${UNRECORDED} `, wait), heading), ways), place);
+  let stop = () => {}, waited = false;
+  /** The step goes on below: what it waits for is said here too, and spoken when it is over. */
+  function update() {
+    const reasons = ctx.step ? ctx.shutReasons() : [], waits = reasons.length > 0 && reasons.every((/** @type {any} */ r) => Number(r.left) > 0), over = `Step ${ctx.step?.number}: the wait is over.`;
+    if (waits) put(wait, `Step ${ctx.step.number}: ${lower(opensWords(reasons))}.`);
+    else if (waited) { put(wait, over); alertUser(over); chime(); }
+    waited = waits;
+  }
   const [, back] = overHead(ctx, "Sums")[0].children;
   put(ways, back);
   void bookOf(ctx.host).then((from) => {
@@ -65,5 +77,6 @@ export function sumsPage(ctx, args) {
     put(ways, made.isSum ? h("button", { type: "button", class: "close", "data-all-sums": true, on: { click: () => ctx.over("sums") } }, "All sums") : null, back);
     place.replaceWith(made.node);
   });
-  return { node, stop: () => stop() };
+  update();
+  return { node, update, stop: () => stop() };
 }

@@ -70,9 +70,15 @@ const unitOf = (symbol, row) => ({ symbol, shown: row.shown, factor: row.factor,
 /** @param {any} a @param {any} b */
 const alike = (a, b) => a.absolute === b.absolute && JSON.stringify(Object.entries(a.dimension).sort()) === JSON.stringify(Object.entries(b.dimension).sort());
 
+/** A million times more or less is as far as a unit may be: nobody types an altitude in picometres. */
+const FARTHEST = 1.000001e6;
+
+/** @param {any} a @param {any} b */
+const near = (a, b) => { const times = Number(a.factor) / Number(b.factor); return times <= FARTHEST && times >= 1 / FARTHEST; };
+
 /** All units of the kind of one, itself first. @param {Book} book @param {string} symbol @returns {Unit[]} */
 export function sameKind(book, symbol) {
-  const own = book.units[symbol], kind = Object.hasOwn(KINDS, symbol) ? KINDS[symbol] : [symbol, ...Object.keys(book.units).filter((s) => s !== symbol && alike(book.units[s], own))];
+  const own = book.units[symbol], kind = Object.hasOwn(KINDS, symbol) ? KINDS[symbol] : [symbol, ...Object.keys(book.units).filter((s) => s !== symbol && alike(book.units[s], own) && near(book.units[s], own))];
   return kind.map((s) => unitOf(s, book.units[s]));
 }
 

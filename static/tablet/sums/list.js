@@ -32,7 +32,13 @@ export function listView(book, open) {
   /** A subject that opens and shuts. @param {{name: string, formulas: string[]}} subject */
   function shelf(subject) {
     const isOpen = kept.list.open === subject.name;
-    const turn = () => { kept.list.open = isOpen ? "" : subject.name; paint(); /** @type {HTMLElement | null} */ (found_.querySelector(`[data-subject="${CSS.escape(subject.name)}"]`))?.focus({ preventScroll: true }); };
+    const turn = () => {
+      kept.list.open = isOpen ? "" : subject.name;
+      paint();
+      const head = /** @type {HTMLElement | null} */ (found_.querySelector(`[data-subject="${CSS.escape(subject.name)}"]`)), section = head?.closest("section");
+      head?.focus({ preventScroll: true });
+      if (!isOpen && section && section.getBoundingClientRect().bottom > innerHeight) section.scrollIntoView({ block: "start" });
+    };
     return h("section", {}, h("h2", { class: "sum-shelf" }, h("button", { type: "button", "aria-expanded": String(isOpen), "data-subject": subject.name, on: { click: turn } },
       h("b", {}, titleOf(subject.name)), h("span", {}, count(subject.formulas.length)), h("span", { class: "go" }, isOpen ? "Hide" : "Show"))), isOpen ? rows(subject.formulas) : null);
   }

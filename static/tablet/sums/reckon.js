@@ -4,7 +4,7 @@
  * A sum is prepared once and asked at each key. What is typed is read as a reading is (core/values.js); the formula is
  * the kit's own tree (core/evaluate.js).
  */
-import { evaluate } from "../../core/evaluate.js";
+import { prepare } from "../../core/evaluate.js";
 import { Fault, Refusal, number, to_si, to_text, typed } from "../../core/values.js";
 import { called, calledAll, titleOf } from "./book.js";
 import { rangeWords, withUnit } from "./digits.js";
@@ -46,10 +46,10 @@ export function faultWords(fault, name) {
 
 /** A sum that can be asked. @param {Sum} sum @param {Record<string, any>} formulas */
 export function prepared(sum, formulas) {
-  const trees = sum.results.map((r) => ({ call: r.name, of: sum.arguments.map((a) => ({ name: a.name })) }));
+  const ready = sum.results.map((r) => prepare({ call: r.name, of: sum.arguments.map((a) => ({ name: a.name })) }, formulas));
   /** The k-th result in SI, or a Fault. @param {number} k @param {Record<string, number>} values in SI, by argument */
-  const value = (k, values) => /** @type {number | Fault} */ (evaluate(trees[k], values, {}, formulas));
-  return { value, all: (/** @type {Record<string, number>} */ values) => trees.map((_, k) => value(k, values)) };
+  const value = (k, values) => /** @type {number | Fault} */ (ready[k].value(values));
+  return { value, all: (/** @type {Record<string, number>} */ values) => ready.map((_, k) => value(k, values)) };
 }
 
 /**

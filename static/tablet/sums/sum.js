@@ -25,7 +25,7 @@ function unitChoice(name, units, chosen, choose) {
   const select = /** @type {HTMLSelectElement} */ (h("select", { class: "sum-unit", "aria-label": name, on: { change: () => choose(select.value) } },
     units.map((u) => h("option", { value: u.symbol }, words(u)))));
   select.value = chosen;
-  select.dataset.long = units.some((u) => u.shown.length > 6) ? "1" : "0";
+  select.dataset.long = units.some((u) => u.shown.length > 8) ? "1" : "0";
   return select;
 }
 
