@@ -93,6 +93,16 @@ def test_the_permitted_change_and_range_are_never_overstepped() -> None:
     assert advised > 7000
 
 
+def test_a_rounding_that_oversteps_is_taken_back_and_the_advice_kept() -> None:
+    """0.1 + 0.2 is 0.30000000000000004 in doubles, a change above 0.2: the double below it is advised."""
+    assert (0.1 + 0.2) - 0.1 > 0.2
+    for present, target, want in ((0.1, 9.0, 0.3), (-0.1, -9.0, -0.3)):
+        got = fits.bounded_secant([0.0, present], [0.0, present], target, 0.2, -1, 1)
+        assert got["value"] == pytest.approx(want, rel=4e-16)
+        assert abs(got["value"] - present) <= 0.2
+        assert got["clipped"] == "change"
+
+
 def test_what_stopped_the_advice_is_said() -> None:
     x, y = [10.0, 30.0], [100.0, 900.0]
     cases = {None: (1000, 0), "change": (2, 0), "low": (1000, 25)}

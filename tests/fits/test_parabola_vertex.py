@@ -26,15 +26,17 @@ def code(got: dict[str, Any]) -> str | None:
 
 
 def test_the_vertex_and_its_uncertainty_are_those_of_the_uncertainties_package() -> None:
-    """numpy.polyfit about the middle of the sweep with its covariance, propagated by the uncertainties package."""
+    """numpy.polyfit about the middle of the sweep with its covariance, propagated by the uncertainties package; of even
+    steps, and of steps that grow, where b and c are correlated."""
     r = random.Random(31)
-    for _ in range(100):
-        y = body(r)
-        coefficients, covariance = numpy.polyfit(numpy.array(SWEEP) - 26, y, 2, cov=True)
+    for k in range(100):
+        settings = SWEEP if k % 2 else [22 + 8 * (j / 16) ** 1.6 for j in range(17)]
+        y = [0.012 + 0.0011 * (v - 26.3) ** 2 + r.gauss(0, 0.0005) for v in settings]
+        coefficients, covariance = numpy.polyfit(numpy.array(settings) - 26, y, 2, cov=True)
         c, b, a = uncertainties.correlated_values(coefficients, covariance)
         vertex = -b / (2 * c)
         least = a + b * vertex + c * vertex * vertex
-        got = fits.parabola_vertex(SWEEP, y)
+        got = fits.parabola_vertex(settings, y)
         assert got["value"] - 26 == pytest.approx(vertex.nominal_value, rel=1e-8, abs=1e-10)
         assert got["u"] == pytest.approx(vertex.std_dev, rel=1e-8)
         assert got["minimum"] == pytest.approx(least.nominal_value, rel=1e-8)
