@@ -21,6 +21,7 @@ import math
 
 from fieldkit.formula import pairs, quick
 from fieldkit.formula.pairs import Pair
+from fieldkit.formula.quick import MOST
 from fieldkit.values import Fault
 
 TWO_OVER_PI = 0.6366197723675814
@@ -43,8 +44,8 @@ LARGEST_ANGLE = 1_000_000.0
 
 
 def exp(x: float) -> float | Fault:
-    if -quick.MOST < x < quick.MOST:
-        near = quick.exp(x, 0.0, quick.EXP_DOUBT)
+    if -MOST < x < MOST:
+        near = quick.exp(x)
         if near == near:
             return near
     if x > 710.0:
@@ -99,7 +100,7 @@ def pow(x: float, y: float) -> float | Fault:
 def _near_power(x: float, y: float) -> float:
     """x ** y the short way, or NaN; x > 0."""
     ln, rest = quick.log(x)
-    if abs(y * ln) >= quick.MOST:
+    if abs(y * ln) >= MOST:
         return math.nan
     hi, lo = pairs.two_prod(ln, y)
     return quick.exp(hi, lo + y * rest, quick.EXP_DOUBT + abs(y) * quick.POWER_DOUBT)

@@ -64,10 +64,10 @@ LOGS = _logs()
 DOUBLINGS = tuple(math.ldexp(1.0, k) for k in (*range(1024), *range(-1022, 0)))
 
 
-def exp(hi: float, lo: float, doubt: float) -> float:
+def exp(hi: float, lo: float = 0.0, doubt: float = EXP_DOUBT) -> float:
     """e ** (hi + lo), or NaN; |hi| up to MOST, |lo| at most half a unit of hi's last place.
 
-    `doubt` is EXP_DOUBT, and more where hi + lo is itself in doubt.
+    `doubt` is more than EXP_DOUBT where hi + lo is itself in doubt.
     """
     n = (hi * PER_STEP + WHOLE) - WHOLE
     k = int(n)

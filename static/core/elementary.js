@@ -37,7 +37,7 @@ export const LARGEST_ANGLE = 1000000;
 /** @param {number} x @returns {number | Fault} */
 export function exp(x) {
   if (x > -quick.MOST && x < quick.MOST) {
-    const near = quick.exp(x, 0, quick.EXP_DOUBT);
+    const near = quick.exp(x);
     if (near === near) return near;
   }
   if (x > 710) return too_large("exp");

@@ -55,8 +55,8 @@ const LOGS = logs();
 /** 2 ** (k - 1022) */
 const DOUBLINGS = Float64Array.from({ length: 2046 }, (_, k) => pairs.power_of_two(k - 1022));
 
-/** e ** (hi + lo), or NaN. @param {number} hi @param {number} lo @param {number} doubt @returns {number} */
-export function exp(hi, lo, doubt) {
+/** e ** (hi + lo), or NaN. @param {number} hi @param {number} [lo] @param {number} [doubt] @returns {number} */
+export function exp(hi, lo = 0, doubt = EXP_DOUBT) {
   const n = hi * PER_STEP + WHOLE - WHOLE;
   const k = n | 0;
   const at = (k & 1023) << 1;
