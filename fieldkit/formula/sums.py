@@ -3,7 +3,8 @@
     {"subjects": [{"name": "beam", "formulas": ["beam_power", ...]}],     in the order read; pairs stand among them
      "formulas": {name: {...}}, "pairs": {name: {...}}, "units": units.table()}
 
-A value of "formulas" serves the evaluators as it is. Ranges are in SI, as decimal texts; null is unbounded.
+A value of "formulas" serves the evaluators as it is. Ranges are in SI, as decimal texts; null is
+unbounded. `digits` is how many significant digits an answer deserves.
 """
 
 from __future__ import annotations
@@ -11,6 +12,7 @@ from __future__ import annotations
 from typing import Any
 
 from fieldkit import units
+from fieldkit.formula import display
 from fieldkit.formula.arguments import Argument, any_of
 from fieldkit.formula.entry import Formula, Pair
 from fieldkit.formula.library import Library
@@ -50,6 +52,7 @@ def _formula(f: Formula) -> dict[str, Any]:
         "reference": f.reference,
         "decides": f.decides,
         "cautions": list(f.cautions),
+        "digits": display.digits(f),
         "plot": {"along": f.plot} if f.plot else None,
         "example": _example(f),
     }
