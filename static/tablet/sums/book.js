@@ -4,12 +4,13 @@
  */
 import { Dec, dec, to_text } from "../../core/values.js";
 import { list, lower, sentence } from "../words.js";
+import { MOST } from "./digits.js";
 
 /** @typedef {import("./digits.js").Unit} Unit */
 /** @typedef {{symbol: string, unit: string, factor: string, offset: string, any: "" | "any" | "difference"}} Measured */
 /** @typedef {Measured & {name: string, meaning: string, low: string | null, high: string | null, whole: boolean}} Argument */
 /** @typedef {{subjects: {name: string, formulas: string[]}[], formulas: Record<string, any>, pairs: Record<string, any>, units: Record<string, any>}} Book */
-/** @typedef {Measured & {name: string, title: string, meaning: string}} Result */
+/** @typedef {Measured & {name: string, title: string, meaning: string, digits: number}} Result digits that an answer deserves */
 /**
  * @typedef {object} Sum
  * @property {string} name @property {string} title @property {string} subject @property {string} meaning
@@ -37,7 +38,7 @@ export function sumOf(book, name) {
   const first = of[0], whole = pair ?? first, alongs = of.map((/** @type {any} */ f) => f.plot?.along ?? null);
   return {
     name, title: titleOf(name), subject: whole.subject, meaning: whole.meaning, arguments: first.arguments,
-    results: of.map((/** @type {any} */ f, /** @type {number} */ k) => ({ name: names[k], title: titleOf(names[k]), meaning: f.meaning, symbol: f.symbol, unit: f.unit, factor: f.factor, offset: f.offset, any: f.any })),
+    results: of.map((/** @type {any} */ f, /** @type {number} */ k) => ({ name: names[k], title: titleOf(names[k]), meaning: f.meaning, symbol: f.symbol, unit: f.unit, factor: f.factor, offset: f.offset, any: f.any, digits: f.digits ?? MOST })),
     reference: whole.reference, decides: whole.decides, cautions: whole.cautions ?? [], uses: pair ? [] : first.uses ?? [], written: pair ? "" : first.written ?? "",
     along: alongs.every((/** @type {any} */ a) => a === alongs[0]) ? alongs[0] : null,
     example: of.every((/** @type {any} */ f) => f.example) && first.arguments.length ? { with: first.example.with, gives: of.map((/** @type {any} */ f) => f.example.gives) } : null,

@@ -1,6 +1,6 @@
 /**
- * How a worked-out number is shown: six digits at most, digits before the point never rounded off, and a power of ten
- * where too many noughts would stand. As `fieldkit calc` shows it. Pure; no element is made here.
+ * How a worked-out number is shown: the digits that its formula deserves and six at most, digits before the point never
+ * rounded off, and a power of ten where too many noughts would stand. As `fieldkit calc` shows it. Pure.
  *
  * Not here: reading what was typed, and values in SI (core/values.js).
  */

@@ -96,7 +96,7 @@ export function sumView(book, sum, open) {
       if (f.wrong.textContent !== (state === "wrong" ? why : "")) put(f.wrong, state === "wrong" ? why : "");
       f.input.setAttribute("aria-invalid", String(state === "wrong"));
     }
-    const figures = sum.results.map((_, k) => (got.results ? shown(got.results[k], unitOfResult(k)) : ""));
+    const figures = sum.results.map((r, k) => (got.results ? shown(got.results[k], unitOfResult(k), r.digits) : ""));
     for (const o of outs) { put(o.figure, figures[o.k]); o.figure.dataset.long = lengthOf(figures[o.k]); o.node.hidden = !got.results; }
     put(says_, got.says);
     says_.hidden = !got.says;
