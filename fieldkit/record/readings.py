@@ -85,6 +85,7 @@ def _reading(frame: Frame, event: Plain, row: Plain, before: list[Reading], devi
         tries_before=len(tries),
         kind="result" if result else "reading",
         formulas=tuple(control.get("formulas") or ()) if result else (),
+        shown=words.minus(row["shown"]),
     )
 
 
@@ -117,7 +118,7 @@ def _proof(frame: Frame, event: Plain, row: Plain) -> list[Reading]:
 def _judged(row: Plain, symbol: str, unit: str) -> Plain:
     margin, u = row.get("margin"), row.get("u")
     return {
-        "u": _short(u, row.get("limits"), row["text"]),
+        "u": _short(u, row.get("limits"), row["text"]) if not row.get("shown") else row["shown"].rpartition(" ")[2],
         "margin": margin,
         "margin_u": _in_units(margin, u),
         "verdict": row["verdict"] or "not judged",

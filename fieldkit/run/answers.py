@@ -11,7 +11,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from fieldkit.run import clock, judge, moves, names, readings, rows
+from fieldkit.run import clock, judge, moves, names, readings, results, rows
 from fieldkit.run.moves import State, disagree
 from fieldkit.run.names import Context, Scope
 
@@ -150,7 +150,8 @@ def _number(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
             "range": _range(body, meter),
         }
     si = readings.si_text(body["text"], control["unit"])
-    _keep(state, event["step"]["id"], body["text"], control["unit"]["symbol"], si, seq)
+    parts = results.of_reading(control, meter, readings.plain(body["text"]), seq)
+    _keep(state, event["step"]["id"], body["text"], control["unit"]["symbol"], si, seq, parts)
     return verdict.pop("outcome"), {
         "text": body["text"],
         "unit": body["unit"],
@@ -178,10 +179,13 @@ def _of_verdict(verdict: Plain) -> Plain:
     return {key: verdict[key] for key in ("verdict", "margin", "u", "near", "untypical", "overdue", "words")}
 
 
-def _keep(state: State, step: str, text: str, unit: str, si: str | None, seq: int) -> None:
-    state["values"][step] = {"text": text, "unit": unit, "si": si, "seq": seq}
+def _keep(
+    state: State, step: str, text: str, unit: str, si: str | None, seq: int, parts: results.Parts | None = None
+) -> None:
+    state["values"][step] = {"text": text, "unit": unit, "si": si, "seq": seq, "parts": parts}
     if si is not None:
         state["series"][step] = [*state["series"].get(step, []), si]
+        state["spread"][step] = [*state["spread"].get(step, []), parts]
 
 
 def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
@@ -207,15 +211,18 @@ def _result(ctx: Context, state: State, where: Scope, event: Plain) -> Said:
                     "reason": "worked out again after the correction",
                 }
             ]
-    limits = readings.bounds(ctx, where, control, None)
+    parts = results.of_result(ctx, state, where, control)
+    own = results.meter(control, parts)
+    limits = readings.bounds(ctx, where, control, own)
     unit = control["unit"]["symbol"]
     if fault:
         _keep(state, step, "", unit, None, seq)
         said = {"verdict": "not judged", "words": f"No value: {fault}", "value": "", "limits": limits, "old": old}
         return "fail", {"unit": unit, **said}
-    verdict = _judged(control, text, limits, None, control["protects"], event)
-    _keep(state, step, text, unit, si, seq)
-    said = {"text": text, "unit": unit, "value": si, "limits": limits, "old": old}
+    verdict = _judged(control, text, limits, own, control["protects"], event)
+    shown = results.shown(ctx, where, control, own)
+    _keep(state, step, text, unit, si, seq, parts)
+    said = {"text": text, "unit": unit, "value": si, "shown": shown, "limits": limits, "old": old}
     return verdict.pop("outcome"), {**said, **_of_verdict(verdict)}
 
 

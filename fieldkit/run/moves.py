@@ -115,8 +115,8 @@ def _apply(ctx: Context, state: State, move: dict[str, Any], event: dict[str, An
     for place, way in effects["hands"].items():
         _hands(state, place, way, event["by"])
     if move["manner"] == "again":
-        column = state["series"].get(step, [])
-        state["series"][step] = column[:-1]
+        for columns in (state["series"], state["spread"]):
+            columns[step] = columns.get(step, [])[:-1]
     before = state["done"].get(step)
     state["done"][step] = {
         "seq": seq,

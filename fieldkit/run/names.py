@@ -17,6 +17,7 @@ from typing import Any
 
 from fieldkit import values
 from fieldkit.formula import evaluate as evaluation
+from fieldkit.formula import slopes
 from fieldkit.run import clock
 from fieldkit.sheet.model import Sheet
 from fieldkit.values import Fault
@@ -50,6 +51,8 @@ class Context:
     givens: tuple[dict[str, Any] | None, Scope] | None = None
     #: trees of the sheet made ready, by identity
     ready: dict[int, tuple[dict[str, Any], evaluation.Prepared]] = field(default_factory=dict)
+    #: the same of those whose uncertainty was asked for
+    sloped: dict[int, tuple[dict[str, Any], slopes.Prepared]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)
@@ -273,6 +276,15 @@ def value(ctx: Context, where: Scope, tree: dict[str, Any]) -> Any:
     if kept is None or kept[0] is not tree:
         kept = ctx.ready[id(tree)] = (tree, evaluation.prepare(tree, ctx.sheet["formulas"]))
     found: evaluation.Value = kept[1].value(where.names, where.series)
+    return found
+
+
+def gradient(ctx: Context, where: Scope, tree: dict[str, Any]) -> slopes.Slopes | Fault:
+    """How the value of a tree of the sheet changes, in SI, with each name and each place of a column that it uses."""
+    kept = ctx.sloped.get(id(tree))
+    if kept is None or kept[0] is not tree:
+        kept = ctx.sloped[id(tree)] = (tree, slopes.prepare(tree, ctx.sheet["formulas"]))
+    found: slopes.Slopes | Fault = kept[1].gradient(where.names, where.series).of
     return found
 
 

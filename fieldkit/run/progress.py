@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from fieldkit.run import ahead, clock, judge, moves, names, ranges, readings, rows
+from fieldkit.run import ahead, clock, judge, moves, names, ranges, readings, results, rows
 from fieldkit.run.moves import State
 from fieldkit.run.names import LIVE, Context, Scope, context
 from fieldkit.sheet.model import Sheet
@@ -35,7 +35,8 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any], 
     ways = offered(ctx, state, where)
     path = ahead.ahead(ctx, state, where)
     meter = ranges.in_use(ctx, state, where, step, using)
-    limits = _limits(ctx, where, step, meter)
+    own = _own(ctx, state, where, step)
+    limits = _limits(ctx, where, step, meter or own)
     points = _points(ctx, where, step, meter)
     return {
         "node": state["node"],
@@ -50,6 +51,8 @@ def progress(sheet: Sheet | Plain | Context, state: State, now: dict[str, Any], 
         **ranges.offers(state, step, meter),
         "plate": _plate(ctx, where, step, meter),
         "value": _value(ctx, where, step),
+        "spread": own,
+        "shown": results.shown(ctx, where, step["control"], own) if step else "",
         "level": rows.level_text(ctx, where, step) if step and step["level"] else "",
         "judgeable": _judgeable(ctx, where, step, meter, [limits, *(one["limits"] for one in points)], now),
         "waits": ahead.waits(ctx, where, state, path),
@@ -176,6 +179,13 @@ def _limits(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None)
     return readings.bounds(ctx, where, step["control"], meter)
 
 
+def _own(ctx: Context, state: State, where: Scope, step: Plain | None) -> Plain | None:
+    """What stands for the meter of a result: its own uncertainty."""
+    if step is None or not _is(step, "result"):
+        return None
+    return results.meter(step["control"], results.of_result(ctx, state, where, step["control"]))
+
+
 def _points(ctx: Context, where: Scope, step: Plain | None, meter: Plain | None) -> list[Plain]:
     """What a proof asks for, in order, each with its limits."""
     if step is None or not _is(step, "prove"):
@@ -224,7 +234,8 @@ def _judgeable(
         says.append(why)
     elif found:
         why = found["fault"] or found["coarse"]
-        says.append(f"A reading cannot be judged: {why.removesuffix('.')}.")
+        what = "The result" if _is(step, "result") else "A reading"
+        says.append(f"{what} cannot be judged: {why.removesuffix('.')}.")
     why = why or refused
     return {"ok": not why, "why": why, "overdue": out_of_date, "refused": bool(refused), "says": says}
 

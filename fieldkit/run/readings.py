@@ -54,11 +54,11 @@ def with_range(meter: Plain, found: Plain | None) -> Plain:
     """The same instrument on another range. A text that is no number says nothing."""
     if found is None:
         return {**meter, "range": None, **dict.fromkeys(RANGE)}
-    figures = {key: _plain(found[key], key in ("low", "high")) for key in RANGE[1:]}
+    figures = {key: _figure(found[key], key in ("low", "high")) for key in RANGE[1:]}
     return {**meter, "range": found["name"], "unit": found["unit"], **figures}
 
 
-def _plain(text: str | None, signed: bool = True) -> str | None:
+def _figure(text: str | None, signed: bool = True) -> str | None:
     number = None if text is None else values.number(text)
     return text if isinstance(number, float) and (signed or number >= 0) else None
 
@@ -124,7 +124,7 @@ def by_size(ranges: list[Plain]) -> list[Plain]:
     """Ranges from the smallest full scale to the largest; one without an upper end is the largest."""
     ordered: list[tuple[Dec | None, Plain]] = []
     for found in ranges:
-        size = None if _plain(found["high"]) is None else worth.full_scale(with_range({}, found))
+        size = None if _figure(found["high"]) is None else worth.full_scale(with_range({}, found))
         place = len(ordered)
         while place and _smaller(size, ordered[place - 1][0]):
             place -= 1
@@ -136,14 +136,18 @@ def _smaller(a: Dec | None, b: Dec | None) -> bool:
     return a is not None and (b is None or values.compare(a, b) < 0)
 
 
+def plain(text: str) -> str:
+    """A typed number as plain decimal text, with its decimals."""
+    typed = values.typed(text)
+    if not isinstance(typed, Dec):
+        raise ValueError(text)
+    return values.to_text(typed)
+
+
 def si_text(text: str, unit: Plain) -> str:
     """The exact SI value of a typed number, as decimal text."""
-    typed = values.typed(text)
-    if not isinstance(typed, values.Dec):
-        raise ValueError(text)
-    return values.to_text(
-        values.trim(values.add(values.mul(typed, values.dec(unit["factor"])), values.dec(unit["offset"])))
-    )
+    scaled = values.mul(values.dec(plain(text)), values.dec(unit["factor"]))
+    return values.to_text(values.trim(values.add(scaled, values.dec(unit["offset"]))))
 
 
 def result_text(ctx: Context, where: Scope, control: Plain) -> tuple[str, str, str]:

@@ -36,6 +36,7 @@ def add(ctx: Context, state: State, event: dict[str, Any], step: dict[str, Any] 
         "range": "",
         "overdue": False,
         "value": None,
+        "shown": "",
         "words": "",
         "points": [],
         "elapsed": None,

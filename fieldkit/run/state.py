@@ -55,6 +55,7 @@ def new(sheet: Sheet | Plain | Context, run: str = "", chain: str = "", sha256: 
         "sources": {},
         "values": {},
         "series": {},
+        "spread": {},
         "choices": {},
         "facts": [],
         "counters": {},

@@ -63,7 +63,7 @@ def shown(text: str, u: str | None, resolution: str | None) -> str:
     """A value with its U: "41.54 ± 0.83"; the value alone where U is none or not known.
 
     U has two significant digits at most, and none finer than the resolution; the value ends at the same place
-    (JCGM 100, 7.2.6). Halves go away from zero.
+    (JCGM 100, 7.2.6). Halves go to even, as everywhere.
     """
     if u is None or values.dec(u).digits == 0:
         return text
@@ -91,16 +91,16 @@ def _at_least_one(u: str, place: int) -> str:
 
 
 def _nearest(x: Dec, place: int) -> Dec:
-    """The number at a power of ten, halves away from zero, with the decimals that the place has."""
+    """The number at a power of ten, halves to even, with the decimals that the place has."""
     count = _steps(values.magnitude(x), place)
     return _times(-count if x.digits < 0 else count, place)
 
 
 def _steps(size: Dec, place: int) -> int:
-    """How many times a power of ten goes into a number that is not negative, to the nearest."""
-    up, down = 10 ** max(0, -place), 10 ** max(0, place)
-    top, of = size.digits * up, down * 10**size.scale
-    return (2 * top + of) // (2 * of)
+    """How many times a power of ten goes into a number that is not negative, to the nearest, halves to even."""
+    of = 10 ** (max(0, place) + size.scale)
+    whole, rest = divmod(size.digits * 10 ** max(0, -place), of)
+    return whole + (2 * rest > of or (2 * rest == of and whole % 2 == 1))
 
 
 def _times(count: int, place: int) -> Dec:

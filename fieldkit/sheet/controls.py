@@ -145,6 +145,8 @@ class Result(Part):
     #: names of library formulas used, for the reference line
     formulas: tuple[str, ...] = ()
     protects: bool = False
+    #: its uncertainty is worked out of that of its readings; a sheet made before that keeps its meaning
+    spread: bool = False
 
 
 class Wait(Part):

@@ -40,6 +40,7 @@ def lower(written: WorkOut, id_: str, scope: Scope) -> Piece:
         plate=None if written.plate is None else scope.tree(written.plate, unit),
         formulas=tuple(sorted(used)),
         protects=written.protects,
+        spread=True,
     )
     ways = judged.ways(written, id_, scope, base.gate(written, scope, written.sets), base.effects(written))
     text = written.text or _in_titles(" ".join(written.value.text.split()), scope)

@@ -8,6 +8,7 @@ import * as judge from "./judge.js";
 import * as moves from "./moves.js";
 import * as names from "./names.js";
 import * as readings from "./readings.js";
+import * as results from "./results.js";
 import * as rows from "./rows.js";
 
 /** @typedef {import("./names.js").Context} Context */
@@ -138,10 +139,13 @@ function of_verdict(verdict) {
   return { verdict: word, margin, u, near, untypical, overdue, words };
 }
 
-/** @param {State} state @param {string} step @param {string} text @param {string} unit @param {string | null} si @param {number} seq */
-function keep(state, step, text, unit, si, seq) {
-  state.values[step] = { text, unit, si, seq };
-  if (si !== null) state.series[step] = [...(Object.hasOwn(state.series, step) ? state.series[step] : []), si];
+/** @param {State} state @param {string} step @param {string} text @param {string} unit @param {string | null} si @param {number} seq
+ * @param {results.Parts | null} [parts] */
+function keep(state, step, text, unit, si, seq, parts = null) {
+  state.values[step] = { text, unit, si, seq, parts };
+  if (si === null) return;
+  state.series[step] = [...(Object.hasOwn(state.series, step) ? state.series[step] : []), si];
+  state.spread[step] = [...(Object.hasOwn(state.spread, step) ? state.spread[step] : []), parts];
 }
 
 /** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */
@@ -159,7 +163,8 @@ function number(ctx, state, where, event) {
     const { text, unit, instrument } = body;
     return ["fail", { text, unit, verdict: "not judged", instrument, range: range_name(body, meter) }];
   }
-  keep(state, step.id, body.text, control.unit.symbol, readings.si_text(body.text, control.unit), seq);
+  const parts = results.of_reading(control, meter, readings.plain(body.text), seq);
+  keep(state, step.id, body.text, control.unit.symbol, readings.si_text(body.text, control.unit), seq, parts);
   const used = { instrument: body.instrument, range: range_name(body, meter) };
   return [verdict.outcome, { text: body.text, unit: body.unit, limits, ...used, ...of_verdict(verdict) }];
 }
@@ -185,15 +190,18 @@ function result(ctx, state, where, event) {
       old = [{ field: "value", text: body.value, seq: last, reason: "worked out again after the correction" }];
     }
   }
-  const limits = readings.bounds(ctx, where, control, null);
+  const parts = results.of_result(ctx, state, where, control);
+  const own = results.meter(control, parts);
+  const limits = readings.bounds(ctx, where, control, own);
   const unit = control.unit.symbol;
   if (fault) {
     keep(state, step.id, "", unit, null, seq);
     return ["fail", { unit, verdict: "not judged", words: `No value: ${fault}`, value: "", limits, old }];
   }
-  const verdict = judged(control, text, limits, null, control.protects, event);
-  keep(state, step.id, text, unit, si, seq);
-  return [verdict.outcome, { text, unit, value: si, limits, old, ...of_verdict(verdict) }];
+  const verdict = judged(control, text, limits, own, control.protects, event);
+  const shown = results.shown(ctx, where, control, own);
+  keep(state, step.id, text, unit, si, seq, parts);
+  return [verdict.outcome, { text, unit, value: si, shown, limits, old, ...of_verdict(verdict) }];
 }
 
 /** @param {Context} ctx @param {State} state @param {Scope} where @param {any} event @returns {Said} */

@@ -108,7 +108,9 @@ function apply(ctx, state, move, event) {
   state.facts = [...facts].filter((fact) => !effects.clears.includes(fact)).sort();
   for (const one of effects.counts) state.counters[one.counter] = counted(ctx, state, one);
   for (const [place, way] of Object.entries(effects.hands)) hands(state, place, /** @type {string} */ (way), event.by);
-  if (move.manner === "again") state.series[step] = (Object.hasOwn(state.series, step) ? state.series[step] : []).slice(0, -1);
+  if (move.manner === "again") {
+    for (const columns of [state.series, state.spread]) columns[step] = (Object.hasOwn(columns, step) ? columns[step] : []).slice(0, -1);
+  }
   state.done[step] = {
     seq: event.seq,
     ...mark(state),

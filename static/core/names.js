@@ -6,6 +6,7 @@
 
 import * as clock from "./clock.js";
 import { evaluate } from "./evaluate.js";
+import { gradient as gradient_of } from "./slopes.js";
 import { Dec, Fault, add, dec, mul, to_float, typed } from "./values.js";
 
 /** @typedef {Record<string, any>} State */
@@ -218,6 +219,12 @@ export function stands(ctx, state, name) {
 /** The value of a tree: number, boolean, text, or a Fault. @param {Context} ctx @param {Scope} where @param {any} tree @returns {any} */
 export function value(ctx, where, tree) {
   return evaluate(tree, where.names, where.series, ctx.sheet.formulas);
+}
+
+/** How the value of a tree of the sheet changes, in SI, with each name and each place of a column that it uses.
+ * @param {Context} ctx @param {Scope} where @param {any} tree @returns {import("./slopes.js").Slopes | Fault} */
+export function gradient(ctx, where, tree) {
+  return gradient_of(tree, where.names, where.series, ctx.sheet.formulas).of;
 }
 
 /** Why a gate is closed, one reason for every condition that does not hold.

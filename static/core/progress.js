@@ -10,6 +10,7 @@ import * as moves from "./moves.js";
 import * as names from "./names.js";
 import * as ranges from "./ranges.js";
 import * as readings from "./readings.js";
+import * as results from "./results.js";
 import * as rows from "./rows.js";
 
 /** @typedef {import("./names.js").Context} Context */
@@ -30,7 +31,8 @@ export function progress(sheet, state, now, using = null) {
   const ways = offered(ctx, state, where);
   const path = ahead.ahead(ctx, state, where);
   const meter = ranges.in_use(ctx, state, where, step, using);
-  const limits = is(step, "number", "result") ? readings.bounds(ctx, where, step.control, meter) : null;
+  const own = is(step, "result") ? results.meter(step.control, results.of_result(ctx, state, where, step.control)) : null;
+  const limits = is(step, "number", "result") ? readings.bounds(ctx, where, step.control, meter ?? own) : null;
   const asked = points(ctx, where, step, meter);
   return {
     node: state.node,
@@ -45,6 +47,8 @@ export function progress(sheet, state, now, using = null) {
     ...ranges.offers(state, step, meter),
     plate: plate(ctx, where, step, meter),
     value: is(step, "result") ? readings.result_text(ctx, where, step.control)[1] || null : null,
+    spread: own,
+    shown: step ? results.shown(ctx, where, step.control, own) : "",
     level: step && step.level ? rows.level_text(ctx, where, step) : "",
     judgeable: judgeable(ctx, where, step, meter, [limits, ...asked.map((one) => one.limits)], now),
     waits: ahead.waits(ctx, where, state, path),
@@ -190,7 +194,7 @@ function judgeable(ctx, where, step, meter, limits, now) {
   if (why) says.push(why);
   else if (found) {
     why = found.fault || found.coarse;
-    says.push(`A reading cannot be judged: ${why.replace(/\.$/, "")}.`);
+    says.push(`${is(step, "result") ? "The result" : "A reading"} cannot be judged: ${why.replace(/\.$/, "")}.`);
   }
   why ||= refused;
   return { ok: !why, why, overdue: out_of_date, refused: Boolean(refused), says };

@@ -48,12 +48,12 @@ export function flat(one, found) {
 /** The same instrument on another range. A text that is no number says nothing. @param {any} meter @param {any} found @returns {any} */
 export function with_range(meter, found) {
   if (found === null) return { ...meter, range: null, ...Object.fromEntries(RANGE.map((key) => [key, null])) };
-  const figures = RANGE.slice(1).map((key) => [key, plain(found[key], key === "low" || key === "high")]);
+  const figures = RANGE.slice(1).map((key) => [key, figure(found[key], key === "low" || key === "high")]);
   return { ...meter, range: found.name, unit: found.unit, ...Object.fromEntries(figures) };
 }
 
 /** @param {string | null} text @param {boolean} [signed] */
-function plain(text, signed = true) {
+function figure(text, signed = true) {
   const found = text === null ? null : number(text);
   return typeof found === "number" && (signed || found >= 0) ? text : null;
 }
@@ -117,7 +117,7 @@ export function by_size(ranges) {
   /** @type {[Dec | null, any][]} */
   const ordered = [];
   for (const found of ranges) {
-    const size = plain(found.high) === null ? null : worth.full_scale(with_range({}, found));
+    const size = figure(found.high) === null ? null : worth.full_scale(with_range({}, found));
     let place = ordered.length;
     while (place && smaller(size, ordered[place - 1][0])) place -= 1;
     ordered.splice(place, 0, [size, found]);
@@ -130,11 +130,16 @@ function smaller(a, b) {
   return a !== null && (b === null || compare(a, b) < 0);
 }
 
-/** The exact SI value of a typed number, as decimal text. @param {string} text @param {any} unit */
-export function si_text(text, unit) {
+/** A typed number as plain decimal text, with its decimals. @param {string} text @returns {string} */
+export function plain(text) {
   const found = typed(text);
   if (!(found instanceof Dec)) throw new RangeError(text);
-  return to_text(trim(add(mul(found, dec(unit.factor)), dec(unit.offset))));
+  return to_text(found);
+}
+
+/** The exact SI value of a typed number, as decimal text. @param {string} text @param {any} unit */
+export function si_text(text, unit) {
+  return to_text(trim(add(mul(dec(plain(text)), dec(unit.factor)), dec(unit.offset))));
 }
 
 /** A result now: its SI value (12 digits), its text in the unit, the sentence of a fault (then both are empty).

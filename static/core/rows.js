@@ -38,6 +38,7 @@ export function add(ctx, state, event, step = null, said = {}) {
     range: "",
     overdue: false,
     value: null,
+    shown: "",
     words: "",
     points: [],
     elapsed: null,

@@ -43,6 +43,7 @@ export function make(sheet, run = "", chain = "", sha256 = "") {
     sources: {},
     values: {},
     series: {},
+    spread: {},
     choices: {},
     facts: [],
     counters: {},

@@ -78,19 +78,21 @@ function at_least_one(u, place) {
   return to_text(times(count === 0n ? 1n : count, place));
 }
 
-/** The number at a power of ten, halves away from zero, with the decimals that the place has.
+/** The number at a power of ten, halves to even, with the decimals that the place has.
  * @param {Dec} x @param {number} place */
 function nearest(x, place) {
   const count = steps(magnitude(x), place);
   return times(x.digits < 0n ? -count : count, place);
 }
 
-/** How many times a power of ten goes into a number that is not negative, to the nearest.
+/** How many times a power of ten goes into a number that is not negative, to the nearest, halves to even.
  * @param {Dec} size @param {number} place */
 function steps(size, place) {
   const top = size.digits * ten(Math.max(0, -place));
-  const of = ten(Math.max(0, place)) * ten(size.scale);
-  return (2n * top + of) / (2n * of);
+  const of = ten(Math.max(0, place) + size.scale);
+  const whole = top / of;
+  const rest = top % of;
+  return 2n * rest > of || (2n * rest === of && whole % 2n === 1n) ? whole + 1n : whole;
 }
 
 /** @param {bigint} count @param {number} place */

@@ -29,11 +29,11 @@ export function mount(ctx, el) {
   }
   let drawn = "";
   function update() {
-    const { value, limits, plate } = ctx.progress, reasons = ctx.shutReasons(), isNumber = value !== null && /^-?[0-9.]+$/.test(String(value));
-    const key = JSON.stringify([value, limits, plate]);
+    const { value, limits, plate, spread } = ctx.progress, reasons = ctx.shutReasons(), isNumber = value !== null && /^-?[0-9.]+$/.test(String(value));
+    const key = JSON.stringify([value, limits, plate, spread]);
     if (key !== drawn) {
       drawn = key;
-      const found = isNumber ? judged({ text: String(value), unit, limits, resolution: control.resolution, instrument: null, protects: control.protects }) : null;
+      const found = isNumber ? judged({ text: String(value), unit, limits, resolution: control.resolution, instrument: spread ?? null, protects: control.protects }) : null;
       put(part(el.l, "value"), isNumber ? minus(String(value)) : "no value");
       showVerdict(part(el.l, "verdict-box"), found?.verdict ?? null, limits ? limitWords(limits, unit) : "no limits");
       put(part(el.l, "scale"), limits && isNumber ? limitScale({ limits, plate, found, text: String(value), unit }) : null);
