@@ -5,6 +5,7 @@
     compare, add, sub, mul, magnitude, to_text       exact decimal arithmetic, for judging readings as they were typed
     round12(x), fixed(x, 3)          -> text         a float's exact binary value, rounded half to even
     inward("0.588", "0.01", "high")  -> "0.58"       a limit rounded to the safe side
+    beside("41.5432", "0.83", None)  -> "41.54", "0.83"   a value and its uncertainty, as they are shown
     to_si("27", kv), to_shown(x, kv)                 between what is shown and SI
 
 Decided: one separator, `,` or `.`; a digit before and after it (".5" and "5." are refused: a lone point is easily
@@ -256,6 +257,38 @@ def inward(text: str, resolution: str | None, side: str) -> str:
     top, unit, _ = _aligned(limit, step)
     count = top // unit if side == "high" else -(-top // unit)
     return _point(count * step.digits, step.scale)
+
+
+def beside(text: str, u: str, resolution: str | None) -> tuple[str, str]:
+    """A value and its uncertainty as they stand beside each other: "41.54", "0.83".
+
+    The uncertainty has two significant digits at most, and none finer than the resolution; the value ends at the same
+    place (JCGM 100, 7.2.6). Halves go to even. One step of the place stands for less than that: never nothing. Where
+    there is no uncertainty at all ("0"), the value stays as it is.
+    """
+    size = magnitude(dec(u))
+    if size.digits == 0:
+        return text, "0"
+    place = _second_place(size)
+    if resolution is not None:
+        place = max(place, -decimals(resolution))
+    return _at_place(_steps(dec(text), place), place), _at_place(max(1, _steps(size, place)), place)
+
+
+def _second_place(size: Dec) -> int:
+    """The power of ten of the second significant digit, as it is once rounded there: 0.0996 is 0.10."""
+    place = len(str(size.digits)) - size.scale - 2
+    return place + 1 if _steps(size, place) >= 100 else place
+
+
+def _steps(a: Dec, place: int) -> int:
+    """How many times a power of ten goes into a number, to the nearest, ties to even."""
+    return _divide_even(a.digits * 10 ** max(0, -place), 10 ** (max(0, place) + a.scale))
+
+
+def _at_place(count: int, place: int) -> str:
+    """So many of a power of ten, with the decimals that it has."""
+    return _point(count, -place) if place < 0 else _point(count * 10**place, 0)
 
 
 def to_shown(si: float, unit: Scaled) -> str:

@@ -51,6 +51,27 @@ def _doubles(count: int) -> list[float]:
     return found[:count]
 
 
+def test_a_value_beside_its_uncertainty_equals_the_decimal_module_and_the_twin(twins: Any) -> None:
+    """Two digits of the uncertainty by the module's own rounding, and the value quantized to the same place."""
+    rnd = random.Random(20261204)
+    requests = []
+    for _ in range(3000):
+        u, x = (
+            f"{rnd.uniform(0.1, 1) * 10 ** rnd.randint(-9, 7):.12f}",
+            f"{rnd.uniform(-1, 1) * 10 ** rnd.randint(-6, 8):.9f}",
+        )
+        if Decimal(u) == 0:
+            continue
+        want_u = Context(prec=2, rounding=ROUND_HALF_EVEN).create_decimal(Decimal(u))
+        want = Decimal(x).quantize(Decimal(1).scaleb(want_u.adjusted() - 1), ROUND_HALF_EVEN, Context(prec=40))
+        shown = values.beside(x, u, None)
+        assert [Decimal(s) for s in shown] == [want, want_u]
+        places = [len(s.partition(".")[2]) for s in shown]
+        assert places == [max(0, 1 - want_u.adjusted())] * 2
+        requests.append(("beside", [x, u, None]))
+    assert twins.python(requests) == twins.javascript(requests)
+
+
 def test_round12_and_fixed_equal_the_decimal_module_and_the_twin(twins: Any) -> None:
     doubles = _doubles(4000)
     context = Context(prec=12, rounding=ROUND_HALF_EVEN, Emin=-999, Emax=999)

@@ -3,7 +3,8 @@
 The error of a range is taken as rectangular, of half-width a = percent of reading + digits of the resolution +
 percent of full scale (the larger of |low| and |high|): u = a / sqrt(3) (JCGM 100, 4.3.7). People see U = 2 u.
 A result brings its own U, under "u" of what stands for its meter. Twin: static/core/worth.js.
-Not here: limits and verdicts (fieldkit.run.judge), what a result's u is made of (fieldkit.run.readings).
+Not here: how the two are rounded (fieldkit.values.beside), limits and verdicts (fieldkit.run.judge), what a result's u
+is made of (fieldkit.run.results).
 """
 
 from __future__ import annotations
@@ -60,48 +61,12 @@ def standard(reading: str, meter: Plain | None, unit: Plain) -> str | None:
 
 
 def shown(text: str, u: str | None, resolution: str | None) -> str:
-    """A value with its U: "41.54 ± 0.83"; the value alone where U is none or not known.
-
-    U has two significant digits at most, and none finer than the resolution; the value ends at the same place
-    (JCGM 100, 7.2.6). Halves go to even, as everywhere.
-    """
+    """A value with its U, rounded by values.beside: "41.54 ± 0.83"; alone where U is none or not known."""
     if u is None or values.dec(u).digits == 0:
         return text
-    place = _place(u, resolution)
-    return f"{values.to_text(_nearest(values.dec(text), place))} ± {_at_least_one(u, place)}"
+    return " ± ".join(values.beside(text, u, resolution))
 
 
 def rounded(u: str, resolution: str | None) -> str:
     """U alone, as `shown` shows it."""
-    return _at_least_one(u, _place(u, resolution)) if values.dec(u).digits else "0"
-
-
-def _place(u: str, resolution: str | None) -> int:
-    """The power of ten at which U and its value end."""
-    found = values.magnitude(values.dec(u))
-    second = len(str(found.digits)) - found.scale - 2
-    if _steps(found, second) >= 100:  # 0.0996 is 0.10
-        second += 1
-    return second if resolution is None else max(second, -values.decimals(resolution))
-
-
-def _at_least_one(u: str, place: int) -> str:
-    """U at its place; one step of the place where it is less than half of that: never nothing."""
-    return values.to_text(_times(max(1, _steps(values.magnitude(values.dec(u)), place)), place))
-
-
-def _nearest(x: Dec, place: int) -> Dec:
-    """The number at a power of ten, halves to even, with the decimals that the place has."""
-    count = _steps(values.magnitude(x), place)
-    return _times(-count if x.digits < 0 else count, place)
-
-
-def _steps(size: Dec, place: int) -> int:
-    """How many times a power of ten goes into a number that is not negative, to the nearest, halves to even."""
-    of = 10 ** (max(0, place) + size.scale)
-    whole, rest = divmod(size.digits * 10 ** max(0, -place), of)
-    return whole + (2 * rest > of or (2 * rest == of and whole % 2 == 1))
-
-
-def _times(count: int, place: int) -> Dec:
-    return Dec(count, -place) if place < 0 else Dec(count * 10**place, 0)
+    return values.beside("0", u, resolution)[1]

@@ -291,6 +291,35 @@ export function inward(text, resolution, side) {
   return point(count * step.digits, step.scale);
 }
 
+/**
+ * A value and its uncertainty as they stand beside each other: "41.54", "0.83".
+ * @param {string} text @param {string} u @param {string | null} resolution @returns {[string, string]}
+ */
+export function beside(text, u, resolution) {
+  const size = magnitude(dec(u));
+  if (size.digits === 0n) return [text, "0"];
+  let place = second_place(size);
+  if (resolution !== null) place = Math.max(place, -decimals(resolution));
+  const count = steps(size, place);
+  return [at_place(steps(dec(text), place), place), at_place(count > 1n ? count : 1n, place)];
+}
+
+/** The power of ten of the second significant digit, as it is once rounded there: 0.0996 is 0.10. @param {Dec} size */
+function second_place(size) {
+  const place = size.digits.toString().length - size.scale - 2;
+  return steps(size, place) >= 100n ? place + 1 : place;
+}
+
+/** How many times a power of ten goes into a number, to the nearest, ties to even. @param {Dec} a @param {number} place */
+function steps(a, place) {
+  return divide_even(a.digits * ten(Math.max(0, -place)), ten(Math.max(0, place) + a.scale));
+}
+
+/** So many of a power of ten, with the decimals that it has. @param {bigint} count @param {number} place */
+function at_place(count, place) {
+  return place < 0 ? point(count, -place) : point(count * ten(place), 0);
+}
+
 /** An SI value in `unit`, twelve significant digits. @param {number} si @param {Scaled} unit */
 export function to_shown(si, unit) {
   const offset = dec(unit.offset);

@@ -4,7 +4,7 @@
  * @module
  */
 
-import { Dec, add, compare, dec, decimals, magnitude, mul, round12, to_float, to_text } from "./values.js";
+import { Dec, add, beside, compare, dec, magnitude, mul, round12, to_float } from "./values.js";
 
 /** @typedef {Record<string, any>} Meter */
 
@@ -54,53 +54,10 @@ export function standard(reading, meter, unit) {
 /** A value with its U: "41.54 ± 0.83"; the value alone where U is none or not known.
  * @param {string} text @param {string | null} u @param {string | null} resolution @returns {string} */
 export function shown(text, u, resolution) {
-  if (u === null || dec(u).digits === 0n) return text;
-  const place = place_of(u, resolution);
-  return `${to_text(nearest(dec(text), place))} ± ${at_least_one(u, place)}`;
+  return u === null || dec(u).digits === 0n ? text : beside(text, u, resolution).join(" ± ");
 }
 
 /** U alone, as `shown` shows it. @param {string} u @param {string | null} resolution */
 export function rounded(u, resolution) {
-  return dec(u).digits === 0n ? "0" : at_least_one(u, place_of(u, resolution));
-}
-
-/** The power of ten at which U and its value end. @param {string} u @param {string | null} resolution */
-function place_of(u, resolution) {
-  const found = magnitude(dec(u));
-  let second = String(found.digits).length - found.scale - 2;
-  if (steps(found, second) >= 100n) second += 1; // 0.0996 is 0.10
-  return resolution === null ? second : Math.max(second, -decimals(resolution));
-}
-
-/** @param {string} u @param {number} place */
-function at_least_one(u, place) {
-  const count = steps(magnitude(dec(u)), place);
-  return to_text(times(count === 0n ? 1n : count, place));
-}
-
-/** The number at a power of ten, halves to even, with the decimals that the place has.
- * @param {Dec} x @param {number} place */
-function nearest(x, place) {
-  const count = steps(magnitude(x), place);
-  return times(x.digits < 0n ? -count : count, place);
-}
-
-/** How many times a power of ten goes into a number that is not negative, to the nearest, halves to even.
- * @param {Dec} size @param {number} place */
-function steps(size, place) {
-  const top = size.digits * ten(Math.max(0, -place));
-  const of = ten(Math.max(0, place) + size.scale);
-  const whole = top / of;
-  const rest = top % of;
-  return 2n * rest > of || (2n * rest === of && whole % 2n === 1n) ? whole + 1n : whole;
-}
-
-/** @param {bigint} count @param {number} place */
-function times(count, place) {
-  return place < 0 ? new Dec(count, -place) : new Dec(count * ten(place), 0);
-}
-
-/** @param {number} power */
-function ten(power) {
-  return 10n ** BigInt(power);
+  return beside("0", u, resolution)[1];
 }
