@@ -18,7 +18,7 @@ import pytest
 
 from fieldkit import values
 from fieldkit.errors import Refusal
-from fieldkit.formula import elementary
+from fieldkit.formula import elementary, slopes, spread
 from fieldkit.formula.evaluate import evaluate
 from fieldkit.formula.functions import FUNCTIONS
 
@@ -66,6 +66,12 @@ def _python(do: str, args: list[Any]) -> Any:
     given = [_Unit(**a) if isinstance(a, dict) and set(a) == {"factor", "offset"} else a for a in args]
     if do == "evaluate":
         return evaluate(*given)
+    if do == "gradient":
+        found = slopes.prepare(given[0], given[3]).gradient(given[1], given[2])
+        return {"value": found.value, "of": found.of if isinstance(found.of, values.Fault) else list(found.of.items())}
+    if do == "spread":
+        parts = spread.contributions(dict(given[0]), {name: dict(own) for name, own in given[1]})
+        return {"contributions": list(parts.items()), "u": spread.standard(parts)}
     if do == "functions":
         return [[n, str(f.least), "null" if f.most is None else str(f.most), f.on_series] for n, f in FUNCTIONS.items()]
     if do == "faults":

@@ -3,16 +3,17 @@
     prepare(tree, formulas).gradient(names, series)    Gradient(value, of={"beam_voltage": 2.2, "ion[3]": 0.25})
 
 Forward differentiation, exact to rounding: every node gives its value and, for each name below it, the derivative. Of
-`if`, `min` and `max` that of the branch taken counts; of a table the slope of the segment; where two meet in one point
-(a node of a table, |0|), the steeper one, so that an uncertainty made of it is never too small. Where an answer changes
-without bound (the square root at zero), its value stands and `of` is a Fault "domain".
+`if`, `min` and `max` that of the branch taken counts; of a table the slope of the segment; where two meet in one point,
+the steeper one (rates.py says where), so that no uncertainty is lost at a kink. Where an answer changes without bound
+(the square root at zero), its value stands and `of` is a Fault "domain".
 
-The twin is static/core/slopes.js, rule by rule. Not here: what is made of the derivatives (spread.py), what nodes give
-(evaluate.py, nodes.py, functions.py). To add a function: its rule in `_RULES`, a row in tests/vectors/slopes/.
+The twin is static/core/slopes.js, rule by rule. Not here: the rule of each function (rates.py), what is made of the
+derivatives (spread.py), what nodes give (evaluate.py, nodes.py, functions.py).
 """
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
@@ -21,20 +22,15 @@ from types import MappingProxyType
 from typing import Any, Union
 
 from fieldkit import values
-from fieldkit.formula import ast, elementary, evaluate, nodes
-from fieldkit.formula.functions import FUNCTIONS, Stop, Value, wrong_type
+from fieldkit.formula import ast, evaluate, nodes, rates
+from fieldkit.formula.functions import FUNCTIONS, Run, Stop, Value, wrong_type
 from fieldkit.formula.nodes import Part
+from fieldkit.formula.rates import NONE, Look, Slopes, Steep, lost
 from fieldkit.values import Fault
 
-Slopes = dict[str, float]
-#: a node: value and derivatives, from what names mean and (inside a formula) how its arguments change
-Node = Callable[[Any, Any], tuple[Any, Slopes]]
-
 _NOTHING: Mapping[str, Any] = MappingProxyType({})
-_NONE: Slopes = {}
-#: 2 / sqrt(pi)
-_ERF = 1.1283791670955126
 _STEEP = Fault("domain", "The result changes without bound at this value, so it has no uncertainty.")
+_COMPARED = ("lt", "le", "gt", "ge")
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,262 +48,257 @@ class Prepared:
     gradient: Callable[..., Gradient]
 
 
-class _Steep(Exception):
-    """A derivative without bound. Raised and caught within one evaluation."""
+@dataclass(frozen=True, slots=True)
+class Node:
+    """A part that changes with what names mean."""
+
+    look: Look
+    #: it never gives anything but a number
+    number: bool = False
 
 
 def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None = None) -> Prepared:
     """`tree` made ready to be differentiated, with the formulas that it calls. Raises nothing, whatever the tree is."""
     data = tree if isinstance(tree, dict) else ast.to_json(tree)
     plain = evaluate.prepare(data, formulas)
-    node = _node(data, formulas or _NOTHING)
+    first = plain.value()
+    if isinstance(first, Fault) and first.code == "too-deep":
+        # so whatever is walked below ends
+        return Prepared(lambda names=_NOTHING, series=_NOTHING: Gradient(first, first))
+    made = _Making(formulas or _NOTHING)
+    look = made.whole(data).look
+    columns = made.columns or made.plain.columns
 
     def gradient(names: Mapping[str, Any] = _NOTHING, series: Mapping[str, Sequence[float]] = _NOTHING) -> Gradient:
-        value = plain.value(names, series)
-        if type(value) is not float:
-            return Gradient(value, value if isinstance(value, Fault) else {})
         try:
-            return Gradient(value, node({**names, nodes.COLUMNS: series}, None)[1])
-        except (_Steep, Stop):
-            return Gradient(value, _STEEP)
+            value, slopes = look({**names, nodes.COLUMNS: series} if columns else names, None)
+        except (Steep, Stop):
+            value = plain.value(names, series)
+            return Gradient(value, value if isinstance(value, Fault) else _STEEP)
+        return Gradient(value, dict(slopes))
 
     return Prepared(gradient)
 
 
-def _node(tree: dict[str, Any], formulas: Mapping[str, Any]) -> Node:
-    try:
-        return _Making(formulas).node(tree)
-    except Stop as stop:
-        return _stops(stop.fault)
-
-
 class _Making:
-    """Makes one tree ready, and once each the formulas that it calls; `plain` makes what is not differentiated."""
+    """Makes one tree ready, and once each the formulas that it calls; `plain` makes what is not differentiated.
+
+    A part in which nothing changes with what names mean is None, until the part above it needs it made ready.
+    """
 
     def __init__(self, formulas: Mapping[str, Any]) -> None:
         self.formulas = formulas
         self.plain = evaluate.Making(formulas)
         self.bodies: dict[str, Node] = {}
-        self.depth = 0
+        self.columns = False
 
-    def node(self, tree: Any) -> Node:
-        self.depth += 1
-        if self.depth > evaluate.DEEPEST:
-            raise Stop(_STEEP)
-        made = self._node(tree)
-        self.depth -= 1
-        return made
+    def ask(self, tree: Any) -> Part:
+        self.plain.size = 0  # the whole has been counted
+        return self.plain.part(tree, 0)
 
-    def _node(self, tree: Any) -> Node:
-        if not isinstance(tree, dict):
-            return _stops(nodes.bad_tree())
+    def whole(self, tree: Any) -> Node:
+        return self.node(tree) or self.flat(tree)
+
+    def flat(self, tree: Any) -> Node:
+        part = self.ask(tree)
+        run = part.run
+        return Node(lambda e, g: (run(e), NONE), part.number)
+
+    def node(self, tree: Any) -> Node | None:
+        if not isinstance(tree, dict) or "number" in tree or "text" in tree or "flag" in tree:
+            return None
         if "name" in tree:
             return self.named(tree["name"])
         if "table" in tree:
             return self.table(tree["table"])
         if "call" in tree and isinstance(tree.get("of"), list):
-            return self.call(tree["call"], tree["of"], tree)
-        return self.flat(tree)
+            return self.call(tree["call"], tree["of"])
+        return None
 
-    def flat(self, tree: Any) -> Node:
-        """A part that nothing is differentiated in: a constant, a condition."""
-        run = self.plain.part(tree, 0).run
-        return lambda e, g: (run(e), _NONE)
+    def named(self, name: Any) -> Node | None:
+        if not isinstance(name, str):
+            return None
+        if self.plain.arguments is None:
+            return _named(name)
+        place = self.plain.arguments.get(name)
+        return None if place is None else Node(lambda e, g: (e[place], g[place]), True)
 
-    def named(self, name: Any) -> Node:
-        part = self.plain.named(name)
-        run, arguments = part.run, self.plain.arguments
-        if arguments is not None:
-            place = arguments.get(name, -1)
-            return (lambda e, g: (e[place], g[place])) if place >= 0 else _stops(nodes.bad_tree())
+    def parts(self, of: list[Any]) -> list[Node] | None:
+        """All of them, or None where nothing changes in any."""
+        found = [self.node(tree) for tree in of]
+        if not any(found):
+            return None
+        return [node or self.flat(tree) for node, tree in zip(found, of, strict=True)]
 
-        def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-            v = run(e)
-            return v, ({name: 1.0} if type(v) is float else _NONE)
-
-        return look
-
-    def call(self, function: Any, of: list[Any], tree: Any) -> Node:
+    def call(self, function: Any, of: list[Any]) -> Node | None:
         entry = FUNCTIONS.get(function) if isinstance(function, str) else None
         if entry is None:
             return self.library(function, of)
         if len(of) < entry.least or (entry.most is not None and len(of) > entry.most):
-            return _stops(nodes.bad_tree())
-        if function in ("if", "holds"):
-            condition, held = self.plain.part(of[0], 0).run, self.node(of[1] if function == "if" else of[2])
-            other = self.node(of[2]) if function == "if" else _stops(nodes.bad_tree())
-            return lambda e, g: held(e, g) if condition(e) is True else other(e, g)
+            return None
+        if function == "if":
+            return self.choice(of)
+        if function == "holds":
+            return self.held(of)
         if entry.on_series:
             return self.on_column(function, of)
-        if function not in _RULES or entry.make is None:
-            return self.flat(tree)
-        parts = [self.node(p) for p in of]
-        places = [nodes.number(Part(itemgetter(k)), wrong_type(function)) for k in range(len(of))]
-        return _applied(entry.make(*places), _RULES[function], parts)
+        parts = self.parts(of) if function in rates.MAKERS else None
+        return None if parts is None else Node(rates.MAKERS[function](*[_sure(p) for p in parts]), True)
 
-    def on_column(self, function: str, of: list[Any]) -> Node:
-        """A function of a column: its index, where it has one, is not differentiated."""
-        entry = FUNCTIONS[function]
-        name = of[0].get("series") if isinstance(of[0], dict) else None
-        if not isinstance(name, str) or self.plain.arguments is not None or entry.make is None:
-            return _stops(nodes.bad_tree())
-        indexes = [nodes.number(self.plain.part(p, 0), wrong_type(function)) for p in of[1:]]
-        column, rule = nodes.column(name), _COLUMNS[function]
-        run = entry.make(itemgetter(0), *[itemgetter(k + 1) for k in range(len(indexes))])
+    def choice(self, of: list[Any]) -> Node | None:
+        parts = self.parts(of[1:])
+        if parts is None:
+            return None
+        condition, meets = self.ask(of[0]).run, self.meets(of[0])
+        held, other = parts[0].look, parts[1].look
 
         def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-            given = (column(e), *[index(e) for index in indexes])
-            v = run(given)
-            return v, {f"{name}[{k}]": d for k, d in rule(given[0], v, given[1:])}
+            flag = condition(e)
+            if type(flag) is not bool:
+                raise lost()
+            found = held(e, g) if flag else other(e, g)
+            return _met(found, other if flag else held, e, g) if meets is not None and meets(e) else found
 
-        return look
+        return Node(look, parts[0].number and parts[1].number)
 
-    def library(self, function: Any, of: list[Any]) -> Node:
+    def meets(self, condition: Any) -> Run | None:
+        """Whether the two sides of a comparison are equal, so that both branches of an `if` end here."""
+        of = condition.get("of") if isinstance(condition, dict) and condition.get("call") in _COMPARED else None
+        if not isinstance(of, list) or len(of) != 2:
+            return None
+        left, right = [self.ask(tree).run for tree in of]
+        return lambda e: left(e) == right(e)
+
+    def held(self, of: list[Any]) -> Node | None:
+        part = self.node(of[2])
+        if part is None:
+            return None
+        condition, inner = self.ask(of[0]).run, part.look
+
+        def look(e: Any, g: Any) -> tuple[Any, Slopes]:
+            if condition(e) is not True:
+                raise lost()
+            return inner(e, g)
+
+        return Node(look, part.number)
+
+    def on_column(self, function: str, of: list[Any]) -> Node | None:
+        """A function of a column: its index, where it has one, is not differentiated."""
+        entry, rule = FUNCTIONS[function], rates.COLUMNS.get(function)
+        name = of[0].get("series") if isinstance(of[0], dict) else None
+        if not isinstance(name, str) or self.plain.arguments is not None or entry.make is None or rule is None:
+            return None
+        self.columns = True
+        indexes = [nodes.number(self.ask(p), wrong_type(function)) for p in of[1:]]
+        column = nodes.column(name)
+        run = entry.make(*[itemgetter(k) for k in range(len(of))])
+
+        def look(e: Any, g: Any) -> tuple[Any, Slopes]:
+            x, at = column(e), [index(e) for index in indexes]
+            v = run((x, *at))
+            return v, {f"{name}[{k}]": d for k, d in rule(x, v, at)}
+
+        return Node(look, True)
+
+    def library(self, function: Any, of: list[Any]) -> Node | None:
         formula = self.formulas.get(function) if isinstance(function, str) else None
         arguments = nodes.aspect(formula, "arguments")
         if not isinstance(arguments, list | tuple) or len(arguments) != len(of):
-            return _stops(nodes.bad_tree())
-        parts = [self.node(p) for p in of]
-        checks = [nodes.ranged(function, a, Part(itemgetter(k))) for k, a in enumerate(arguments)]
-        body = self.body(function, formula, [nodes.aspect(a, "name") for a in arguments])
-
-        def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-            found = [part(e, g) for part in parts]
-            given = tuple([v for v, _ in found])
-            return body(tuple([check(given) for check in checks]), [slopes for _, slopes in found])
-
-        return look
+            return None
+        names = [nodes.aspect(a, "name") for a in arguments]
+        parts = self.parts(of) if all(isinstance(name, str) for name in names) else None
+        if parts is None:
+            return None
+        body = self.body(function, formula, names)
+        checks = [nodes.ranged(function, a, Part(rates.given)) for a in arguments]
+        return Node(_called(body.look, [p.look for p in parts], checks), body.number)
 
     def body(self, function: str, formula: Any, names: list[str]) -> Node:
         if function not in self.bodies:
             outer, self.plain.arguments = self.plain.arguments, {name: k for k, name in enumerate(names)}
-            self.bodies[function] = self.node(nodes.aspect(formula, "tree"))
+            self.bodies[function] = self.whole(nodes.aspect(formula, "tree"))
             self.plain.arguments = outer
         return self.bodies[function]
 
-    def table(self, table: Any) -> Node:
+    def table(self, table: Any) -> Node | None:
         if not isinstance(table, dict) or not isinstance(table.get("x"), list) or not isinstance(table.get("y"), list):
-            return _stops(nodes.bad_tree())
-        at, run, steps = self.node(table.get("of")), nodes.table(table, itemgetter(0)), _steps(table)
+            return None
+        at = self.node(table.get("of"))
+        if at is None:
+            return None
+        inner, run, slope = _sure(at), nodes.table(table, rates.given), _slopes(table)
 
         def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-            x, slopes = at(e, g)
-            v = run((x,))
-            return v, _chained([(_steepest(steps, x), slopes)]) if slopes else _NONE
+            x, p = inner(e, g)
+            v = run(x)
+            return v, rates.scaled(slope(x), p) if p else NONE
 
-        return look
+        return Node(look, True)
 
 
-def _stops(fault: Fault) -> Node:
+def _named(name: str) -> Node:
+    run, own = nodes.named(name).run, {name: 1.0}
+
     def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-        raise Stop(fault)
+        v = e.get(name)
+        if type(v) is float and v - v == 0.0:
+            return v, own
+        v = run(e)
+        return v, own if type(v) is float else NONE
+
+    return Node(look)
+
+
+def _sure(node: Node) -> Look:
+    """The part as a number."""
+    inner = node.look
+
+    def look(e: Any, g: Any) -> tuple[Any, Slopes]:
+        found = inner(e, g)
+        if type(found[0]) is not float:
+            raise lost()
+        return found
+
+    return inner if node.number else look
+
+
+def _called(body: Look, parts: list[Look], checks: list[Run]) -> Look:
+    """A formula of the library: its arguments held to their ranges, and how each changes."""
+    both = list(zip(parts, checks, strict=True))
+
+    def look(e: Any, g: Any) -> tuple[Any, Slopes]:
+        given, slopes = [], []
+        for part, check in both:
+            v, p = part(e, g)
+            given.append(check(v))
+            slopes.append(p)
+        return body(given, slopes)
 
     return look
 
 
-def _applied(run: Callable[[Any], Any], rule: Callable[..., float], parts: list[Node]) -> Node:
-    """A function over its parts: derivatives only where something below changes."""
-
-    def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-        found = [part(e, g) for part in parts]
-        given = tuple([v for v, _ in found])
-        v = run(given)
-        if not any([slopes for _, slopes in found]):
-            return v, _NONE
-        return v, _chained([(rule(k, given, v), slopes) for k, (_, slopes) in enumerate(found) if slopes])
-
-    return look
+def _met(found: tuple[Any, Slopes], left: Look, e: Any, g: Any) -> tuple[Any, Slopes]:
+    """Where two branches meet: the steeper slopes, if the branch that was not taken gives the same value."""
+    try:
+        v, slopes = left(e, g)
+    except Stop:
+        return found
+    return (v, rates.steeper(found[1], slopes)) if type(v) is type(found[0]) and v == found[0] else found
 
 
-def _chained(outer: list[tuple[float, Slopes]]) -> Slopes:
-    """The chain rule: the sum over the parts, left to right; names in the order in which they are first met."""
-    found: Slopes = {}
-    for factor, slopes in outer:
-        for name, slope in slopes.items():
-            d = factor * slope
-            total = found[name] + d if name in found else d
-            if total - total != 0.0:
-                raise _Steep
-            found[name] = total
-    return found
+def _slopes(table: dict[str, Any]) -> Callable[[float], float]:
+    """The slope of a table at a place in it, the steeper one at a node; a damaged table is never asked."""
+    x, y = [[values.number(t) for t in table[key] if isinstance(t, str)] for key in ("x", "y")]
+    xs, ys = [[v for v in column if isinstance(v, float)] for column in (x, y)]
+    if len(xs) != len(ys) or any(b <= a for a, b in pairwise(xs)):
+        return lambda at: 0.0
+    steps = [(ys[k + 1] - ys[k]) / (xs[k + 1] - xs[k]) for k in range(len(xs) - 1)]
 
+    def slope(at: float) -> float:
+        k = bisect_right(xs, at) - 1
+        found = 0.0
+        for one in steps[k - 1 if k > 0 and at == xs[k] else k : k + 1]:
+            found = one if abs(one) > abs(found) else found
+        return found
 
-def _steps(table: dict[str, Any]) -> list[tuple[float, float, float]]:
-    """The segments of a table: from, to, slope; none where it is damaged, for then it has no value either."""
-    columns = [[values.number(t) for t in table[key] if isinstance(t, str)] for key in ("x", "y")]
-    x, y = [[v for v in column if isinstance(v, float)] for column in columns]
-    if len(x) != len(y) or len(x) != len(table["x"]) or any(b <= a for a, b in pairwise(x)):
-        return []
-    return [(x[k], x[k + 1], (y[k + 1] - y[k]) / (x[k + 1] - x[k])) for k in range(len(x) - 1)]
-
-
-def _steepest(steps: list[tuple[float, float, float]], at: float) -> float:
-    found = 0.0
-    for low, high, slope in steps:
-        if low <= at <= high and abs(slope) > abs(found):
-            found = slope
-    return found
-
-
-def _number(value: float | Fault) -> float:
-    if isinstance(value, Fault):
-        raise _Steep
-    return value
-
-
-def _div(k: int, of: tuple[float, ...], v: float) -> float:
-    return 1.0 / of[1] if k == 0 else -(v / of[1])
-
-
-def _pow(k: int, of: tuple[float, ...], v: float) -> float:
-    base, power = of
-    if k == 0:
-        return power * _number(elementary.pow(base, power - 1.0)) if power != 0.0 else 0.0
-    if base == 0.0:
-        return 0.0
-    return v * _number(elementary.log(base))
-
-
-def _sqrt(k: int, of: tuple[float, ...], v: float) -> float:
-    if v == 0.0:
-        raise _Steep
-    return 0.5 / v
-
-
-#: the derivative of a function by its argument number k, from the arguments and the value
-_RULES: dict[str, Callable[[int, tuple[float, ...], float], float]] = {
-    "add": lambda k, of, v: 1.0,
-    "sub": lambda k, of, v: 1.0 if k == 0 else -1.0,
-    "mul": lambda k, of, v: of[1 - k],
-    "div": _div,
-    "neg": lambda k, of, v: -1.0,
-    "min": lambda k, of, v: 1.0 if of.index(v) == k else 0.0,
-    "max": lambda k, of, v: 1.0 if of.index(v) == k else 0.0,
-    "average": lambda k, of, v: 1.0 / float(len(of)),
-    "abs": lambda k, of, v: -1.0 if of[0] < 0.0 else 1.0,
-    "sqrt": _sqrt,
-    "pow": _pow,
-    "exp": lambda k, of, v: v,
-    "log": lambda k, of, v: 1.0 / of[0],
-    "sin": lambda k, of, v: _number(elementary.cos(of[0])),
-    "cos": lambda k, of, v: -_number(elementary.sin(of[0])),
-    "atan": lambda k, of, v: 1.0 / (1.0 + of[0] * of[0]),
-    "erf": lambda k, of, v: _ERF * _number(elementary.exp(-(of[0] * of[0]))),
-}
-
-
-def _one(k: int) -> list[tuple[int, float]]:
-    return [(k, 1.0)]
-
-
-#: the derivatives of a function of a column by its places, from the column, the value and the index
-_COLUMNS: dict[str, Callable[[tuple[float, ...], float, tuple[float, ...]], list[tuple[int, float]]]] = {
-    "length": lambda x, v, at: [],
-    "at": lambda x, v, at: _one(int(at[0])),
-    "first": lambda x, v, at: _one(0),
-    "last": lambda x, v, at: _one(len(x) - 1),
-    "lowest": lambda x, v, at: _one(x.index(v)),
-    "highest": lambda x, v, at: _one(x.index(v)),
-    "total": lambda x, v, at: [(k, 1.0) for k in range(len(x))],
-    "mean": lambda x, v, at: [(k, 1.0 / float(len(x))) for k in range(len(x))],
-}
+    return slope

@@ -38,9 +38,9 @@ def standard(found: Mapping[str, float]) -> float | Fault:
     # scaled by the largest, so that small and large contributions neither vanish nor overflow
     most = 0.0
     for part in found.values():
+        if part - part != 0.0:
+            return Fault("overflow", "The uncertainty is too large.")
         most = abs(part) if abs(part) > most else most
-    if most - most != 0.0:
-        return Fault("overflow", "The uncertainty is too large.")
     if most == 0.0:
         return 0.0
     total = 0.0

@@ -28,8 +28,10 @@ export function contributions(of, worth) {
 /** The standard uncertainty: square root of the sum of squares, from left to right. @param {Contributions} found @returns {number | Fault} */
 export function standard(found) {
   let most = 0;
-  for (const part of found.values()) most = Math.abs(part) > most ? Math.abs(part) : most;
-  if (most - most !== 0) return new Fault("overflow", "The uncertainty is too large.");
+  for (const part of found.values()) {
+    if (part - part !== 0) return new Fault("overflow", "The uncertainty is too large.");
+    most = Math.abs(part) > most ? Math.abs(part) : most;
+  }
   if (most === 0) return 0;
   let total = 0;
   for (const part of found.values()) total = total + (part / most) * (part / most);

@@ -1,11 +1,13 @@
 /**
- * The library's formulas in JavaScript: one JSON object on stdin, {"formulas": {...}, "asked": {NAME: [[hex, ...], ...]}},
- * each row the arguments of one call as the bits of doubles. Answers {NAME: [hex | [code, sentence], ...]}.
+ * The library's formulas in JavaScript: one JSON object on stdin, {"formulas": {...}, "asked": {NAME: [[hex, ...], ...]},
+ * "slopes": bool}, each row the arguments of one call as the bits of doubles. Answers {NAME: [hex | [code, sentence], ...]};
+ * with slopes, for each row, [that, [[argument, hex], ...] | [code, sentence]].
  */
 
 import { readFileSync } from "node:fs";
 
 import { evaluate } from "../../static/core/evaluate.js";
+import { gradient } from "../../static/core/slopes.js";
 
 const BITS = new DataView(new ArrayBuffer(8));
 
@@ -22,14 +24,16 @@ function written(value) {
   return BITS.getBigUint64(0).toString(16).padStart(16, "0");
 }
 
-const { formulas, asked } = JSON.parse(readFileSync(0, "utf8"));
+const { formulas, asked, slopes } = JSON.parse(readFileSync(0, "utf8"));
 /** @type {Record<string, any[]>} */
 const answers = {};
 for (const [name, rows] of Object.entries(asked)) {
   const tree = { call: name, of: formulas[name].arguments.map((/** @type {any} */ a) => ({ name: a.name })) };
   answers[name] = /** @type {string[][]} */ (rows).map((row) => {
     const names = Object.fromEntries(row.map((hex, k) => [formulas[name].arguments[k].name, double(hex)]));
-    return written(evaluate(tree, names, {}, formulas));
+    if (!slopes) return written(evaluate(tree, names, {}, formulas));
+    const { value, of } = gradient(tree, names, {}, formulas);
+    return [written(value), of instanceof Map ? [...of].map(([argument, d]) => [argument, written(d)]) : written(of)];
   });
 }
 process.stdout.write(JSON.stringify(answers));

@@ -11,6 +11,8 @@ import { createInterface } from "node:readline";
 import * as elementary from "../../static/core/elementary.js";
 import { evaluate } from "../../static/core/evaluate.js";
 import { FUNCTIONS } from "../../static/core/functions.js";
+import { prepare } from "../../static/core/slopes.js";
+import * as spread from "../../static/core/spread.js";
 import * as values from "../../static/core/values.js";
 
 const BITS = new DataView(new ArrayBuffer(8));
@@ -41,11 +43,30 @@ function write(x) {
   return x;
 }
 
+/** Pairs of name and number, in their order. @param {any} x */
+function pairs(x) {
+  return x instanceof Map ? [...x].map(([name, d]) => [name, write(d)]) : write(x);
+}
+
+/** The value and the derivatives of a tree. @param {any} tree @param {any} names @param {any} series @param {any} formulas */
+function gradient(tree, names, series, formulas) {
+  const { value, of } = prepare(tree, formulas).gradient(names, series);
+  return { value: write(value), of: pairs(of) };
+}
+
+/** Contributions and their sum. @param {[string, number][]} of @param {[string, [string, number][]][]} worth */
+function worked(of, worth) {
+  const found = spread.contributions(new Map(of), new Map(worth.map(([name, own]) => [name, new Map(own)])));
+  return { contributions: pairs(found), u: write(spread.standard(found)) };
+}
+
 /** Integers that are counts come as plain JSON numbers, and go back so. @type {Record<string, (...of: any[]) => any>} */
 const CALLS = {
   ...Object.fromEntries(Object.entries(values).filter(([, f]) => typeof f === "function")),
   ...elementary,
   evaluate,
+  gradient,
+  spread: worked,
   functions: () => [...FUNCTIONS].map(([name, f]) => [name, String(f.least), String(f.most), f.column]),
   faults: () => [...values.FAULTS],
 };
