@@ -22,6 +22,8 @@ from fieldkit.values import Fault
 
 Plain = dict[str, Any]
 Parts = list[list[str]]
+#: parts are kept to 12 digits: where they cancel, what is left below this share of them is nothing
+LEAST = 1e-11
 
 
 def of_reading(control: Plain, meter: Plain | None, text: str, seq: int) -> Parts | None:
@@ -53,7 +55,12 @@ def of_result(ctx: Context, state: State, where: Scope, control: Plain) -> Parts
     found = spread.contributions(slopes, known)
     if isinstance(spread.standard(found), Fault):
         return None
-    return [[source, values.round12(part)] for source, part in found.items()]
+    sizes = spread.contributions(_sizes(slopes), {name: _sizes(parts) for name, parts in known.items()})
+    return [[source, values.round12(part)] for source, part in found.items() if abs(part) > LEAST * sizes[source]]
+
+
+def _sizes(of: dict[str, float]) -> dict[str, float]:
+    return {name: abs(number) for name, number in of.items()}
 
 
 def _parts(state: State, name: str) -> Parts | None:

@@ -16,6 +16,9 @@ import * as worth from "./worth.js";
 /** @typedef {import("./names.js").Scope} Scope */
 /** @typedef {[string, string][]} Parts */
 
+/** Parts are kept to 12 digits: where they cancel, what is left below this share of them is nothing. */
+const LEAST = 1e-11;
+
 /** The part of a reading, plain decimal text in the step's unit. A count without a meter is exact.
  * @param {any} control @param {any} meter @param {string} text @param {number} seq @returns {Parts | null} */
 export function of_reading(control, meter, text, seq) {
@@ -41,7 +44,14 @@ export function of_result(ctx, state, where, control) {
   }
   const found = spread.contributions(slopes, known);
   if (spread.standard(found) instanceof Fault) return null;
-  return [...found].map(([source, part]) => [source, round12(part)]);
+  const sizes = spread.contributions(sizes_of(slopes), new Map([...known].map(([name, parts]) => [name, sizes_of(parts)])));
+  const counting = [...found].filter(([source, part]) => Math.abs(part) > LEAST * (sizes.get(source) ?? 0));
+  return counting.map(([source, part]) => [source, round12(part)]);
+}
+
+/** @param {Map<string, number>} of @returns {Map<string, number>} */
+function sizes_of(of) {
+  return new Map([...of].map(([name, number]) => [name, Math.abs(number)]));
 }
 
 /** The parts of what a name means; "ion[3]" is the fourth reading of a column. @param {State} state @param {string} name @returns {Parts | null} */

@@ -50,12 +50,13 @@ def test_a_script_gives_what_is_frozen(path: Path) -> None:
 @pytest.mark.parametrize("path", PATHS, ids=lambda p: p.stem)
 def test_the_tablet_gives_what_is_frozen(path: Path, twin: Twin) -> None:
     vector = load(path)
-    twin.keep("tiny", drive.tiny().model_dump(mode="json"))
+    sheet = vector.get("sheet", "tiny")
+    twin.keep(sheet, drive.frozen(sheet).model_dump(mode="json"))
     d, steps, _ = run_vectors.play(vector)
-    played = twin.ask(play="tiny", run=d.first["run"], chain=d.first["chain"], sha256=drive.SHEET_SHA, steps=steps)
+    played = twin.ask(play=sheet, run=d.first["run"], chain=d.first["chain"], sha256=drive.SHEET_SHA, steps=steps)
     expected(vector, played["said"])
     assert played["state"] == vector["state"]
-    assert twin.ask(fold="tiny", texts=vector["texts"]) == vector["state"]
+    assert twin.ask(fold=sheet, texts=vector["texts"]) == vector["state"]
 
 
 def test_every_vector_says_what_it_shows() -> None:

@@ -17,13 +17,15 @@ from run_twin import Twin, digest
 
 from fieldkit.run import state
 
-SHEETS = {"tiny": (drive.tiny, 30, 70), "warm-up": (lambda: walking.real("warm-up"), 10, 110), "hv-bring-up": (lambda: walking.real("hv-bring-up"), 6, 200)}  # fmt: skip
+SHEETS = {"tiny": (drive.tiny, 30, 70), "metered": (lambda: drive.frozen("metered"), 16, 60), "warm-up": (lambda: walking.real("warm-up"), 10, 110), "hv-bring-up": (lambda: walking.real("hv-bring-up"), 6, 200)}  # fmt: skip
 
 
 def begin(name: str, sheet: Any) -> tuple[drive.Driver, list[dict[str, Any]]]:
     d = drive.Driver(sheet)
     if name == "tiny":
         return d, [drive.tiny_start(), {"do": "states-declared", **drive.DECLARED}]
+    if name == "metered":
+        return d, [drive.metered_start(), {"do": "states-declared", **drive.HEATER_ON}]
     return d, [walking.real_start(sheet), walking.declared(sheet)]
 
 

@@ -351,6 +351,7 @@ def test_a_key_that_only_a_later_version_knows_is_passed_over_and_noted(run, ask
         ("locks", 0, "left_on", "no"),
         ("givens", 0, "value", "6.31"),
         ("signatures", 0, "person", "orme"),
+        ("readings", 0, "range", "2 V"),
     ],
 )
 def test_claiming_another_version_excuses_no_changed_fact(run, station, section, place, field, value):
@@ -359,6 +360,14 @@ def test_claiming_another_version_excuses_no_changed_fact(run, station, section,
 
     answer = _one(_by_another(run, change), station, "record")
     assert answer.state == "fails" and f"{section}[{place}].{field}" in " ".join(answer.says), answer.says
+
+
+def test_a_record_from_before_there_were_ranges_holds(run, ask):
+    def earlier(record):
+        for reading in record["readings"]:
+            del reading["range"], reading["shown"]
+
+    assert ask(_by_another(run, earlier)).holds
 
 
 def test_a_fact_left_out_or_a_reading_dropped_is_no_difference_of_words(run, station):

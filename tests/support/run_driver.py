@@ -16,7 +16,12 @@ SHEET_SHA = "5e" * 32
 
 
 def tiny() -> Sheet:
-    return Sheet.model_validate_json((VECTORS / "sheets" / "tiny.json").read_text())
+    return frozen("tiny")
+
+
+def frozen(name: str) -> Sheet:
+    """A frozen sheet; metered.json is what metered.yaml beside it once compiled to."""
+    return Sheet.model_validate_json((VECTORS / "sheets" / f"{name}.json").read_text())
 
 
 def instrument(
@@ -72,6 +77,35 @@ def tiny_start() -> dict[str, Any]:
         ],
         "tablet": {"device": "d1", "name": "Tablet 1", "installed": True, "persisted": True, "probe": "ok"},
         "kit": "c1" * 32,
+    }  # fmt: skip
+
+
+def ranged(name: str, reads: str, *ranges: tuple[str, ...], **more: Any) -> dict[str, Any]:
+    """An instrument with ranges: (name, unit, low, high, resolution, percent, digits, percent of range)."""
+    keys = ("name", "unit", "low", "high", "resolution", "percent", "digits", "percent_of_range")
+    return {
+        "id": name, "reads": reads, "certificate": "", "calibrated_on": "2026-01-31", "interval_months": 12, "calibrated_to": None,
+        "temperature": {"low": "18", "high": "28"}, "ranges": [dict(zip(keys, r, strict=False)) for r in ranges], **more,
+    }  # fmt: skip
+
+
+def metered_start() -> dict[str, Any]:
+    """The start of a run on the metered sheet: many ranges, one of percent of range, two overdue, one of the earlier form."""
+    volts = [("2 V", "V", "-2", "2", "0.001", "0.1", "2"), ("200 V", "V", "-200", "200", "0.1", "0.1", "2"), ("20 V", "V", "-20", "20", "0.01", "0.1", "2")]  # fmt: skip
+    return tiny_start() | {
+        "procedure": "metered",
+        "givens": {"leak_limit": {"texts": ["1"], "unit": "mW/cm2", "source": "station's own"}},
+        "meters": {"coolant_pressure": "PR-2", "coolant_inlet": "TI-2", "ion_amps": "IP-2"},
+        "instruments": [
+            ranged("HM-3", "hand multimeter", *volts, ("10 A", "A", "-10", "10", "0.01", "0.5", "2")),
+            ranged("RM-1", "leakage", ("20 mW/cm2", "mW/cm2", "0.01", "20", "0.01", "40", "0"), calibrated_on="2025-06-30"),
+            ranged("RM-2", "leakage", ("20 mW/cm2", "mW/cm2", "0.01", "20", "0.01", "40", "0")),
+            ranged("PR-2", "pressure", ("10 bar", "bar", "0", "10", "0.1", "0", "0", "1.6"), calibrated_on="2026-01-31", interval_months=6),
+            ranged("IP-2", "ion current", ("500 uA", "uA", "0.1", "500", "0.1", "3", "1"), calibrated_on=None, calibrated_to="2026-07-30"),
+            instrument("TI-2", "degC", "0.1", "0", "3", "0", "100"),
+        ],
+        "places": {},
+        "earlier": [],
     }  # fmt: skip
 
 
@@ -150,6 +184,9 @@ class Driver:
 
 
 DECLARED = {"states": {"beam": "off", "heater": "off", "coolant": "on"}, "ages": {"coolant": "600"}, "board_seen": True}
+
+
+HEATER_ON = {"states": {"heater": "on"}, "ages": {}, "board_seen": True}
 
 
 def started() -> Driver:

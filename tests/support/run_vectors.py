@@ -9,7 +9,7 @@ A moment is one of
     {"record": [kind, body, by]}          an event that decide would not make
     {"sign": [person, meaning]}
 
-`state` is the whole state at the end, `texts` the events. `python tests/support/run_vectors.py` plays every script
+`sheet` names another frozen sheet than tiny. `state` is the whole state at the end, `texts` the events. `python tests/support/run_vectors.py` plays every script
 again and writes what comes of it: only for a change that was meant, and every difference is to be read.
 """
 
@@ -26,7 +26,7 @@ FOLDER = Path(__file__).resolve().parent.parent / "vectors" / "runs"
 def driver(vector: dict[str, Any]) -> Any:
     import run_driver
 
-    return run_driver.Driver(run_driver.tiny())
+    return run_driver.Driver(run_driver.frozen(vector.get("sheet", "tiny")))
 
 
 def play(vector: dict[str, Any]) -> tuple[Any, list[dict[str, Any]], list[Any]]:

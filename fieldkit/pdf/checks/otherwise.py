@@ -45,6 +45,8 @@ FACTS: dict[str, tuple[str, ...]] = {
     "instruments": ("id", "calibrated_to", "certificate", "resolution", "used", "overdue"),
     "givens": ("name", "value", "unit", "source"),
 }  # fmt: skip
+#: facts of a later record/1, and what they are in a record that was built without them
+LATER = {"range": "", "shown": ""}
 #: characters of a value that are shown where two records part
 LONGEST = 60
 #: characters shown before the place where two texts part
@@ -68,7 +70,7 @@ def _picked(part: Any, fields: tuple[str, ...]) -> Any:
 
 def _field(part: Any, path: list[str]) -> Any:
     for key in path:
-        part = part.get(key) if isinstance(part, dict) else None
+        part = part.get(key, LATER.get(key)) if isinstance(part, dict) else None
     return part
 
 

@@ -58,8 +58,7 @@ def record(subject: Subject) -> str:
     made = made_with(subject)
     if made.get("code") == build.code():
         raise Wrong(f"{inside.RECORD} is not what the sheet and the events give: {parting(one, other) or 'its form'}.")
-    # what the record was built without has its default now
-    wrong = parting(facts(json.loads(model.to_bytes(found))), facts(other))
+    wrong = parting(facts(one), facts(other))
     if wrong:
         raise Wrong(f"{inside.RECORD} is not what the sheet and the events give: {wrong}.")
     raise Note(_built_otherwise(found, str(made.get("fieldkit") or "")), *wording(one, other))
