@@ -39,7 +39,7 @@ def bounds(
     """The limits in the unit, as decimal texts; None where nothing bounds the reading.
 
     `value` gives a tree's SI number or a Fault. `fault` says why a limit has no value; `coarse` why this meter
-    cannot decide.
+    cannot decide; `reach` why nothing that it can show on this range keeps the limits.
     """
     if limits is None and typical is None:
         return None
@@ -62,6 +62,7 @@ def bounds(
         "guarded": given.get("guarded", False),
         "fault": "",
         "coarse": "",
+        "reach": "",
     }
     for key in ("low", "high", "caution_low", "caution_high"):
         text, fault = _shown(given.get(key), unit, value)
@@ -76,8 +77,7 @@ def bounds(
         out["typical_high"] = _shown(typical.get("high"), unit, value)[0]
     if out["low"] is not None and out["high"] is not None and _less(out["high"], out["low"]):
         out["coarse"] = "no reading of this meter lies between the limits"
-    if not out["fault"] and not out["coarse"]:
-        out["coarse"] = _beyond_range(out, unit, instrument)
+    out["reach"] = _beyond_range(out, unit, instrument)
     if out["guarded"] and not out["fault"] and not out["coarse"]:
         _guard(out, unit, instrument)
     return out
@@ -193,7 +193,7 @@ def judge(
     inside = verdict in ("pass", "conditional pass")
     out = {
         "verdict": verdict,
-        "outcome": outcome(verdict, protects, bool(bounded.get("fault"))),
+        "outcome": outcome(verdict, protects, bool(bounded.get("fault")) or reason == AT_ITS_END),
         "reason": reason,
         "margin": None if margin is None else values.to_text(margin),
         "nearest": side,
@@ -338,6 +338,8 @@ def _own(u: str | None, resolution: str | None, tail: str) -> str:
 
 def _remarks(out: dict[str, Any], limits: dict[str, Any], tail: str, instrument: dict[str, Any] | None) -> str:
     said = ""
+    if limits.get("reach"):
+        said += f" {limits['reach'][0].upper()}{limits['reach'][1:]}."
     if out["near"]:
         said += " It lies in the caution band."
     if out["untypical"]:

@@ -229,13 +229,17 @@ def _judgeable(
         why = f"This run carries no instrument for {asked['role'] or asked['instrument']}."
     elif _is(step, "result"):
         why = readings.result_text(ctx, where, step["control"])[2]
-    found = next((one for one in limits if one and (one["fault"] or one["coarse"])), None)
+    known = [one for one in limits if one]
+    found = next((one["fault"] or one["coarse"] for one in known if one["fault"] or one["coarse"]), "")
+    short = next((one["reach"] for one in known if one["reach"]), "")
     if why:
         says.append(why)
     elif found:
-        why = found["fault"] or found["coarse"]
         what = "The result" if _is(step, "result") else "A reading"
-        says.append(f"{what} cannot be judged: {why.removesuffix('.')}.")
+        says.append(f"{what} cannot be judged: {found.removesuffix('.')}.")
+    elif short:
+        says.append(f"No reading on this range can pass: {short}.")
+    why = why or found or short
     why = why or refused
     return {"ok": not why, "why": why, "overdue": out_of_date, "refused": bool(refused), "says": says}
 

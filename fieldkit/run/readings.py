@@ -99,9 +99,10 @@ def bounds(
     Where the range in use is too coarse for them, or ends before them, it says which one to use instead.
     """
     found = _bounds(ctx, where, control, meter, limits)
-    if found is None or not found["coarse"] or meter is None or not meter.get("range"):
+    if found is None or meter is None or not meter.get("range") or not (found["coarse"] or found["reach"]):
         return found
-    return {**found, "coarse": f"{found['coarse']}: use {_instead(ctx, where, control, meter, limits)}"}
+    use = f": use {_instead(ctx, where, control, meter, limits)}"
+    return {**found, **{key: found[key] + use for key in ("coarse", "reach") if found[key]}}
 
 
 def _bounds(ctx: Context, where: Scope, control: Plain, meter: Plain | None, limits: Plain | None) -> Plain | None:
@@ -115,7 +116,7 @@ def _instead(ctx: Context, where: Scope, control: Plain, meter: Plain, limits: P
     """The smallest range of the same instrument that the limits can be judged on."""
     for other in by_size([found for found in meter["ranges"] if found["unit"] == control["unit"]["symbol"]]):
         judged = _bounds(ctx, where, control, with_range(meter, other), limits)
-        if judged is not None and not judged["coarse"]:
+        if judged is not None and not judged["coarse"] and not judged["reach"]:
             return f"the {other['name']} range"
     return "another meter"
 

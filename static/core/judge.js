@@ -16,6 +16,9 @@ import * as worth from "./worth.js";
 
 export const VERDICTS = Object.freeze(["pass", "conditional pass", "not judged", "conditional fail", "fail"]);
 
+/** Why a reading is not judged that stands at the end of its range, short of a limit. */
+export const AT_ITS_END = "the meter stands at the end of this range, and the limit lies beyond it";
+
 /** @type {Record<string, string>} */
 const NAMES = { low: "lower", high: "upper" };
 const SIDES = Object.freeze(["low", "high"]);
@@ -47,6 +50,7 @@ export function bounds(limits, typical, unit, resolution, instrument, value) {
     guarded: given.guarded ?? false,
     fault: "",
     coarse: "",
+    reach: "",
   };
   for (const key of ["low", "high", "caution_low", "caution_high"]) {
     const side = key.endsWith("low") ? "low" : "high";
@@ -65,7 +69,7 @@ export function bounds(limits, typical, unit, resolution, instrument, value) {
   if (out.low !== null && out.high !== null && less(out.high, out.low)) {
     out.coarse = "no reading of this meter lies between the limits";
   }
-  if (!out.fault && !out.coarse) out.coarse = beyond_range(out, unit, instrument);
+  out.reach = beyond_range(out, unit, instrument);
   if (out.guarded && !out.fault && !out.coarse) guard(out, unit, instrument);
   return out;
 }
@@ -165,7 +169,7 @@ export function judge(text, unit, limits, resolution, instrument, protects, day 
   const inside = verdict === "pass" || verdict === "conditional pass";
   const out = {
     verdict,
-    outcome: outcome(verdict, protects, Boolean(bounded.fault)),
+    outcome: outcome(verdict, protects, Boolean(bounded.fault) || reason === AT_ITS_END),
     reason,
     margin: margin === null ? null : to_text(margin),
     nearest: side,
@@ -196,9 +200,7 @@ function verdict_of(x, limits, meter) {
   if (limits === null || (limits.low === null && limits.high === null && !limits.fault)) return ["not judged", "no limit is set"];
   if (limits.fault) return ["not judged", limits.fault];
   if (limits.coarse) return ["not judged", limits.coarse];
-  if (at_its_end(x, limits, meter)) {
-    return ["not judged", "the meter stands at the end of this range, and the limit lies beyond it"];
-  }
+  if (at_its_end(x, limits, meter)) return ["not judged", AT_ITS_END];
   for (const side of SIDES) {
     if (limits[side] === null) continue;
     const limit = dec(limits[side]);
@@ -291,6 +293,7 @@ function own_words(u, resolution, tail) {
 /** @param {any} out @param {Bounds} limits @param {string} tail @param {Instrument | null} instrument */
 function remarks(out, limits, tail, instrument) {
   let said = "";
+  if (limits.reach) said += ` ${limits.reach[0].toUpperCase()}${limits.reach.slice(1)}.`;
   if (out.near) said += " It lies in the caution band.";
   if (out.untypical) {
     const { typical_low: low, typical_high: high } = limits;

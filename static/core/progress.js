@@ -190,13 +190,13 @@ function judgeable(ctx, where, step, meter, limits, now) {
   let why = "";
   if (asked && meter === null) why = `This run carries no instrument for ${asked.role || asked.instrument}.`;
   else if (is(step, "result")) why = readings.result_text(ctx, where, step.control)[2];
-  const found = limits.find((one) => one && (one.fault || one.coarse));
+  const known = limits.filter((one) => one);
+  const found = known.map((one) => one.fault || one.coarse).find((said) => said) ?? "";
+  const short = known.map((one) => one.reach).find((said) => said) ?? "";
   if (why) says.push(why);
-  else if (found) {
-    why = found.fault || found.coarse;
-    says.push(`${is(step, "result") ? "The result" : "A reading"} cannot be judged: ${why.replace(/\.$/, "")}.`);
-  }
-  why ||= refused;
+  else if (found) says.push(`${is(step, "result") ? "The result" : "A reading"} cannot be judged: ${found.replace(/\.$/, "")}.`);
+  else if (short) says.push(`No reading on this range can pass: ${short}.`);
+  why ||= found || short || refused;
   return { ok: !why, why, overdue: out_of_date, refused: Boolean(refused), says };
 }
 

@@ -88,8 +88,9 @@ export function resolution_of(control, meter) {
  * @param {Context} ctx @param {Scope} where @param {any} control @param {any} meter @param {any} [limits] */
 export function bounds(ctx, where, control, meter, limits = null) {
   const found = bounds_on(ctx, where, control, meter, limits);
-  if (found === null || !found.coarse || meter === null || !meter.range) return found;
-  return { ...found, coarse: `${found.coarse}: use ${instead(ctx, where, control, meter, limits)}` };
+  if (found === null || meter === null || !meter.range || !(found.coarse || found.reach)) return found;
+  const use = `: use ${instead(ctx, where, control, meter, limits)}`;
+  return { ...found, coarse: found.coarse && found.coarse + use, reach: found.reach && found.reach + use };
 }
 
 /** @param {Context} ctx @param {Scope} where @param {any} control @param {any} meter @param {any} limits */
@@ -106,7 +107,7 @@ function instead(ctx, where, control, meter, limits) {
   const own = meter.ranges.filter((/** @type {any} */ found) => found.unit === control.unit.symbol);
   for (const other of by_size(own)) {
     const judged = bounds_on(ctx, where, control, with_range(meter, other), limits);
-    if (judged !== null && !judged.coarse) return `the ${other.name} range`;
+    if (judged !== null && !judged.coarse && !judged.reach) return `the ${other.name} range`;
   }
   return "another meter";
 }

@@ -14,7 +14,9 @@ from run_twin import Twin
 from fieldkit.formula.evaluate import evaluate
 from fieldkit.run import judge, worth
 
-CASES: list[dict[str, Any]] = json.loads((drive.VECTORS / "judge" / "judge.json").read_text())
+CASES: list[dict[str, Any]] = [
+    case for path in sorted((drive.VECTORS / "judge").glob("*.json")) for case in json.loads(path.read_text())
+]
 
 
 def here(case: dict[str, Any]) -> dict[str, Any]:
