@@ -67,8 +67,8 @@ def fit(columns: Columns, degree: int, names: str = "settings") -> Fit | Refused
     ends = spread(names, x)
     if isinstance(ends, Refused):
         return ends
-    weights, u_reading = _weights(columns.u, n)
-    centre = _total(x) / n
+    weights, u_reading = weigh(columns.u, n)
+    centre = total(x) / n
     reach = max_size([v - centre for v in x])
     basis = _basis([(v - centre) / reach for v in x], weights, degree, NO_LENGTH * n)
     if basis is None:
@@ -76,12 +76,12 @@ def fit(columns: Columns, degree: int, names: str = "settings") -> Fit | Refused
     left = list(columns.y)
     found: list[float] = []
     for values, length, _ in basis:
-        size = _total([w * r * v for w, r, v in zip(weights, left, values, strict=True)]) / length
+        size = total([w * r * v for w, r, v in zip(weights, left, values, strict=True)]) / length
         left = [r - size * v for r, v in zip(left, values, strict=True)]
         found.append(size)
     freedom = n - degree - 1
     floor = ROUNDING * max_size(columns.y)
-    s_squared = _total([w * r * r for w, r in zip(weights, left, strict=True)]) / freedom
+    s_squared = total([w * r * r for w, r in zip(weights, left, strict=True)]) / freedom
     s_squared = s_squared if s_squared > floor * floor else 0.0
     variance = s_squared
     if u_reading is not None and u_reading * u_reading > variance:
@@ -101,7 +101,7 @@ def numbers(found: Fit | None, n: int) -> dict[str, Any]:
         return {"n": n, "freedom": None, "few": None} | dict.fromkeys(keys)
     moved = [(variance, _moved(part, found.centre)) for variance, part in found.parts]
     places = range(len(moved))
-    covariance = [[_total([v * p[i] * p[j] for v, p in moved]) for j in places] for i in places]
+    covariance = [[total([v * p[i] * p[j] for v, p in moved]) for j in places] for i in places]
     return {
         "n": n,
         "freedom": found.freedom,
@@ -122,7 +122,7 @@ def max_size(x: list[float]) -> float:
     return found
 
 
-def _total(x: list[float]) -> float:
+def total(x: list[float]) -> float:
     """The sum from left to right; the built-in one rounds otherwise."""
     found = 0.0
     for value in x:
@@ -130,11 +130,11 @@ def _total(x: list[float]) -> float:
     return found
 
 
-def _weights(u: list[float] | None, n: int) -> tuple[list[float], float | None]:
+def weigh(u: list[float] | None, n: int) -> tuple[list[float], float | None]:
     """Weights of average 1, and the uncertainty of a reading of weight 1."""
     if u is None:
         return [1.0] * n, None
-    shared = n / _total([1.0 / (v * v) for v in u])
+    shared = n / total([1.0 / (v * v) for v in u])
     return [shared / (v * v) for v in u], math.sqrt(shared)
 
 
@@ -144,20 +144,20 @@ Basis = list[tuple[list[float], float, list[float]]]
 def _basis(t: list[float], weights: list[float], degree: int, least: float) -> Basis | None:
     """Orthogonal polynomials at `t`: values, squared length, coefficients in t padded to the degree."""
     ones = [1.0] * len(t)
-    length = _total(weights)
-    first = _total([w * v for w, v in zip(weights, t, strict=True)]) / length
+    length = total(weights)
+    first = total([w * v for w, v in zip(weights, t, strict=True)]) / length
     line = [v - first for v in t]
-    squared = _total([w * v * v for w, v in zip(weights, line, strict=True)])
+    squared = total([w * v * v for w, v in zip(weights, line, strict=True)])
     if squared <= least:
         return None
     rest = [0.0] * (degree - 1)
     basis = [(ones, length, [1.0, 0.0, *rest]), (line, squared, [-first, 1.0, *rest])]
     if degree == 1:
         return basis
-    second = _total([w * v * v * q for w, v, q in zip(weights, line, t, strict=True)]) / squared
+    second = total([w * v * v * q for w, v, q in zip(weights, line, t, strict=True)]) / squared
     back = squared / length
     bow = [(q - second) * v - back for v, q in zip(line, t, strict=True)]
-    bowed = _total([w * v * v for w, v in zip(weights, bow, strict=True)])
+    bowed = total([w * v * v for w, v in zip(weights, bow, strict=True)])
     if bowed <= least:
         return None
     return [*basis, (bow, bowed, [first * second - back, -(first + second), 1.0])]

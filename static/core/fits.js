@@ -9,6 +9,7 @@
 
 import { bounded_secant } from "./fits/bounded_secant.js";
 import { bursts } from "./fits/bursts.js";
+import { curve } from "./fits/curve.js";
 import { exponential_time_to } from "./fits/exponential_time_to.js";
 import { knee_crossing } from "./fits/knee_crossing.js";
 import { line } from "./fits/line.js";
@@ -26,6 +27,7 @@ export const FITS = {
   knee_crossing,
   bursts,
   bounded_secant,
+  curve,
 };
 
-export { bounded_secant, bursts, exponential_time_to, knee_crossing, line, parabola_vertex, power_time_to, time_to };
+export { bounded_secant, bursts, curve, exponential_time_to, knee_crossing, line, parabola_vertex, power_time_to, time_to };

@@ -109,14 +109,14 @@ export function max_size(x) {
 }
 
 /** The sum from left to right. @param {number[]} x */
-function total(x) {
+export function total(x) {
   let found = 0;
   for (const value of x) found += value;
   return found;
 }
 
 /** Weights of average 1, and the uncertainty of a reading of weight 1. @param {number[] | null} u @param {number} n @returns {[number[], number | null]} */
-function weigh(u, n) {
+export function weigh(u, n) {
   if (u === null) return [Array(n).fill(1), null];
   const shared = n / total(u.map((v) => 1 / (v * v)));
   return [u.map((v) => shared / (v * v)), Math.sqrt(shared)];
