@@ -2,8 +2,9 @@
 
 Model (decimal strings in the unit shown; all but `unit` may be missing or None):
     value, u, unit, low, high, low_name, high_name, caution_low, caution_high (edges of the caution strips),
-    accept_low, accept_high (edges of the guard bands), plate, plate_name, olds [{"value", "name"}] (as found, last
-    run, earlier tries), margin (as judged, else computed), verdict, why, says, width (px), ink
+    accept_low, accept_high (acceptance limits, where the guard bands end), plate, plate_name,
+    olds [{"value", "name"}] (as found, last run, earlier tries), margin (as judged, else computed), verdict, why,
+    says, width (px), ink
 Twin: static/core/drawing/scale.js. Geometry is that of the look studies.
 """
 
@@ -69,13 +70,16 @@ def _outside(ink: str, x0: int, x1: int, hit: bool) -> str:
 
 
 def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, caution: int | None) -> str:
-    """Guard band cross hatched beside the post, caution strip beyond it; yellow under both where the reading is."""
+    """Guard band cross hatched from the post to the acceptance limit, caution strip beyond; yellow where the reading is.
+
+    A reading at the inner edge is clear of the band: the acceptance limit itself passes.
+    """
     low = limit == s.low
     edges = [e for e in (guard, caution) if e is not None]
     if not edges:
         return ""
     inner = max(edges) if low else min(edges)
-    hot = s.value is not None and min(limit, inner) <= s.value <= max(limit, inner)
+    hot = s.value is not None and in_band(s.value, limit, inner, low)
     x0, x1 = sorted((_x(s, width, limit), _x(s, width, inner)))
     role = "on-caution" if hot else "ink-2"
     out = rect(ink, "caution", x0, _TOP, x1 - x0, _HIGH) if hot else ""
@@ -85,7 +89,14 @@ def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, cauti
         g0, g1 = sorted((_x(s, width, limit), _x(s, width, guard)))
         if g1 > g0:
             out += path(ink, hatch(g0, g1, _TOP, _FOOT, 90, True), "", role, "1.6")
+            edge = g1 if low else g0
+            out += path(ink, f"M{px(edge)} {px(_TOP)}V{px(_FOOT)}", "", role, "2")
     return out
+
+
+def in_band(value: int, limit: int, inner: int, low: bool) -> bool:
+    """Whether a reading lies in the band beside a limit, whose inner edge does not belong to it."""
+    return limit <= value < inner if low else inner < value <= limit
 
 
 def _axis(ink: str, s: Spread, width: int, model: dict[str, Any]) -> str:

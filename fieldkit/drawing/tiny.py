@@ -11,6 +11,7 @@ from typing import Any
 from fieldkit.drawing import says
 from fieldkit.drawing.number import px, ratio
 from fieldkit.drawing.paint import hatch, path, rect, svg
+from fieldkit.drawing.scale import in_band
 from fieldkit.drawing.spread import Spread, spread
 
 _TOP = 70
@@ -40,12 +41,14 @@ def tiny(model: dict[str, Any]) -> str:
         if limit is None or not edges:
             continue
         inner = max(edges) if limit == s.low else min(edges)
-        hot = s.value is not None and min(limit, inner) <= s.value <= max(limit, inner)
+        hot = s.value is not None and in_band(s.value, limit, inner, limit == s.low)
         c0, c1 = sorted((x(limit), x(inner)))
         if c1 <= c0:
             continue
         out += rect(ink, "caution", c0, _TOP, c1 - c0, high) if hot else ""
-        out += path(ink, hatch(c0, c1, _TOP, foot, 40), "", "on-caution" if hot else "ink-2", "1.1")
+        role = "on-caution" if hot else "ink-2"
+        out += path(ink, hatch(c0, c1, _TOP, foot, 40), "", role, "1.1")
+        out += "" if guard is None else _guard(ink, x(limit), x(guard), foot, role)
     dash = "4 3" if model.get("verdict") == "not judged" else ""
     edge = f"M{px(left)} {px(_TOP)}H{px(right)}M{px(left)} {px(foot)}H{px(right)}"
     out += path(ink, edge, "", "ink", "1.2", dash)
@@ -60,6 +63,15 @@ def tiny(model: dict[str, Any]) -> str:
         bar = ratio(s.u * (width - 40), s.b - s.a)
         out += _pointer(ink, s, width, high, x(s.value), bar, under or over)
     return svg(ink, "tiny", px(width), px(height), says.scale(model), out)
+
+
+def _guard(ink: str, post: int, accept: int, foot: int, role: str) -> str:
+    """Crosses the hatching from the post to the acceptance limit."""
+    g0, g1 = sorted((post, accept))
+    if g1 <= g0:
+        return ""
+    edge = path(ink, f"M{px(accept)} {px(_TOP)}V{px(foot)}", "", role, "1.2")
+    return path(ink, hatch(g0, g1, _TOP, foot, 40, True), "", role, "1.1") + edge
 
 
 def _pointer(ink: str, s: Spread, width: int, high: int, x: int, bar: int, fail: bool) -> str:

@@ -101,6 +101,27 @@ def test_the_scale_stretches_to_hold_the_reading_and_its_uncertainty() -> None:
     assert float(pointer[1]) + (right - left) * 0.03 / 0.40 < 566
 
 
+def test_the_acceptance_limit_stands_where_straight_proportion_puts_it() -> None:
+    svg = drawing.scale({**HEATER, "caution_low": None, "caution_high": None})
+    left, right = posts(svg, 6)
+    lines = [float(x) for x in re.findall(r'd="M([0-9.]+) 50V82"', svg)]
+    # 6.13 and 6.47 between 6.10 and 6.50
+    assert lines == [pytest.approx(left + (right - left) * part, abs=0.1) for part in (0.03 / 0.40, 0.37 / 0.40)]
+
+
+@pytest.mark.parametrize("draw", ["scale", "tiny"])
+@pytest.mark.parametrize(
+    ("value", "yellow"),
+    [("6.13", False), ("6.12", True), ("6.10", True), ("6.47", False), ("6.48", True), ("6.50", True), ("6.30", False)],
+)
+def test_yellow_is_the_guard_band_without_the_acceptance_limit_which_passes(
+    draw: str, value: str, yellow: bool
+) -> None:
+    """ILAC-G8:09/2019 4.2.2: accepted where the value is not beyond the acceptance limit (from memory)."""
+    model = {**HEATER, "caution_low": None, "caution_high": None, "value": value}
+    assert ("f-caution" in drawing.DRAWINGS[draw](model)) is yellow
+
+
 def test_a_reading_far_off_breaks_the_axis_and_leaves_the_limits_readable() -> None:
     svg = drawing.scale({**HEATER, "value": "660", "verdict": "fail"})
     left, right = posts(svg, 6)

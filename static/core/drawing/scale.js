@@ -62,17 +62,27 @@ function outside(ink, x0, x1, hit) {
 function bands(ink, s, width, limit, guard, caution) {
   const edges = known([guard, caution]);
   if (!edges.length) return "";
-  const inner = limit === s.low ? most(edges) : least(edges);
-  const hot = s.value !== null && least([limit, inner]) <= s.value && s.value <= most([limit, inner]);
+  const low = limit === s.low;
+  const inner = low ? most(edges) : least(edges);
+  const hot = s.value !== null && in_band(s.value, limit, inner, low);
   const [x0, x1] = ordered(x(s, width, limit), x(s, width, inner));
   const role = hot ? "on-caution" : "ink-2";
   let out = hot ? rect(ink, "caution", x0, TOP, x1 - x0, HIGH) : "";
   if (x1 > x0) out += path(ink, hatch(x0, x1, TOP, FOOT, 90), "", role, "1.6");
   if (guard !== null) {
     const [g0, g1] = ordered(x(s, width, limit), x(s, width, guard));
-    if (g1 > g0) out += path(ink, hatch(g0, g1, TOP, FOOT, 90, true), "", role, "1.6");
+    if (g1 > g0) {
+      out += path(ink, hatch(g0, g1, TOP, FOOT, 90, true), "", role, "1.6");
+      out += path(ink, `M${px(low ? g1 : g0)} ${px(TOP)}V${px(FOOT)}`, "", role, "2");
+    }
   }
   return out;
+}
+
+/** Whether a reading lies in the band beside a limit, whose inner edge does not belong to it.
+ * @param {bigint} value @param {bigint} limit @param {bigint} inner @param {boolean} low */
+export function in_band(value, limit, inner, low) {
+  return low ? limit <= value && value < inner : inner < value && value <= limit;
 }
 
 /** @param {number} a @param {number} b @returns {[number, number]} */

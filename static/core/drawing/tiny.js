@@ -3,6 +3,7 @@
 import { half, px, ratio } from "./number.js";
 import { hatch, path, rect, svg } from "./paint.js";
 import * as says from "./says.js";
+import { in_band } from "./scale.js";
 import { known, least, most, spread } from "./spread.js";
 
 /** @typedef {import("./spread.js").Model} Model @typedef {import("./spread.js").Spread} Spread */
@@ -32,12 +33,14 @@ export function tiny(model) {
     const edges = known([guard, caution]);
     if (limit === null || !edges.length) continue;
     const inner = limit === s.low ? most(edges) : least(edges);
-    const hot = s.value !== null && least([limit, inner]) <= s.value && s.value <= most([limit, inner]);
+    const hot = s.value !== null && in_band(s.value, limit, inner, limit === s.low);
     const c0 = Math.min(x(limit), x(inner));
     const c1 = Math.max(x(limit), x(inner));
     if (c1 <= c0) continue;
     if (hot) out += rect(ink, "caution", c0, TOP, c1 - c0, high);
-    out += path(ink, hatch(c0, c1, TOP, foot, 40), "", hot ? "on-caution" : "ink-2", "1.1");
+    const role = hot ? "on-caution" : "ink-2";
+    out += path(ink, hatch(c0, c1, TOP, foot, 40), "", role, "1.1");
+    if (guard !== null) out += guarded(ink, x(limit), x(guard), foot, role);
   }
   const dash = model.verdict === "not judged" ? "4 3" : "";
   out += path(ink, `M${px(left)} ${px(TOP)}H${px(right)}M${px(left)} ${px(foot)}H${px(right)}`, "", "ink", "1.2", dash);
@@ -49,6 +52,16 @@ export function tiny(model) {
     out += pointer(ink, s, width, high, x(s.value), bar, under || over);
   }
   return svg(ink, "tiny", px(width), px(height), says.scale(model), out);
+}
+
+/** Crosses the hatching from the post to the acceptance limit.
+ * @param {string} ink @param {number} post @param {number} accept @param {number} foot @param {string} role */
+function guarded(ink, post, accept, foot, role) {
+  const g0 = Math.min(post, accept);
+  const g1 = Math.max(post, accept);
+  if (g1 <= g0) return "";
+  const edge = path(ink, `M${px(accept)} ${px(TOP)}V${px(foot)}`, "", role, "1.2");
+  return path(ink, hatch(g0, g1, TOP, foot, 40, true), "", role, "1.1") + edge;
 }
 
 /**
