@@ -25,11 +25,12 @@ def test_every_command_that_the_readme_names_exists():
 
 
 def test_the_sum_of_the_readme_gives_what_it_shows(capsys):
-    shown = re.findall(r"^    \$ fieldkit calc '([^']+)'\n    (.+)$", TEXT, re.M)
-    assert shown
-    for expression, value in shown:
+    shown = re.findall(r"^    \$ fieldkit calc '([^']+)'\n((?:    .+\n)+)", TEXT, re.M)
+    assert len(shown) >= 2
+    for expression, block in shown:
         assert main(["calc", expression]) == 0
-        assert capsys.readouterr().out.splitlines()[0] == value
+        lines = [line.removeprefix("    ") for line in block.splitlines()]
+        assert capsys.readouterr().out.splitlines()[: len(lines)] == lines
 
 
 def test_the_pictures_and_files_that_the_readme_shows_are_there():

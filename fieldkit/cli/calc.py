@@ -1,7 +1,9 @@
 """`fieldkit calc EXPRESSION [--in UNIT] [--json]`: one sum of numbers and formulas, with its sources and cautions.
 
 `--list [NAME]` shows the formulas, or one of them; so does a formula's name alone. `--formulas FOLDER` adds a station's
-own. The first line of an answer is the value alone. Exit 0 answered; 1 no answer, and every reason was said; 2 misuse.
+own. The first line of an answer is the value alone, or with its uncertainty where a number has a ±: 60 L/min ± 2 %.
+Every ± is an expanded uncertainty, k = 2; after `--accuracy` those that were typed are half-widths of what a maker
+promises. Exit 0 answered; 1 no answer, and every reason was said; 2 misuse.
 Not here: the sum itself (fieldkit.formula.answer), the texts of the list (fieldkit.formula.describe).
 """
 
@@ -20,8 +22,9 @@ from fieldkit import values
 from fieldkit.cli import check
 from fieldkit.errors import Place, Problem
 from fieldkit.files import folder
-from fieldkit.formula import describe, display
+from fieldkit.formula import carried, describe, display
 from fieldkit.formula.answer import Answer, Value, answer, asked, in_unit
+from fieldkit.formula.carried import COVERAGE, Carried
 from fieldkit.formula.library import Library
 from fieldkit.formula.spots import Spot, Unreadable, nearest, one_of
 from fieldkit.formula.sums import sums
@@ -30,10 +33,19 @@ EXAMPLE = "fieldkit calc 'coolant_heat_water(flow=60 L/min, inlet=35 degC, outle
 
 
 def arguments(parser: argparse.ArgumentParser) -> None:
-    parser.epilog = f"Put the expression in quotes: {EXAMPLE}. One that begins with - wants -- before it."
+    parser.epilog = (
+        f"Put the expression in quotes: {EXAMPLE}. One that begins with - wants -- before it. "
+        "After a number its uncertainty may stand, in percent of it or in a unit: 60 L/min ± 2 %, 35 degC +/- 0.2 K. "
+        "The answer then has one too. Every ± is the expanded uncertainty with k = 2 (about 95 %), if not --accuracy."
+    )
     parser.add_argument("expression", nargs="*", metavar="EXPRESSION", help="numbers with units, formulas, or a name")
     parser.add_argument("--in", dest="unit", metavar="UNIT", help="show the answer in this unit, like kW")
     parser.add_argument("--digits", type=int, choices=range(1, 13), metavar="N", help="significant digits, 1 to 12")
+    parser.add_argument(
+        "--accuracy",
+        action="store_true",
+        help="the ± typed are accuracies as makers state them: half-widths a, so that u = a / sqrt(3)",
+    )
     parser.add_argument("--list", nargs="?", const="", metavar="NAME", help="all formulas, one subject, or one formula")
     parser.add_argument("--formulas", type=Path, metavar="FOLDER", help="a station's own formulas, added to the others")
     parser.add_argument("--json", action="store_true", help="the answer for a program to read")
@@ -80,7 +92,7 @@ def _answer(args: argparse.Namespace, text: str, library: Library) -> int:
     problems: list[Problem] = []
     found: Answer | None = None
     try:
-        found = answer(text, library)
+        found = answer(text, library, carried.ACCURACY if args.accuracy else carried.EXPANDED)
     except Unreadable as exc:
         problems += [_problem("expression", text, s) for s in exc.spots]
     try:
@@ -92,20 +104,23 @@ def _answer(args: argparse.Namespace, text: str, library: Library) -> int:
         return _refuse(args, problems, 1, {"expression": text, "--in": args.unit or ""})
     if args.digits:
         found = replace(found, values=tuple(replace(v, digits=args.digits) for v in found.values))
-    print(_dump(as_json(found)) if args.json else as_text(found, _width()))
+    print(_dump(as_json(found, args.accuracy)) if args.json else as_text(found, _width(), args.accuracy))
     return 0
 
 
-def as_text(found: Answer, width: int) -> str:
-    """The value alone on the first line, then the source and the cautions of every formula named."""
+def as_text(found: Answer, width: int, accuracy: bool = False) -> str:
+    """The value alone on the first line, then its uncertainty, the source and the cautions of every formula named."""
     rows = [found.shown()]
+    if found.uncertain:
+        parts = {v.name: v.carried for v in found.values}
+        rows += describe.uncertainty(parts, found.warnings, width, accuracy)
     for one in found.formulas:
         label = "" if found.whole is not None else f" for {one.name}"
         rows += describe.notes(one, width, label)
     return "\n".join(rows)
 
 
-def as_json(found: Answer) -> dict[str, Any]:
+def as_json(found: Answer, accuracy: bool = False) -> dict[str, Any]:
     """The same for a program; a pair has `values` in place of one value's keys."""
     whole = found.whole
     cautions = [(one.name, c) for one in found.formulas for c in one.cautions]
@@ -115,6 +130,8 @@ def as_json(found: Answer) -> dict[str, Any]:
         "shown": found.shown(),
         "formula": whole.name if whole else None,
         "reference": whole.reference if whole else None,
+        "stated": ("accuracy" if accuracy else "expanded") if found.uncertain else None,
+        "warnings": list(found.warnings),
         "cautions": [c if whole else f"{name}: {c}" for name, c in cautions],
         "sources": {one.name: one.reference for one in found.formulas},
     }
@@ -122,7 +139,7 @@ def as_json(found: Answer) -> dict[str, Any]:
 
 def _values(found: Answer) -> dict[str, Any]:
     if found.flag is not None:
-        return {"si": None, "si_unit": None, "value": found.flag, "unit": None}
+        return {"si": None, "si_unit": None, "value": found.flag, "unit": None, "uncertainty": None}
     if len(found.values) == 1:
         return _value(found.values[0])
     return {"values": [{"name": v.name, **_value(v), "shown": v.shown()} for v in found.values]}
@@ -130,7 +147,20 @@ def _values(found: Answer) -> dict[str, Any]:
 
 def _value(v: Value) -> dict[str, Any]:
     shown = float(values.to_shown(v.si, v.unit))
-    return {"si": v.si, "si_unit": display.coherent(v.dimension).symbol, "value": shown, "unit": v.unit.symbol}
+    si_unit = display.coherent(v.dimension).symbol
+    of = _uncertainty(v, v.carried) if v.carried else None
+    return {"si": v.si, "si_unit": si_unit, "value": shown, "unit": v.unit.symbol, "uncertainty": of}
+
+
+def _uncertainty(v: Value, of: Carried) -> dict[str, Any]:
+    """U with k = 2, and the part of each number in it: its own U of the answer, and percent of the variance."""
+    shares = [
+        {"name": s.name or None, "written": s.written, "si": COVERAGE * abs(s.part), "percent": s.percent}
+        for s in of.shares
+    ]
+    value = float(display.width(of.expanded, v.unit))
+    unit = display.difference(v.unit).symbol
+    return {"si": of.expanded, "value": value, "unit": unit, "k": COVERAGE, "shares": shares}
 
 
 def _list(args: argparse.Namespace, library: Library) -> int:

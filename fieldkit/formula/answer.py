@@ -3,9 +3,10 @@
     found = answer("coolant_heat_water(flow=60 L/min, inlet=35 degC, outlet=45 degC)", library)
     found.values[0].si, found.values[0].unit, found.shown()     41543.28..., kW, "41.54 kW"
 
+A number may have its uncertainty after it, like 60 L/min ± 2 %; then the value has one too, and is shown with it.
 Raises Unreadable with everything that is wrong: spelling, names, units, and what has no answer (a range, a division by
-zero), each at its column. Not here: the language (parse.py, check.py), where faults arise (locate.py), the choice of
-digits (display.py), printing (fieldkit.cli.calc).
+zero), each at its column. Not here: the language (parse.py, check.py), what stands after ± (stated.py) and what is made
+of it (carried.py), where faults arise (locate.py), the choice of digits (display.py), printing (fieldkit.cli.calc).
 """
 
 from __future__ import annotations
@@ -16,14 +17,16 @@ from dataclasses import dataclass, replace
 from typing import Union
 
 from fieldkit import units
-from fieldkit.formula import ast, check, display, functions, parse
+from fieldkit.formula import ast, carried, check, display, functions, parse, stated
 from fieldkit.formula.arguments import any_of
+from fieldkit.formula.carried import EXPANDED, Carried, Told
 from fieldkit.formula.entry import Formula, Pair
 from fieldkit.formula.evaluate import evaluate
 from fieldkit.formula.library import Library
 from fieldkit.formula.locate import locate
 from fieldkit.formula.parse import Parsed, Term
 from fieldkit.formula.spots import Spot, Unreadable, nearest, one_of
+from fieldkit.formula.stated import Mark, Stated
 from fieldkit.units import Dimension, Unit
 from fieldkit.values import Fault
 
@@ -36,24 +39,29 @@ _KEEP_UNIT = ("add", "sub", "mul", "div", "neg", "abs", "min", "max", "average",
 #: problems that hold also where a unit could not be read
 _WITHOUT_UNITS = ("unknown-function", "unknown-argument", "argument-missing", "argument-twice", "argument-without-name")
 
-_UNCERTAINTY = re.compile(r"(?:±|\+/-) *(?:\([^()]*\)|[0-9][0-9.eE]*(?: *[A-Za-zµμΩ°%][\w/°%]*)?|[^,()]*)")
-
 
 @dataclass(frozen=True)
 class Value:
-    """One number of an answer: in SI, and the unit and digits to show it with. `name` is the formula's, or ""."""
+    """One number of an answer: in SI, and the unit and digits to show it with. `name` is the formula's, or "".
+
+    `carried` is its uncertainty, where a number of the sum has one and it can be told.
+    """
 
     name: str
     si: float
     dimension: Dimension
     unit: Unit
     digits: int
+    carried: Carried | None = None
 
     def text(self) -> str:
         return display.plain(self.si, self.unit, self.digits)
 
     def shown(self) -> str:
-        return display.with_unit(self.text(), self.unit)
+        """ "41.54 kW", or with its uncertainty (k = 2) "41.54 kW ± 0.83 kW"."""
+        if self.carried is None or not self.carried.u:
+            return display.with_unit(self.text(), self.unit)
+        return display.beside(self.si, self.carried.expanded, self.unit, self.digits)
 
 
 @dataclass(frozen=True)
@@ -66,6 +74,10 @@ class Answer:
     formulas: tuple[Union[Formula, Pair], ...]
     #: the formula or pair whose call is the whole expression
     whole: Union[Formula, Pair, None]
+    #: a number of it has a ±
+    uncertain: bool = False
+    #: what is to be known of its uncertainty, or why it has none
+    warnings: tuple[str, ...] = ()
 
     def shown(self) -> str:
         """ "41.54 kW", "21.8 dB to 34.7 dB", "yes"."""
@@ -74,24 +86,49 @@ class Answer:
         return " to ".join(v.shown() for v in self.values)
 
 
-def answer(text: str, library: Library) -> Answer:
-    """What the expression gives. Raises Unreadable with every problem of it, in order of column."""
-    parsed, spots = _read(text)
+def answer(text: str, library: Library, coverage: float = EXPANDED) -> Answer:
+    """What the expression gives. Raises Unreadable with every problem of it, in order of column.
+
+    `coverage` divides a ± that was typed, to give a standard uncertainty: EXPANDED or ACCURACY (carried.py).
+    """
+    parsed, spots, marks = _read(text)
     if parsed is None:
-        raise Unreadable(spots)
+        raise Unreadable(spots + _alone(text, marks))
     pair = library.pairs.get(parsed.term.what) if parsed.term.kind == "library" else None
     parts = [replace(parsed.term, what=name) for name in pair.of] if pair else [parsed.term]
     found = [_Part(Parsed(parsed.text, term), library, pair) for term in parts]
-    units_lost = any(s.code != "uncertainty-not-carried" for s in spots)
+    units_lost = bool(spots)
+    known, wrong = stated.bind(text, parsed.term, marks) if not units_lost else ([], _alone(text, marks))
+    spots += wrong
     for part in found:
         spots.extend(s for s in part.problems(units_lost=units_lost) if s not in spots)
+    spots += _whole_numbers(parsed.term, known, library)
     if spots:
         raise Unreadable(spots)
-    results = [part.result() for part in found]
+    told = [part.carried(known, coverage) for part in found]
+    results = [part.result(of.carried) for part, of in zip(found, told, strict=True)]
     named = [pair] if pair else [library.formulas[n] for n in _called(parsed.term)]
     whole = pair or (library.formulas[parsed.term.what] if parsed.term.kind == "library" else None)
     flag = results[0] if isinstance(results[0], bool) else None
-    return Answer(text, tuple(r for r in results if isinstance(r, Value)), flag, tuple(named), whole)
+    numbers = tuple(r for r in results if isinstance(r, Value))
+    warnings = tuple(dict.fromkeys(says for of in told for says in of.says))
+    return Answer(text, numbers, flag, tuple(named), whole, bool(known), warnings)
+
+
+def _alone(text: str, marks: list[Mark]) -> list[Spot]:
+    return [spot for mark in marks for spot in stated.alone(text, mark)]
+
+
+def _whole_numbers(term: Term, known: list[Stated], library: Library) -> list[Spot]:
+    """Numbers with a ± that stand for what is counted."""
+    exact, found = [one.term for one in known], list[Spot]()
+    for call in (t for t in _terms(term) if exact and t.kind == "library"):
+        name = library.pairs[call.what].of[0] if call.what in library.pairs else call.what
+        counted = [a.name for a in library.formulas[name].arguments if a.whole] if name in library.formulas else []
+        for argument, part in ((a, part) for a in counted for part in _given(call, a) if part in exact):
+            says = f"{argument} is a whole number, which has no uncertainty"
+            found.append(part.spot("uncertainty-of-count", says, "leave its ± out"))
+    return found
 
 
 def asked(symbol: str) -> Unit:
@@ -128,24 +165,20 @@ def _at(symbol: str, code: str, message: str, remedy: str) -> Unreadable:
     return Unreadable([Spot(1, max(1, len(symbol)), code, message, remedy)])
 
 
-def _read(text: str) -> tuple[Parsed | None, list[Spot]]:
-    """The expression, read on past units that are unknown and uncertainties, so that all of them are told at once."""
-    spots = []
-    for found in _UNCERTAINTY.finditer(text):
-        says = "calc does not carry uncertainties yet"
-        width = len(found[0].rstrip())
-        spots.append(Spot(found.start() + 1, width, "uncertainty-not-carried", says, "leave it out, from the ± on"))
-    readable = _UNCERTAINTY.sub(lambda m: " " * len(m[0]), text)
+def _read(text: str) -> tuple[Parsed | None, list[Spot], list[Mark]]:
+    """The expression without its ±, read on past units that are unknown, so that all of them are told at once."""
+    spots: list[Spot] = []
+    readable, marks = stated.split(text)
     for _ in range(_MOST_REPAIRS):
         try:
-            return parse.read(readable), spots
+            return replace(parse.read(readable), text=text), spots, marks
         except Unreadable as exc:
             spots.extend(exc.spots)
             repaired = _repaired(readable, exc.spots[0])
             if repaired is None:
                 break
             readable = repaired
-    return None, spots
+    return None, spots, marks
 
 
 def _repaired(text: str, spot: Spot) -> str | None:
@@ -204,20 +237,27 @@ class _Part:
         message, remedy = (t.replace(name, self.pair.name) for t in (spot.message, spot.remedy))
         return replace(spot, message=message, remedy=remedy)
 
-    def result(self) -> Union[Value, bool]:
+    def carried(self, known: list[Stated], coverage: float) -> Told:
+        """What the ± of its numbers make of it."""
+        if not known:
+            return Told(None)
+        told = carried.carry(self.parsed.term, known, self.library, self.got, coverage, self.digits())
+        if self.pair is None:
+            return told
+        return replace(told, says=tuple(says.replace(self.parsed.term.what, self.pair.name) for says in told.says))
+
+    def result(self, of: Carried | None) -> Union[Value, bool]:
         term, si = self.parsed.term, self.got
         if isinstance(si, bool):
             return si
         assert isinstance(si, float) and isinstance(self.kind, Dimension)
         unit = self._unit(term) or display.fitting(si, self.kind)
-        formula = self.library.formulas[term.what] if term.kind == "library" else None
-        return Value(
-            formula.name if formula else "",
-            si,
-            self.kind,
-            unit,
-            display.digits(formula) if formula else display.MOST_DIGITS,
-        )
+        return Value(term.what if term.kind == "library" else "", si, self.kind, unit, self.digits(), of)
+
+    def digits(self) -> int:
+        """How many digits the answer deserves."""
+        term = self.parsed.term
+        return display.digits(self.library.formulas[term.what]) if term.kind == "library" else display.MOST_DIGITS
 
     def _unit(self, term: Term) -> Unit | None:
         """The unit that the expression itself names for its answer: a formula's own, or that of a part."""

@@ -10,12 +10,13 @@ from __future__ import annotations
 
 import re
 import textwrap
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Union
 
 from fieldkit import units
 from fieldkit.formula import display
 from fieldkit.formula.arguments import Argument, any_of
+from fieldkit.formula.carried import Carried
 from fieldkit.formula.entry import Formula, Pair
 from fieldkit.formula.library import Library
 from fieldkit.formula.sums import sums
@@ -74,6 +75,40 @@ def notes(one: Union[Formula, Pair], width: int = WIDTH, label: str = "") -> lis
     for caution in one.cautions:
         rows += _wrapped(f"Caution{label}: ", "  ", caution, width)
     return rows
+
+
+def uncertainty(
+    parts: Mapping[str, Carried | None], warnings: Sequence[str], width: int = WIDTH, accuracy: bool = False
+) -> list[str]:
+    """What the ± of an answer means, and which number it comes from; `parts` are its values by name, one or a pair."""
+    rows: list[str] = []
+    known = {name: carried for name, carried in parts.items() if carried is not None}
+    if known:
+        says = "± is the expanded uncertainty, k = 2, typed or worked out."
+        if accuracy:
+            says = "± of the answer is the expanded uncertainty, k = 2; a ± typed is an accuracy, u = ± / sqrt(3)."
+        rows += _wrapped("", "", f"{says} A formula's own error is not in it.", width)
+    for name, carried in known.items():
+        rows += _shares(f"That of {name}" if len(parts) > 1 else "It", carried)
+    for says in warnings:
+        rows += _wrapped("Mind: ", "  ", says, width)
+    return rows
+
+
+def _shares(which: str, carried: Carried) -> list[str]:
+    """Which number the uncertainty comes from, the largest part first."""
+    if not carried.u:
+        return [f"{which} is nothing: the answer does not change with what has a ±."]
+    wide = [
+        max(len(of) for of in column) for column in zip(*((s.name, s.written) for s in carried.shares), strict=True)
+    ]
+    named = f"  {{:{wide[0]}}}" if wide[0] else ""
+    rows = [f"{named.format(s.name)}  {s.written:{wide[1]}}  {_percent(s.percent):>6} %" for s in carried.shares]
+    return [f"{which} comes from (share of the variance):", *rows]
+
+
+def _percent(of: float) -> str:
+    return "0" if of == 0.0 else "< 0.1" if of < 0.1 else f"{of:.1f}" if of < 9.95 else f"{of:.0f}"
 
 
 def span(argument: Argument) -> str:

@@ -10,6 +10,7 @@ it. Not here: what is computed (answer.py), readings and limits, which keep ever
 
 from __future__ import annotations
 
+from dataclasses import replace
 from decimal import Decimal
 from fractions import Fraction
 
@@ -67,6 +68,33 @@ def plain(si: float, unit: Unit, digits: int = MOST_DIGITS) -> str:
         return f"{values.to_text(values.trim(values.dec(mantissa)))}e{int(power)}"
     places = max(0, digits - 1 - int(power))
     return values.to_text(values.trim(values.dec(values.to_text(values.dec(f"{exact:f}"), places))))
+
+
+def beside(si: float, u: float, unit: Unit, digits: int = MOST_DIGITS) -> str:
+    """A value with its uncertainty, both in SI: "41.54 kW ± 0.83 kW", "25.0 °C ± 0.4 K".
+
+    Two digits of the uncertainty at most, none finer than so many `digits` of the value; both end at one place, and
+    have the same exponent, where one is needed.
+    """
+    value, size = Decimal(values.to_shown(si, unit)), Decimal(width(u, unit))
+    power = max(x.adjusted() for x in (value, size) if x)
+    power = 0 if power in _PLAIN else power
+    places = max(0, digits - 1 - (value.scaleb(-power).adjusted() if value else 0))
+    parts = values.beside(f"{value.scaleb(-power):f}", f"{size.scaleb(-power):f}", f"{0:.{places}f}")
+    tail = f"e{power}" if power else ""
+    return " ± ".join(with_unit(p + tail, of) for p, of in zip(parts, (unit, difference(unit)), strict=True))
+
+
+def difference(unit: Unit) -> Unit:
+    """The unit of a difference of two values in `unit`: K for degC, dB for dBm."""
+    if unit.dimension.absolute:
+        return units.UNITS["K"]
+    return units.UNITS["dB"] if unit.symbol == "dBm" else unit
+
+
+def width(si: float, unit: Unit) -> str:
+    """A difference in SI as a decimal text, where values are shown in `unit`."""
+    return values.to_shown(si, replace(unit, offset="0"))
 
 
 def with_unit(number: str, unit: Unit) -> str:

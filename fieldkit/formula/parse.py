@@ -171,10 +171,9 @@ def read(text: str) -> Parsed:
 
 @lru_cache(maxsize=1)
 def _parser() -> Lark:
-    written = sorted({*units.UNITS, *_other_spellings()} - {"1"}, key=len, reverse=True)
     grammar = _GRAMMAR % {
         "number": _NUMBER,
-        "units": "|".join(re.escape(u).replace("/", r"\/") for u in written),
+        "units": unit_pattern().replace("/", r"\/"),
         "funcs": _words(n for n, f in functions.FUNCTIONS.items() if f.spelled and not f.on_series),
         "series": _words(n for n, f in functions.FUNCTIONS.items() if f.spelled and f.on_series),
         "spaces": _words(s for s in SPACES if s not in _TEXT_SPACES),
@@ -185,6 +184,12 @@ def _parser() -> Lark:
 
 def _words(names: Iterable[str]) -> str:
     return "|".join(sorted(names, key=len, reverse=True))
+
+
+def unit_pattern() -> str:
+    """A regular expression of every spelling of every unit, the longer before the shorter."""
+    written = sorted({*units.UNITS, *_other_spellings()} - {"1"}, key=len, reverse=True)
+    return "|".join(re.escape(u) for u in written)
 
 
 def _other_spellings() -> set[str]:
