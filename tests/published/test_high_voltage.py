@@ -52,10 +52,34 @@ def test_discharge_time_equals_the_differential_equation(
 
 def test_a_capacitor_below_the_safe_voltage_needs_no_wait_and_one_just_above_nearly_none() -> None:
     """Source: the same equation has no crossing where it starts below; from just above, the wait is RC times dV/V."""
-    below = call("discharge_time", initial=40.0, safe=50.0, resistance=2e6, capacitance=4e-6)
-    above = call("discharge_time", initial=50.05, safe=50.0, resistance=2e6, capacitance=4e-6)
+    below = call("discharge_time", initial=400.0, safe=500.0, resistance=2e6, capacitance=4e-6)
+    above = call("discharge_time", initial=500.5, safe=500.0, resistance=2e6, capacitance=4e-6)
     assert below == 0.0
-    assert above == pytest.approx(time_to(50.05, 50.0, 2e6, 4e-6), rel=1e-4)
+    assert above == pytest.approx(time_to(500.5, 500.0, 2e6, 4e-6), rel=1e-4)
+
+
+@pytest.mark.parametrize(
+    ("slip", "argument"),
+    [
+        ({"initial": 32.0}, "initial is 0.032 kV"),
+        ({"safe": 50e3}, "safe is 50000 V"),
+        ({"initial": 0.0}, "initial is 0"),
+    ],
+)
+def test_a_thousandfold_slip_never_says_that_there_is_nothing_to_wait_for(
+    slip: dict[str, float], argument: str
+) -> None:
+    """Source: common sense of the trade; 32 V for 32 kV, or 50 kV for 50 V, must not read as a wait of 0 s."""
+    given = {"initial": 32e3, "safe": 50.0, "resistance": 2e6, "capacitance": 4e-6} | slip
+    got = answer("discharge_time", **given)
+    assert isinstance(got, Fault) and got.code == "out-of-range" and argument in got.says
+
+
+def test_the_greatest_tolerances_make_the_wait_as_much_longer_as_the_caution_says() -> None:
+    """10 % of capacitance and 5 % of bleeder: 16 % longer. Source: the differential equation, as above."""
+    worst = time_to(32e3, 50.0, 1.05 * 2e6, 1.10 * 4e-6)
+    found = call("discharge_time", initial=32e3, safe=50.0, resistance=2e6, capacitance=4e-6)
+    assert worst / found == pytest.approx(1.16, abs=0.006)
 
 
 def test_the_measured_time_constant_is_the_slope_of_the_logarithm_of_a_simulated_decay() -> None:
