@@ -168,6 +168,8 @@ def test_warm_up_equals_the_differential_equation() -> None:
 
 
 def test_readings_that_cannot_be_a_hot_heater_give_a_fault() -> None:
+    thousandfold = answer("heater_resistance", voltage=6.3, current=9.8e-3)
+    assert isinstance(thousandfold, Fault) and "current is 0.0098 A" in thousandfold.says
     fixed = {"cold_temperature": 293.15}
     exchanged = answer("heater_temperature", cold_resistance=0.63, hot_resistance=0.0957, **fixed)
     assert isinstance(exchanged, Fault) and "above the cold one" in exchanged.says

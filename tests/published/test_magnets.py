@@ -10,6 +10,7 @@ import pytest
 from published import answer, call
 from scipy import constants
 from scipy.integrate import solve_ivp
+from scipy.optimize import brentq
 
 from fieldkit.values import Fault
 
@@ -126,6 +127,39 @@ def test_at_the_brillouin_field_the_edge_of_the_beam_stays_where_it_is(
     # the test can fail: with 3 % too little the beam swells, with 3 % too much it shrinks
     assert edge_radii(current, volts, radius, 0.97 * field).max() > 1.02
     assert edge_radii(current, volts, radius, 1.03 * field).min() < 0.98
+
+
+def relativistic_radii(current: float, volts: float, radius: float, field: float) -> numpy.ndarray:
+    """As edge_radii, with the whole force of Lorentz, the beam's own magnetic field and the momentum of relativity."""
+    gamma = 1 + constants.e * volts / (constants.m_e * constants.c**2)
+    along = constants.c * math.sqrt(1 - 1 / gamma**2)
+    outward = current / along / (2 * math.pi * constants.epsilon_0)  # E_r times r
+    round_about = constants.mu_0 * current / (2 * math.pi)  # B_phi times r
+    mass = constants.m_e * gamma
+
+    def moves(_t: float, s: numpy.ndarray) -> list[float]:
+        x, y, vx, vy = s
+        r2 = x * x + y * y
+        push = (outward - along * round_about) / r2
+        return [vx, vy, constants.e / mass * (push * x - field * vy), constants.e / mass * (push * y + field * vx)]
+
+    turning = constants.e * field / mass
+    start = [radius, 0.0, 0.0, turning * radius / 2]
+    span = (0.0, 10 * math.pi / turning)
+    path = solve_ivp(moves, span, start, method="DOP853", rtol=1e-10, atol=1e-14, max_step=span[1] / 200)
+    return numpy.hypot(path.y[0], path.y[1]) / radius
+
+
+@pytest.mark.parametrize(("kilovolts", "high"), [(35, 1.008), (500, 1.10)])
+def test_without_relativity_the_field_is_as_high_as_its_reference_says(kilovolts: float, high: float) -> None:
+    volts, radius, current = kilovolts * 1e3, 8e-3, 2.2
+    field = call("brillouin_field", current=current, voltage=volts, radius=radius)
+
+    def swells(share: float) -> float:
+        return float(relativistic_radii(current, volts, radius, share * field).mean()) - 1
+
+    steady = brentq(swells, 0.8, 1.05, xtol=1e-4)
+    assert 1 / steady == pytest.approx(high, abs=0.006)
 
 
 def test_brillouin_field_equals_the_handbook_constant_and_the_identity() -> None:
