@@ -135,5 +135,5 @@ def test_a_sum_is_shown_in_the_multiple_that_leaves_few_digits() -> None:
 
 def test_a_formula_is_shown_to_the_digits_that_its_examples_are_held_to() -> None:
     assert display.digits(HELD.formulas["coolant_heat_water"]) == 4
-    assert display.digits(HELD.formulas["beam_power"]) == 6
+    assert display.digits(HELD.formulas["elementary_charge"]) == 6
     assert all(4 <= display.digits(f) <= 6 for f in HELD.formulas.values())

@@ -228,7 +228,7 @@ def test_a_pair_in_a_formula_says_which_two_to_use(tmp_path: Path) -> None:
 
 def test_a_folder_adds_to_a_library_and_takes_no_name_of_it(tmp_path: Path) -> None:
     shipped = library.load(folder("procedures") / "formulas")
-    own = GOOD.replace("2 * x", "beam_power(voltage=x, current=1 A) / (1 A) * 2")
+    own = GOOD.replace("2 * x", "heater_power(voltage=x, current=1 A) / (1 A) * 2")
     (tmp_path / "own.yaml").write_text(own, encoding="utf-8")
     read = library.load(tmp_path, base=shipped)
     assert read.problems == () and set(read.formulas) == {*shipped.formulas, "twice"}
