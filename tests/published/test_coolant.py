@@ -90,6 +90,12 @@ def test_flow_needed_takes_up_just_the_heat_by_enthalpy() -> None:
         assert flow * _water("D", inlet) * (_water("H", outlet) - _water("H", inlet)) == pytest.approx(heat, rel=1e-3)
 
 
+def test_a_load_without_flow_has_no_power_and_no_number() -> None:
+    """Source: common sense of the trade; a load whose water stands takes its power all the same, and boils."""
+    stands = answer("calorimetric_power", flow=0.0, inlet=298.15, outlet=308.15)
+    assert isinstance(stands, Fault) and stands.code == "out-of-range" and "flow is 0" in stands.says
+
+
 @pytest.mark.parametrize("outlet", [308.15, 308.0, 273.15])
 def test_flow_needed_without_a_rise_is_no_number(outlet: float) -> None:
     value = answer("coolant_flow_needed", heat=1e4, inlet=308.15, outlet=outlet)
