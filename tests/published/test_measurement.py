@@ -57,6 +57,14 @@ def test_instrument_uncertainty_is_that_of_a_rectangle() -> None:
         assert turned == width > 0, "a negative reading has the same limit"
 
 
+def test_a_percent_without_its_sign_is_caught() -> None:
+    """Source: a plain 0.5 is 50 %, and no meter of this trade is that bad (common practice, no source)."""
+    for percent in (0.5, 1.0, 2.0):
+        for name in ("instrument_limit", "instrument_uncertainty"):
+            plain = answer(name, reading=32e3, percent=percent, digits=1.0, resolution=100.0)
+            assert isinstance(plain, Fault) and plain.code == "out-of-range" and "percent is" in plain.says
+
+
 # Conformity. Sources: JCGM 106:2012, its examples (from memory); scipy.stats.norm.
 
 
@@ -113,6 +121,8 @@ def test_at_the_guarded_limit_the_risk_is_that_of_the_table(ratio: float, printe
     over = float(stats.norm.sf(limit, upper, expanded / 2))
     under = float(stats.norm.cdf(limit, lower, expanded / 2))
     assert over == pytest.approx(under, rel=1e-9)
+    # U is twice the standard uncertainty, so the guard band is 2 r standard uncertainties wide
+    assert over == pytest.approx(float(stats.norm.sf(2 * ratio)), rel=1e-9)
     # the table prints "below"; the true risk is a little less, never less than half of it but for 3 (1 ppm: 1e-9)
     assert over <= printed
     assert over > printed * (0.5 if ratio < 3 else 5e-4)
