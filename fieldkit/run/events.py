@@ -8,7 +8,8 @@ An event is a UTF-8 JSON object made on the tablet; its bytes are stored and has
 
 `prev` of seq 0 is the sheet's SHA-256. `mono` is milliseconds of the monotonic clock since `boot`. Numbers
 that a person typed are strings as typed. An old version is lifted by UPCASTS when it is read; the stored bytes stay
-as they are. To add an event: fieldkit.run.bodies says how. Twin: static/core/events.js.
+as they are. A key that came later has a default, and an instrument from before there were ranges is read as having one.
+To add an event: fieldkit.run.bodies says how. Twin: static/core/events.js.
 """
 
 from __future__ import annotations
