@@ -21,6 +21,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Protocol
 
 from fieldkit.errors import Refusal
@@ -112,9 +113,13 @@ def _refused(text: str) -> tuple[str, str] | None:
 def dec(text: str) -> Dec:
     """The decimal that a program-made text spells: "-12.50". Raises ValueError on anything else."""
     if not _PLAIN.fullmatch(text):
-        raise ValueError(f"not a plain decimal: {text!r:.60}")
+        raise _no_decimal(text)
     whole, _, part = text.partition(".")
     return Dec(int(whole + part), len(part))
+
+
+def _no_decimal(text: str) -> ValueError:
+    return ValueError(f"not a plain decimal: {text!r:.60}")
 
 
 def _aligned(a: Dec, b: Dec) -> tuple[int, int, int]:
@@ -308,4 +313,16 @@ def to_shown(si: float, unit: Scaled) -> str:
 
 def to_si(text: str, unit: Scaled) -> float:
     """A decimal text in `unit` as SI: text * factor + offset, computed exactly and rounded once to a double."""
-    return to_float(add(mul(dec(text), dec(unit.factor)), dec(unit.offset)))
+    if not _PLAIN.fullmatch(text):
+        raise _no_decimal(text)
+    whole, _, part = text.partition(".")
+    top, more, bottom = _whole(unit.factor, unit.offset, len(part))
+    return (int(whole + part) * top + more) / bottom
+
+
+@lru_cache(maxsize=2048)
+def _whole(factor: str, offset: str, scale: int) -> tuple[int, int, int]:
+    """top, more, bottom, so that digits / 10**scale in the unit are (digits * top + more) / bottom in SI."""
+    one = mul(Dec(1, scale), dec(factor))
+    top, more, common = _aligned(one, dec(offset))
+    return top, more, 10**common

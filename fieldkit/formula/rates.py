@@ -131,8 +131,9 @@ def _div(a: Look, b: Look) -> Look:
         v = x / y
         if v - v != 0.0:
             raise lost()
-        found = scaled(1.0 / y, p) if p else NONE
-        return v, summed(dict(found), -(v / y), q) if q else found
+        if not q:
+            return v, scaled(1.0 / y, p) if p else NONE
+        return v, summed(scaled(1.0 / y, p), -(v / y), q) if p else scaled(-(v / y), q)
 
     return look
 
@@ -147,13 +148,15 @@ def _pow(a: Look, b: Look) -> Look:
         x, p = a(e, g)
         y, q = b(e, g)
         v = _power((x, y))
-        found = scaled(_by_base(x, y), p) if p else NONE
-        return v, summed(dict(found), _by_exponent(x, y, v), q) if q else found
+        found = scaled(_by_base(x, y), p) if p else {}
+        return v, summed(found, _by_exponent(x, y, v), q) if q else found
 
     return look
 
 
 def _by_base(x: float, y: float) -> float:
+    if y == 2.0:
+        return 2.0 * x
     return y * _number(elementary.pow(x, y - 1.0)) if y != 0.0 else 0.0
 
 

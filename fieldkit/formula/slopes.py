@@ -19,7 +19,7 @@ from dataclasses import dataclass
 from itertools import pairwise
 from operator import itemgetter
 from types import MappingProxyType
-from typing import Any, Union
+from typing import Any, NamedTuple, Union
 
 from fieldkit import values
 from fieldkit.formula import ast, evaluate, nodes, rates
@@ -33,8 +33,7 @@ _STEEP = Fault("domain", "The result changes without bound at this value, so it 
 _COMPARED = ("lt", "le", "gt", "ge")
 
 
-@dataclass(frozen=True, slots=True)
-class Gradient:
+class Gradient(NamedTuple):
     """The value, and its derivatives in SI by name ("x") and by place in a column ("x[3]"); or why there are none."""
 
     value: Value
@@ -55,6 +54,8 @@ class Node:
     look: Look
     #: it never gives anything but a number
     number: bool = False
+    #: the name that it is, where the caller tells what names mean
+    name: str | None = None
 
 
 def prepare(tree: ast.Tree | dict[str, Any], formulas: Mapping[str, Any] | None = None) -> Prepared:
@@ -210,8 +211,8 @@ class _Making:
         if parts is None:
             return None
         body = self.body(function, formula, names)
-        checks = [nodes.ranged(function, a, Part(rates.given)) for a in arguments]
-        return Node(_called(body.look, [p.look for p in parts], checks), body.number)
+        held = [_held(function, a, p) for a, p in zip(arguments, parts, strict=True)]
+        return Node(_called(body.look, held), body.number)
 
     def body(self, function: str, formula: Any, names: list[str]) -> Node:
         if function not in self.bodies:
@@ -240,18 +241,18 @@ def _named(name: str) -> Node:
     run, own = nodes.named(name).run, {name: 1.0}
 
     def look(e: Any, g: Any) -> tuple[Any, Slopes]:
-        v = e.get(name)
-        if type(v) is float and v - v == 0.0:
-            return v, own
         v = run(e)
         return v, own if type(v) is float else NONE
 
-    return Node(look)
+    return Node(look, name=name)
 
 
 def _sure(node: Node) -> Look:
     """The part as a number."""
     inner = node.look
+    if node.name is not None:
+        run, own = nodes.number(nodes.named(node.name), lost().fault), {node.name: 1.0}
+        return lambda e, g: (run(e), own)
 
     def look(e: Any, g: Any) -> tuple[Any, Slopes]:
         found = inner(e, g)
@@ -262,15 +263,26 @@ def _sure(node: Node) -> Look:
     return inner if node.number else look
 
 
-def _called(body: Look, parts: list[Look], checks: list[Run]) -> Look:
-    """A formula of the library: its arguments held to their ranges, and how each changes."""
-    both = list(zip(parts, checks, strict=True))
+def _held(function: str, argument: Any, node: Node) -> Look:
+    """An argument of a formula of the library, held to its range."""
+    if node.name is not None:
+        run, own = nodes.ranged(function, argument, nodes.named(node.name)), {node.name: 1.0}
+        return lambda e, g: (run(e), own)
+    inner, check = node.look, nodes.ranged(function, argument, Part(rates.given))
 
     def look(e: Any, g: Any) -> tuple[Any, Slopes]:
+        v, slopes = inner(e, g)
+        return check(v), slopes
+
+    return look
+
+
+def _called(body: Look, held: list[Look]) -> Look:
+    def look(e: Any, g: Any) -> tuple[Any, Slopes]:
         given, slopes = [], []
-        for part, check in both:
+        for part in held:
             v, p = part(e, g)
-            given.append(check(v))
+            given.append(v)
             slopes.append(p)
         return body(given, slopes)
 
