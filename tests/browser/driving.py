@@ -5,14 +5,16 @@
 
 from __future__ import annotations
 
+import multiprocessing
 import os
 import signal
-import socket
 import subprocess
 import sys
 import time
 from pathlib import Path
 from typing import Any
+
+from ports import answers, free_port
 
 CHROMIUM = "/usr/bin/chromium"
 HERE = Path(__file__).resolve().parent
@@ -28,20 +30,46 @@ ARGS = [
 ]
 PASS = {"vell": "seven herons at dusk", "arkle": "three stones in the beck", "quill": "the long way to the mast"}
 
-
-def free_port() -> int:
-    """A port nobody listens on, and none of those that Chromium will not open."""
-    while True:
-        with socket.socket() as probe:
-            probe.bind(("127.0.0.1", 0))
-            port: int = probe.getsockname()[1]
-        if port not in (5060, 5061, 6000, 6566, 6665, 6666, 6667, 6668, 6669, 10080):
-            return port
+#: how long anything is waited for: long, for a machine that has much else to do; what comes in time costs nothing
+PATIENCE_S = 90
 
 
 def refuses(port: int) -> bool:
-    with socket.socket() as probe:
-        return probe.connect_ex(("127.0.0.1", port)) != 0
+    return not answers(port)
+
+
+#: a process that has everything imported, from which the servers are forked: a fresh one takes seconds to import it all
+_READY = multiprocessing.get_context("forkserver")
+_READY.set_forkserver_preload(["fieldkit.web.app", "fieldkit.web.tablet", "werkzeug.serving", "PIL.Image"])
+
+
+def _serve(folder: Path, port: int, environment: dict[str, str]) -> None:
+    """What a forked server does, from beginning to end."""
+    import small_station
+
+    with (folder / "server.log").open("ab") as log:
+        for stream in (1, 2):
+            os.dup2(log.fileno(), stream)
+    os.environ.update(environment)
+    small_station.serve(folder, port)
+
+
+class Fresh:
+    """A command in a process of its own, asked the same as a forked one."""
+
+    def __init__(self, command: list[str], log: Path, environment: dict[str, str]) -> None:
+        with log.open("ab") as out:
+            self.made = subprocess.Popen(command, env={**os.environ, **environment}, stdout=out, stderr=out)
+        self.terminate, self.kill = self.made.terminate, self.made.kill
+
+    def is_alive(self) -> bool:
+        return self.made.poll() is None
+
+    def join(self, seconds: float | None = None) -> None:
+        self.made.wait(seconds)
+
+    def close(self) -> None:
+        return
 
 
 class Server:
@@ -51,25 +79,37 @@ class Server:
         self.folder = folder
         self.port = free_port()
         self.url = f"http://localhost:{self.port}"
-        self.process: subprocess.Popen[bytes] | None = None
+        self.process: Any = None
+
+    def launch(self, environment: dict[str, str]) -> Any:
+        """The process; a fresh one where other code is to be served."""
+        if "PYTHONPATH" in environment:
+            command = [sys.executable, str(HERE / "small_station.py"), "serve", str(self.folder), str(self.port)]
+            return Fresh(command, self.folder / "server.log", environment)
+        made = _READY.Process(target=_serve, args=(self.folder, self.port, environment), daemon=True)
+        made.start()
+        return made
 
     def start(self, **environment: str) -> None:
-        command = [sys.executable, str(HERE / "small_station.py"), "serve", str(self.folder), str(self.port)]
-        env = {**os.environ, "PYTHONPATH": str(ROOT), **environment}
-        with (self.folder / "server.log").open("ab") as log:
-            self.process = subprocess.Popen(command, env=env, stdout=log, stderr=log)
-        for _ in range(200):
-            if not refuses(self.port):
-                return
-            assert self.process.poll() is None, (self.folder / "server.log").read_text()[-3000:]
-            time.sleep(0.05)
-        raise AssertionError("the server did not start")
+        self.process = self.launch(environment)
+        until = time.monotonic() + PATIENCE_S
+        try:
+            while refuses(self.port):
+                assert self.process.is_alive(), (self.folder / "server.log").read_text()[-3000:]
+                assert time.monotonic() < until, "the server did not start"
+                time.sleep(0.02)
+        except BaseException:
+            self.process.kill()
+            self.process.join()
+            raise
 
     def stop(self) -> None:
         """Really stopped: the process is gone and the port refuses."""
         if self.process:
             self.process.terminate()
-            self.process.wait(10)
+            self.process.join(PATIENCE_S)
+            assert not self.process.is_alive(), "the server does not stop"
+            self.process.close()
             self.process = None
         assert refuses(self.port)
 
@@ -144,7 +184,7 @@ class Tablet:
         self.context = self.playwright.chromium.launch_persistent_context(
             str(self.profile), executable_path=CHROMIUM, args=ARGS, headless=True, **options
         )
-        self.context.set_default_timeout(15_000)
+        self.context.set_default_timeout(PATIENCE_S * 1000)
         for script in scripts:
             self.context.add_init_script(script)
         self.page = self.context.pages[0]
@@ -170,22 +210,25 @@ class Tablet:
         self.page.evaluate("async () => { await navigator.serviceWorker.ready; }")
         if not self.page.evaluate("() => Boolean(navigator.serviceWorker.controller)"):
             self.page.reload()
-        for _ in range(100):
-            if self.host("open")["health"]["offline_ready"]:
-                return
+        until = time.monotonic() + PATIENCE_S
+        while not self.host("open")["health"]["offline_ready"]:
+            assert time.monotonic() < until, "the app files did not come aboard"
             self.page.wait_for_timeout(100)
-        raise AssertionError("the app files did not come aboard")
 
     def until(self, script: str, arg: Any = None) -> None:
         """Until an async script gives something true. (wait_for_function takes a promise for true.)"""
-        for _ in range(150):
-            if self.page.evaluate(script, arg):
-                return
+        until = time.monotonic() + PATIENCE_S
+        while not self.page.evaluate(script, arg):
+            assert time.monotonic() < until, f"never came true: {script}"
             self.page.wait_for_timeout(100)
-        raise AssertionError(f"never came true: {script}")
 
     def host(self, name: str, *args: Any) -> Any:
         return self._told(self.page.evaluate(CALL, [name, list(args)]))
+
+    def sync(self) -> Any:
+        """A pass that began after this was asked for: one that is under way may have looked before the last event."""
+        self.host("sync")
+        return self.host("sync")
 
     def run(self, run: str, name: str, *args: Any) -> Any:
         return self._told(self.page.evaluate(RUN, [run, name, list(args)]))
@@ -226,9 +269,9 @@ class Tablet:
         assert pids, "no browser to kill"
         for pid in pids:
             with_suppressed(lambda pid=pid: os.kill(pid, signal.SIGKILL))
-        for _ in range(100):
-            if not self.pids():
-                break
+        until = time.monotonic() + PATIENCE_S
+        while self.pids():
+            assert time.monotonic() < until, "the browser cannot be killed"
             time.sleep(0.05)
         with_suppressed(self.context.close)
         for lock in ("SingletonLock", "SingletonSocket", "SingletonCookie"):

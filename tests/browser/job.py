@@ -5,11 +5,12 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
-from driving import Tablet
+from driving import PATIENCE_S, Tablet
 
 #: what the page knows of its run, read from the same host module that the screens use
 LOOK = """async (run) => {
@@ -17,6 +18,14 @@ LOOK = """async (run) => {
   const open = await host.openRun(run);
   return JSON.parse(JSON.stringify({ state: open.state, progress: open.progress() }));
 }"""
+
+
+#: until the page has drawn a frame so many ms later, so that what it does in its frames has been done by then
+HELD = """(ms) => new Promise((go) => {
+  const from = performance.now();
+  const look = () => requestAnimationFrame(() => (performance.now() - from < ms ? look() : requestAnimationFrame(go)));
+  look();
+})"""
 
 
 class Screens:
@@ -94,13 +103,13 @@ class Screens:
     # ---- a run -----------------------------------------------------------------------------------------------------
 
     def hold(self) -> None:
-        """Press the held button for a little over a second."""
+        """Press the held button for a little over a second of the page's own time."""
         target = self.page.locator("[data-hold]").last
         target.scroll_into_view_if_needed()
         box = target.bounding_box()
         self.page.mouse.move(box["x"] + box["width"] / 2, box["y"] + box["height"] / 2)
         self.page.mouse.down()
-        self.page.wait_for_timeout(1300)
+        self.page.evaluate(HELD, 1050)
         self.page.mouse.up()
 
     def first(self) -> None:
@@ -135,11 +144,12 @@ class Screens:
 
     def moved_on(self, seq: int) -> None:
         """Until something was recorded after event `seq`."""
-        for _ in range(200):
-            if self.look()["state"]["seq"] > seq:
-                return
+        until = time.monotonic() + PATIENCE_S
+        while self.look()["state"]["seq"] <= seq:
+            assert time.monotonic() < until, (
+                f"nothing was recorded after event {seq}: {self.page.inner_text('body')[:600]}"
+            )
             self.page.wait_for_timeout(50)
-        raise AssertionError(f"nothing was recorded after event {seq}: {self.page.inner_text('body')[:600]}")
 
     def answer(self, seen: dict[str, Any], picture: Path | None) -> None:
         page, step = self.page, seen["progress"]["step"]

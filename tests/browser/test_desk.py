@@ -18,7 +18,7 @@ from typing import Any
 import pytest
 from axe_playwright_python.sync_playwright import Axe
 from desk_in_tests import Desk
-from driving import CHROMIUM
+from driving import CHROMIUM, PATIENCE_S
 from station_in_tests import PASSPHRASE, PASSWORD, app, bare, cheap_passwords, held
 from werkzeug.serving import make_server
 
@@ -76,6 +76,7 @@ def served(app: Any) -> Iterator[tuple[Desk, str]]:
 def at(request: Any, playwright_here: Any, served: tuple[Desk, str]) -> Iterator[At]:
     browser = playwright_here.chromium.launch(executable_path=CHROMIUM, args=ARGUMENTS)
     context = browser.new_context(color_scheme=request.param, viewport={"width": 1280, "height": 800})
+    context.set_default_timeout(PATIENCE_S * 1000)
     made = At(context.new_page(), served[1])
     yield made
     complaints = list(made.complaints)
@@ -87,7 +88,7 @@ def says(at: At, part: str, words: str) -> None:
     """Wait until the status line of a part says so; fails with what it says instead."""
     line = at.page.locator(f'[data-part="{part}"] [data-says]')
     try:
-        line.filter(has_text=words).wait_for(timeout=30_000)
+        line.filter(has_text=words).wait_for()
     except Exception as late:
         raise AssertionError(f"{part} says: {line.text_content()!r}") from late
 

@@ -10,6 +10,8 @@ import pytest
 
 pytestmark = pytest.mark.browser
 
+#: whether the worker's one try to take the files is over, and nothing came of it
+GIVEN_UP = "async () => { const made = await navigator.serviceWorker.getRegistration(); return !made || !(made.installing || made.waiting || made.active); }"
 CACHES = "async () => (await caches.keys()).filter((name) => name.startsWith('fieldkit-shell-'))"
 IDB_ROWS = """async () => {
   const db = await new Promise((go) => { const r = indexedDB.open("fieldkit"); r.onsuccess = () => go(r.result); });
@@ -68,8 +70,9 @@ def test_nothing_is_kept_when_one_file(tablet, server, what, spoil):
     tablet.launch()
     tablet.context.route("**/css/pages.css", route)
     tablet.open()
-    tablet.page.wait_for_timeout(1500)
-    assert any(spoiled)
+    while not spoiled:
+        tablet.page.wait_for_timeout(100)
+    tablet.until(GIVEN_UP)
     assert tablet.host("open")["health"]["offline_ready"] is False
     assert not controlled(tablet.page)
     assert tablet.page.evaluate(CACHES) == []
@@ -124,7 +127,8 @@ def test_the_worker_leaves_the_desk_the_calls_and_ranges_alone(tablet, server):
 def test_a_dead_link_does_not_keep_the_page_from_opening(tablet, server):
     tablet.ready()
     tablet.context.route("**/*", lambda route: None)  # never answered
-    tablet.page.goto(server.url + "/app/", wait_until="commit", timeout=2000)
+    # less than the worker waits for a network where a file is missing: it may not have asked at all
+    tablet.page.goto(server.url + "/app/", wait_until="commit", timeout=7000)
     assert tablet.page.evaluate("() => document.documentElement.dataset.build")
     tablet.context.unroute_all(behavior="ignoreErrors")
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import random
 from pathlib import Path
 
 import pytest
@@ -33,6 +34,16 @@ for (const name of ["put", "add"]) {
 def texts(tablet, run):
     """The run's events as the tablet has them: (seq, kind, sha256)."""
     return [(e["seq"], e["kind"], e["sha256"]) for e in tablet.run(run, "events")]
+
+
+#: whether the second copy has so many events of the one run; it follows the database, which does not wait for it
+MIRRORED = """async (count) => {
+  try {
+    const root = await (await navigator.storage.getDirectory()).getDirectoryHandle("fieldkit");
+    for await (const [, file] of await root.getDirectoryHandle("heads")) return JSON.parse(await (await file.getFile()).text()).seq + 1 >= count;
+  } catch { /* not there yet, or just being written */ }
+  return false;
+}"""
 
 
 def take_picture(tablet, run, width=2400, height=1200):
@@ -98,7 +109,7 @@ def test_a_draft_and_a_picture_survive_a_killed_browser(tablet):
 
 def with_little_room(tablet, server, room):
     """A fresh browser on the same profile with `room` bytes left. Chromium asks for the quota once in a while only,
-    so it has to be set before the first write."""
+    so it has to be set before the first write. The app files are aboard by then, or they would take of the room."""
     tablet.close()
     tablet.launch()
     cdp = tablet.context.new_cdp_session(tablet.page)
@@ -109,6 +120,7 @@ def with_little_room(tablet, server, room):
 
 
 def test_a_full_tablet_says_not_saved_and_keeps_the_chain(tablet, server):
+    tablet.ready()
     tablet.enrol()
     run = tablet.begin()
     cdp = with_little_room(tablet, server, 1_000_000)
@@ -132,6 +144,7 @@ def test_the_start_of_a_run_asks_to_keep_storage_and_measures_that_bytes_stay(ta
 
 
 def test_the_start_of_a_run_finds_that_storage_is_nearly_full(tablet, server):
+    tablet.ready()
     tablet.enrol()
     with_little_room(tablet, server, 3_000_000)
     health = tablet.run(tablet.begin("B1", "T-01"), "state")["started"]["tablet"]
@@ -146,13 +159,14 @@ def test_an_emptied_database_is_noticed_and_restored_from_the_second_copy(tablet
     for n in range(18):
         tablet.command(run, do="remarked", step="volts", text=f"remark {n}")
     before = texts(tablet, run)
-    tablet.page.wait_for_timeout(500)  # the mirror follows the database, it is not waited for
+    tablet.until(MIRRORED, len(before))
     tablet.close()
     server.stop()
     folders = [p for p in (tablet.profile / "Default" / "IndexedDB").rglob("*.leveldb") if p.is_dir()]
     assert folders
     for file in [f for folder in folders for f in folder.iterdir() if f.is_file()]:
-        file.write_bytes(os.urandom(max(64, file.stat().st_size)))
+        # by its name, so that every run of this test finds the same damage
+        file.write_bytes(random.Random(file.name).randbytes(max(64, file.stat().st_size)))
     tablet.launch()
     tablet.open()
     opened = tablet.host("open")
@@ -181,7 +195,7 @@ def test_a_second_copy_that_is_short_too_is_said_and_the_run_is_closed_to_writin
     run = tablet.begin()
     for n in range(5):
         tablet.command(run, do="remarked", step="look", text=f"remark {n}")
-    tablet.page.wait_for_timeout(500)
+    tablet.until(MIRRORED, len(texts(tablet, run)))
     spoil = """async (run) => {
       const root = await (await navigator.storage.getDirectory()).getDirectoryHandle("fieldkit");
       const runs = await root.getDirectoryHandle("runs");
@@ -251,7 +265,7 @@ def test_the_second_copy_needs_no_createwritable(tablet):
     tablet.open()
     tablet.enrol()
     run = tablet.begin()
-    tablet.page.wait_for_timeout(500)
+    tablet.until(MIRRORED, 2)
     lines = tablet.page.evaluate(
         """async () => {
           const root = await (await navigator.storage.getDirectory()).getDirectoryHandle("fieldkit");

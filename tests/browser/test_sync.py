@@ -33,15 +33,20 @@ def begun(tablet, remarks=3):
     return run
 
 
+SYNCED = """async (run) => {
+  const host = await import(document.querySelector("script[type=module]").src.replace("main.js", "host.js"));
+  return (await host.open()).runs.find((r) => r.run === run).synced;
+}"""
+
+
 def quiet(tablet):
-    """No pass but those the test asks for: what the loop has under way is over."""
-    tablet.page.wait_for_timeout(300)
-    tablet.host("sync")
+    """All that was recorded so far is there."""
+    assert tablet.sync()["state"] == "received"
 
 
 def test_received_is_said_only_after_a_receipt_for_the_very_same_bytes(tablet, server):
     run = begun(tablet)
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert said["state"] == "received" and said["oldestUnsynced"] is None
     assert there(server, run) == local(tablet, run)
     assert row(tablet, run)["synced"] is True
@@ -60,13 +65,13 @@ def test_a_lost_reply_makes_no_duplicate_and_no_false_received(tablet, server):
 
     tablet.context.route("**/api/runs/*/events", commit_and_drop)
     tablet.command(run, do="remarked", step="look", text="the reply to this is lost")
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert lost and lost[0] == 200
     assert said["state"] == "unreachable"
     assert row(tablet, run)["synced"] is False
     assert there(server, run) == local(tablet, run)
     tablet.context.unroute_all()
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     assert there(server, run) == local(tablet, run)
     assert row(tablet, run)["synced"] is True
 
@@ -98,16 +103,17 @@ STRANGERS = {
 def test_on_the_line_is_not_success(tablet, server, what):
     run = begun(tablet, remarks=1)
     quiet(tablet)
-    tablet.command(run, do="remarked", step="look", text="not there yet")
     before = row(tablet, run)["acked"]
+    # the stranger is there before the event: the loop sends by itself soon after one
     tablet.context.route("**/api/**", lambda route: route.fulfill(**STRANGERS[what]))
-    said = tablet.host("sync")
+    tablet.command(run, do="remarked", step="look", text="not there yet")
+    said = tablet.sync()
     assert tablet.page.evaluate("() => navigator.onLine") is True
     assert said["state"] == "unreachable", said
     assert said["oldestUnsynced"] is not None
     assert row(tablet, run)["acked"] == before
     tablet.context.unroute_all()
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     assert there(server, run) == local(tablet, run)
 
 
@@ -122,8 +128,13 @@ def test_a_receipt_by_another_key_or_for_other_bytes_moves_nothing(tablet, serve
 
     run = begun(tablet)
     quiet(tablet)
-    tablet.command(run, do="remarked", step="look", text="one more")
     acked = row(tablet, run)["acked"]
+    answer = {}
+    # what answers is there before the event: the loop sends by itself soon after one
+    tablet.context.route(
+        "**/api/runs/*/events", lambda route: route.fulfill(**answer) if answer else route.abort("connectionreset")
+    )
+    tablet.command(run, do="remarked", step="look", text="one more")
     chain = tablet.run(run, "state")["chain"]
     mine = local(tablet, run)
     with server.inside():
@@ -144,20 +155,17 @@ def test_a_receipt_by_another_key_or_for_other_bytes_moves_nothing(tablet, serve
         (right, {**good, "seq": 0}),
     ]
     for key, claims in bad:
-        token = receipts.make(key, **claims)
-        answer = {"receipt": token, "have": seq, "kept": []}
-
-        forged = {
-            "status": 200,
-            "headers": {"X-Fieldkit": "1", "Content-Type": "application/json"},
-            "body": json.dumps(answer),
-        }
-        tablet.context.route("**/api/runs/*/events", partial(fulfil, forged))
-        said = tablet.host("sync")
+        forged = {"receipt": receipts.make(key, **claims), "have": seq, "kept": []}
+        answer.update(
+            status=200,
+            headers={"X-Fieldkit": "1", "Content-Type": "application/json"},
+            body=json.dumps(forged),
+        )
+        said = tablet.sync()
         assert said["state"] == "refused", claims
         assert row(tablet, run)["acked"] == acked, claims
-        tablet.context.unroute_all()
-    assert tablet.host("sync")["state"] == "received"
+    tablet.context.unroute_all()
+    assert tablet.sync()["state"] == "received"
 
 
 def test_batches_are_halved_until_they_pass_and_the_chain_arrives_whole(tablet, server):
@@ -175,7 +183,7 @@ def test_batches_are_halved_until_they_pass_and_the_chain_arrives_whole(tablet, 
     tablet.context.route("**/api/runs/*/events", narrow)
     for n in range(20):
         tablet.command(run, do="remarked", step="look", text=f"remark {n} " + "x" * 300)
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert said["state"] == "received"
     assert max(sizes) > 3_000 and min(sizes) <= 3_000
     assert there(server, run) == local(tablet, run)
@@ -188,7 +196,7 @@ def test_a_server_restored_from_an_older_copy_gets_the_rest_again(tablet, server
     shutil.copytree(server.folder, tmp_path / "copy")
     server.start()
     tablet.command(run, do="remarked", step="look", text="after the copy")
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     whole = there(server, run)
     server.stop()
     shutil.rmtree(server.folder)
@@ -196,7 +204,7 @@ def test_a_server_restored_from_an_older_copy_gets_the_rest_again(tablet, server
     server.start()
     assert len(there(server, run)) == len(whole) - 1
     tablet.command(run, do="remarked", step="look", text="after the restore")
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     assert there(server, run) == local(tablet, run)
 
 
@@ -210,13 +218,13 @@ def test_what_the_server_keeps_but_cannot_accept_is_shown_and_stays(tablet, serv
         # the tablet signed what it made; a stranger in between cannot change it unseen
         route.continue_(post_data=json.dumps(sent))
 
-    tablet.command(run, do="remarked", step="look", text="with two hands")
     tablet.context.route("**/api/runs/*/events", spoil)
-    said = tablet.host("sync")
+    tablet.command(run, do="remarked", step="look", text="with two hands")
+    said = tablet.sync()
     assert said["state"] == "refused" and row(tablet, run)["synced"] is False
     assert row(tablet, run)["trouble"]["says"]
     tablet.context.unroute_all()
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     assert row(tablet, run)["trouble"] is None
 
 
@@ -229,7 +237,7 @@ def test_a_revoked_tablet_keeps_everything_and_says_why(tablet, server):
 
         devices.revoke(HOUSE, tablet.host("open")["device"]["device"], "left on a train")
     tablet.command(run, do="remarked", step="look", text="recorded all the same")
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert said["state"] == "refused" and "put out of use" in said["says"]
     assert len(local(tablet, run)) == 4 and row(tablet, run)["synced"] is False
 
@@ -243,7 +251,7 @@ def test_pictures_travel_by_hash_and_count_when_their_receipt_holds(tablet, serv
     picture = take_picture(tablet, run)
     names = ("sha256", "media", "width", "height", "size")
     tablet.command(run, do="pictured", step="photo", **{name: picture[name] for name in names}, note="")
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert said["state"] == "received", said
     with server.inside():
         from fieldkit.store.db import db
@@ -261,10 +269,7 @@ def test_sync_goes_on_by_itself_when_the_server_is_back(tablet, server):
     assert row(tablet, run)["synced"] is False
     server.start()
     tablet.page.evaluate("() => window.dispatchEvent(new Event('online'))")
-    for _ in range(50):
-        if row(tablet, run)["synced"]:
-            break
-        tablet.page.wait_for_timeout(100)
+    tablet.until(SYNCED, run)
     assert there(server, run) == local(tablet, run)
 
 
@@ -283,7 +288,7 @@ def test_a_wrong_server_is_not_taken_for_ours(tablet, server, station_folder, tm
     subprocess.run([sys.executable, str(HERE / "small_station.py"), "build", str(server.folder)], check=True, env=env)
     server.start()
     tablet.command(run, do="remarked", step="look", text="for the first server only")
-    said = tablet.host("sync")
+    said = tablet.sync()
     assert said["state"] == "refused" and row(tablet, run)["synced"] is False
     assert server.events(run) == []
 
@@ -303,7 +308,7 @@ def test_what_the_desk_returned_stays_readable_without_the_server(tablet, server
     tablet.context.route(
         "**/api/inbox", partial(fulfil, {"status": 200, "headers": headers, "body": json.dumps(answer)})
     )
-    tablet.host("sync")
+    tablet.sync()
     tablet.context.unroute_all()
     server.stop()
     tablet.reopen_page()
@@ -326,7 +331,7 @@ def test_a_page_that_is_too_old_sends_but_begins_nothing(tablet, server):
     with pytest.raises(Refused, match="app-too-old"):
         tablet.begin("B1", "T-01")
     tablet.command(run, do="remarked", step="look", text="goes on")
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     assert there(server, run) == local(tablet, run)
 
 
@@ -379,13 +384,16 @@ def test_a_wrong_passphrase_says_so_slows_down_and_locks_nobody_out(tablet, serv
     from driving import PASS, Refused
 
     tablet.enrol("vell")
+    tablet.page.clock.install()
+    tablet.reopen_page()
+    tablet.page.clock.pause_at(tablet.page.evaluate("() => Date.now() / 1000") + 1)
     with pytest.raises(Refused) as first:
         tablet.host("unlockPerson", "vell", "not this one at all")
     assert first.value.code == "wrong-passphrase" and first.value.wait_s == 1
     with pytest.raises(Refused) as second:
         tablet.host("unlockPerson", "vell", PASS["vell"])
     assert second.value.code == "too-soon" and second.value.wait_s == 1
-    tablet.page.wait_for_timeout(1100)
+    tablet.page.clock.run_for(1100)
     assert tablet.host("unlockPerson", "vell", PASS["vell"]) is True
 
 
@@ -399,7 +407,7 @@ def test_the_server_finds_every_signature_of_the_run_good(tablet, server):
         run, "sign", {"person": "vell", "passphrase": PASS["vell"], "meaning": "performed", "statement": "So far."}
     )
     assert signed["state"]["signatures"][-1]["person"] == "vell"
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     with server.inside():
         from sqlalchemy import select
 
@@ -408,6 +416,13 @@ def test_the_server_finds_every_signature_of_the_run_good(tablet, server):
 
         rows = list(db.session.scalars(select(SignatureRow).where(SignatureRow.run == run)))
         assert [(r.person, r.meaning, r.holds) for r in rows] == [("vell", "performed", True)], [r.says for r in rows]
+
+
+#: more than so many events are stored
+RECORDED = """async ([run, before]) => {
+  const host = await import(document.querySelector("script[type=module]").src.replace("main.js", "host.js"));
+  return (await host.openRun(run)).events.length > before;
+}"""
 
 
 @pytest.mark.parametrize(
@@ -425,7 +440,10 @@ def test_sleep_is_told_from_a_short_absence(tablet, server, lever, kinds):
     before = len(local(tablet, run))
     lever(tablet.page.clock)
     tablet.page.clock.run_for(11_000)
-    tablet.page.wait_for_timeout(500)
+    if kinds:
+        tablet.until(RECORDED, [run, before])
+    else:
+        tablet.page.wait_for_timeout(500)
     assert [e["kind"] for e in tablet.run(run, "events")][before:] == kinds
 
 
@@ -439,7 +457,7 @@ def test_a_clock_that_somebody_sets_is_an_event_and_order_stays_by_number(tablet
     now = tablet.page.evaluate("() => Date.now() / 1000")
     tablet.page.clock.set_system_time(now + hours * 3600)
     tablet.page.clock.run_for(11_000)
-    tablet.page.wait_for_timeout(500)
+    tablet.until(RECORDED, [run, before])
     happened = tablet.run(run, "events")[before:]
     assert [e["kind"] for e in happened] == ["clock-changed"]
     parted = float(happened[0]["body"]["wall_s"]) - float(happened[0]["body"]["mono_s"])

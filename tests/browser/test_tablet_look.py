@@ -12,6 +12,8 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from driving import PATIENCE_S
+from job import HELD
 from look_play import Play
 from look_server import LookServer, scene
 
@@ -39,7 +41,7 @@ def browser(playwright_here: Any) -> Any:
 def page(browser: Any) -> Any:
     context = browser.new_context(viewport={"width": 820, "height": 1180})
     made = context.new_page()
-    made.set_default_timeout(8000)
+    made.set_default_timeout(PATIENCE_S * 1000)
     wrong: list[str] = []
     made.on("console", lambda m: wrong.append(m.text) if "Content Security Policy" in m.text else None)
     made.on("pageerror", lambda e: wrong.append(str(e)))
@@ -64,14 +66,34 @@ def commands(page: Any) -> list[dict[str, Any]]:
     return [c for c in page.evaluate("() => globalThis.commands") if c["do"] != "start"]
 
 
-def hold(page: Any, ms: int = 1300, slide: bool = False) -> None:
-    box = page.locator("[data-hold]").last.bounding_box()
+def on_hold(page: Any) -> dict[str, float]:
+    """The pointer on the button that is held; its box."""
+    box: dict[str, float] = page.locator("[data-hold]").last.bounding_box()
     page.mouse.move(box["x"] + 30, box["y"] + box["height"] / 2)
+    return box
+
+
+def hold(page: Any) -> None:
+    """Held long enough by the page's own time."""
+    on_hold(page)
+    page.mouse.down()
+    page.evaluate(HELD, 1050)
+    page.mouse.up()
+
+
+def stop_clock(page: Any) -> None:
+    """From now on the page's time goes on only by `page.clock.run_for`; the clock was installed before the page was opened."""
+    page.clock.pause_at(page.evaluate("() => Date.now() / 1000") + 1)
+
+
+def held_for(page: Any, ms: int, slide: bool = False) -> None:
+    """Held for exactly so long by a stopped clock, sliding off after 300 ms if said."""
+    box = on_hold(page)
     page.mouse.down()
     if slide:
-        page.wait_for_timeout(300)
+        page.clock.run_for(300)
         page.mouse.move(box["x"] + 30, box["y"] - 60)
-    page.wait_for_timeout(ms)
+    page.clock.run_for(ms)
     page.mouse.up()
 
 
@@ -165,9 +187,11 @@ def opened(page: Any, server: LookServer, name: str) -> None:
     show(page, server, make(), hash_)
     if act:
         act(page)
-    page.wait_for_timeout(150)
+    page.evaluate(SETTLED)
 
 
+#: until the fonts are there and two frames are drawn with them
+SETTLED = "() => document.fonts.ready.then(() => new Promise((go) => requestAnimationFrame(() => requestAnimationFrame(go))))"
 SIZES = """() => [...document.querySelectorAll("button, a, input, textarea, select")].filter((n) => n.checkVisibility() && !n.disabled && n.getClientRects().length).map((n) => {
   const box = n.getBoundingClientRect();
   return { what: n.outerHTML.slice(0, 120), high: Math.round(box.height), wide: Math.round(box.width), main: n.matches("[data-first], .key, .way, [data-hold], .makesafe") };
@@ -180,7 +204,7 @@ def test_in_a_very_narrow_window_nothing_is_wider_than_the_screen(page: Any, ser
     """Axe, target sizes and the three widths of the studies are swept in test_axe.py."""
     opened(page, server, name)
     page.set_viewport_size({"width": 320, "height": 640})
-    page.wait_for_timeout(80)
+    page.evaluate(SETTLED)
     for one in page.evaluate(SIZES):
         assert one["high"] >= (54 if one["main"] else 48) and one["wide"] >= 44, (name, one)
     assert page.evaluate(TOO_WIDE) == [], name
@@ -200,7 +224,7 @@ def test_make_safe_is_in_reach_on_every_page_of_a_run_and_opening_it_records_not
     opened(page, server, name)
     for w, h in (*WIDTHS.values(), (320, 640), (1024, 500)):
         page.set_viewport_size({"width": w, "height": h})
-        page.wait_for_timeout(60)
+        page.evaluate(SETTLED)
         assert page.evaluate(HIT), (name, w)
         page.evaluate("() => document.querySelector('[data-strip]').scrollTo(0, 99999)")
         assert page.evaluate(HIT), (name, w, "scrolled")
@@ -277,12 +301,16 @@ def test_enter_arrows_and_wheel_change_and_record_nothing(page: Any, server: Loo
 
 
 def test_saved_is_said_only_once_it_is_so_and_received_only_on_a_receipt(page: Any, server: LookServer) -> None:
+    page.clock.install()
     show(page, server, at("heater_left", slow=700))
     assert page.inner_text("[data-saved]").startswith("Saved on this tablet")
     page.fill("[data-typed]", "6.30")
+    stop_clock(page)
     page.click("[data-first]")
-    page.wait_for_function("() => document.querySelector('[data-saved]').textContent === 'Saving'")
+    page.clock.run_for(690)
+    assert page.locator("[data-saved]").text_content() == "Saving"
     assert commands(page)[-1]["do"] == "read"
+    page.clock.resume()
     page.wait_for_function("() => document.querySelector('[data-saved]').textContent.startsWith('Saved on this tablet')")
     page.evaluate("() => globalThis.synced('received')")
     page.wait_for_function("() => document.querySelector('[data-saved]').textContent.startsWith('Received by the server')")
@@ -340,32 +368,42 @@ def test_a_correction_stands_in_the_row_it_corrects_the_old_value_struck_through
 
 
 def test_press_and_hold_takes_a_whole_second_and_sliding_off_or_letting_go_does_nothing(page: Any, server: LookServer) -> None:
+    page.clock.install()
     show(page, server, at("danger_deck"))
-    hold(page, 600)
-    hold(page, 1200, slide=True)
-    page.wait_for_timeout(200)
+    stop_clock(page)
+    held_for(page, 600)
+    held_for(page, 980)
+    held_for(page, 1200, slide=True)
+    page.clock.run_for(2000)
     assert commands(page) == []
-    hold(page, 1250)
+    held_for(page, 1040)
+    page.clock.resume()
     page.wait_for_function("() => globalThis.commands.length === 1")
     assert commands(page)[0]["heard"] == ["vell", "arkle"]
 
 
 def test_press_and_hold_works_by_keyboard_and_by_a_screen_readers_two_clicks(page: Any, server: LookServer) -> None:
+    page.clock.install()
     show(page, server, at("danger_deck"))
+    stop_clock(page)
     page.focus("[data-hold]")
     page.keyboard.down("Space")
-    page.wait_for_timeout(400)
+    page.clock.run_for(400)
     page.keyboard.up("Space")
-    page.wait_for_timeout(900)
+    page.clock.run_for(900)
     assert commands(page) == []
     page.keyboard.down("Space")
-    page.wait_for_timeout(1300)
+    page.clock.run_for(1040)
     page.keyboard.up("Space")
+    page.clock.resume()
     page.get_by_role("heading", name="WARNING: Ion pump at 3.7 kV, and strong magnets").wait_for(state="attached")
+    stop_clock(page)
     page.evaluate("() => document.querySelector('[data-hold]').click()")
-    page.wait_for_function("() => document.querySelector('[data-alert]').textContent.includes('once more')")
+    page.clock.run_for(100)
+    assert "once more" in page.locator("[data-alert]").text_content()
     assert len(commands(page)) == 1
     page.evaluate("() => document.querySelector('[data-hold]').click()")
+    page.clock.resume()
     page.wait_for_function("() => globalThis.commands.length === 2")
 
 

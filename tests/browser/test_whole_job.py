@@ -9,7 +9,6 @@ import json
 import os
 import subprocess
 import sys
-import time
 from concurrent.futures import ThreadPoolExecutor
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
@@ -17,7 +16,7 @@ from typing import Any
 
 import forgeries
 import pytest
-from driving import ARGS, CHROMIUM, ROOT, Server, Tablet, refuses
+from driving import ARGS, CHROMIUM, PATIENCE_S, ROOT, Fresh, Server, Tablet, refuses
 from job import Screens
 
 from fieldkit.demo import build, readings
@@ -38,17 +37,10 @@ ANSWERS = {**readings.WARM_UP, "history": "cold", "coolant_flow": ["38.0", "48.2
 class Real(Server):
     """`fieldkit serve` over the test's data folder."""
 
-    def start(self, **environment: str) -> None:
+    def launch(self, environment: dict[str, str]) -> Any:
         command = [sys.executable, "-m", "fieldkit.cli.main", "serve", "--plain-http", "--data", str(self.folder)]
-        env = {**os.environ, "PYTHONPATH": str(ROOT)}
-        with (self.folder / "server.log").open("ab") as log:
-            self.process = subprocess.Popen([*command, "--port", str(self.port)], env=env, stdout=log, stderr=log)
-        for _ in range(600):
-            if not refuses(self.port):
-                return
-            assert self.process.poll() is None, (self.folder / "server.log").read_text()[-3000:]
-            time.sleep(0.05)
-        raise AssertionError("the server did not start")
+        more = {"PYTHONPATH": str(ROOT), **environment}
+        return Fresh([*command, "--port", str(self.port)], self.folder / "server.log", more)
 
 
 @pytest.fixture
@@ -67,7 +59,7 @@ def desk(playwright_here: Any, server: Real) -> Any:
     """The supervisor's browser, another machine than the tablet."""
     browser = playwright_here.chromium.launch(executable_path=CHROMIUM, args=ARGS)
     page = browser.new_context(viewport={"width": 1280, "height": 800}, accept_downloads=True).new_page()
-    page.set_default_timeout(30_000)
+    page.set_default_timeout(PATIENCE_S * 1000)
     page.seen = []
     page.on("console", lambda m: page.seen.append(m.text) if "Content Security Policy" in m.text else None)
     yield page
@@ -90,8 +82,8 @@ def issue_all(desk: Any, server: Real) -> None:
         form = desk.locator("form", has=desk.get_by_role("button", name="Open the authority")).first
         form.locator("input[type=password]").fill(SIGNS.authority)
         form.locator("input[name=note]").fill("known in person")
-        form.get_by_role("button", name="Open the authority").click()
-        desk.wait_for_load_state()
+        with desk.expect_navigation():
+            form.get_by_role("button", name="Open the authority").click()
 
 
 def wall(tablet: Tablet) -> datetime:
@@ -145,16 +137,16 @@ def test_the_whole_job(playwright_here: Any, server: Real, desk: Any, tmp_path: 
 
     # the network comes back
     server.start()
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
     sign_in(desk, server, "orme")
     desk.goto(f"{server.url}/desk/records/{screens.run}")
     desk.get_by_role("link", name="Return with a reason").click()
     desk.locator("textarea").fill("Say which meters the picture shows.")
-    desk.get_by_role("button", name="Return the record").click()
-    desk.wait_for_load_state()
+    with desk.expect_navigation():
+        desk.get_by_role("button", name="Return the record").click()
 
     # taken up again on the tablet, put right, signed again
-    tablet.host("sync")
+    tablet.sync()
     tablet.open()
     tablet.page.locator(f"[data-run='{screens.run}']").click()
     tablet.page.locator("[data-reopen]").click()
@@ -162,7 +154,7 @@ def test_the_whole_job(playwright_here: Any, server: Real, desk: Any, tmp_path: 
     tablet.page.get_by_role("dialog").get_by_role("textbox").fill("The picture shows DM-04, DM-05 and DM-06.")
     tablet.page.get_by_role("dialog").get_by_role("button", name="Record").click()
     screens.sign(PHRASE["vell"])
-    assert tablet.host("sync")["state"] == "received"
+    assert tablet.sync()["state"] == "received"
 
     pdf = countersign(desk, server, screens.run, tmp_path)
     assert tablet.violations == []

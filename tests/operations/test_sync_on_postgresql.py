@@ -1,6 +1,5 @@
 """Sync once more over PostgreSQL: replays, gaps, forks and threads end in the same tables there."""
 
-import os
 import random
 import threading
 
@@ -16,8 +15,8 @@ from fieldkit.store.tables import EventRow, KeptEvent, PendingEvent, RecordRow
 
 
 @pytest.fixture
-def database_url(request, postgresql):
-    return fresh_database(postgresql, f"s_{os.getpid()}_{abs(hash(request.node.nodeid)) % 10**9}")
+def database_url(postgresql):
+    return fresh_database(postgresql)
 
 
 def count(table):

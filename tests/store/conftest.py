@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -32,8 +31,7 @@ def store(request: pytest.FixtureRequest, tmp_path: Path) -> Iterator[Flask]:
     if request.param == "sqlite":
         app = start(f"sqlite:///{tmp_path / 'fieldkit.db'}")
     else:
-        name = f"t_{os.getpid()}_{abs(hash(request.node.nodeid)) % 10**9}"
-        app = start(fresh_database(request.getfixturevalue("postgresql"), name))
+        app = start(fresh_database(request.getfixturevalue("postgresql")))
     with app.app_context():
         yield app
         db.session.remove()

@@ -6,6 +6,7 @@ user to run it as, what needs it is skipped and says so.
 
 from __future__ import annotations
 
+import itertools
 import os
 import pwd
 import shutil
@@ -60,10 +61,14 @@ def postgresql() -> Iterator[str]:
         shutil.rmtree(folder, ignore_errors=True)
 
 
-def fresh_database(socket: str, name: str) -> str:
+_numbers = itertools.count(1)
+
+
+def fresh_database(socket: str) -> str:
     """The URL of a new, empty database."""
     import psycopg
 
+    name = f"fieldkit_{next(_numbers)}"
     with psycopg.connect(f"host={socket} user=fieldkit dbname=postgres", autocommit=True) as connection:
         connection.execute(f"CREATE DATABASE {name}")
     return f"postgresql+psycopg://fieldkit@/{name}?host={socket}"

@@ -6,7 +6,6 @@ import http.client
 import json
 import os
 import signal
-import socket
 import ssl
 import subprocess
 import sys
@@ -14,13 +13,9 @@ import time
 from pathlib import Path
 from typing import Any
 
+from ports import answers, free_port
+
 PASSWORD, PASSPHRASE = "four words make one", "correct horse battery staple"
-
-
-def free_port() -> int:
-    with socket.socket() as probe:
-        probe.bind(("127.0.0.1", 0))
-        return int(probe.getsockname()[1])
 
 
 def command(*more: str) -> list[str]:
@@ -47,15 +42,14 @@ class Serving:
             stderr=subprocess.STDOUT,
             start_new_session=True,
         )
-        until = time.monotonic() + 60
+        until = time.monotonic() + 120
         while not self.answers():
             assert self.process.poll() is None, Path(self.log.name).read_text()
             assert time.monotonic() < until, "the server does not begin to answer"
             time.sleep(0.1)
 
     def answers(self) -> bool:
-        with socket.socket() as probe:
-            return probe.connect_ex(("127.0.0.1", self.port)) == 0
+        return answers(self.port)
 
     def kill(self) -> None:
         """The process and its worker, at once and without warning."""
@@ -64,13 +58,13 @@ class Serving:
 
     def stop(self) -> int:
         self.process.send_signal(signal.SIGTERM)
-        code = self.process.wait(30)
+        code = self.process.wait(120)
         self._gone()
         return code
 
     def _gone(self) -> None:
-        self.process.wait(30)
-        until = time.monotonic() + 30
+        self.process.wait(120)
+        until = time.monotonic() + 120
         while self.answers():
             assert time.monotonic() < until, "the port still answers"
             time.sleep(0.05)
@@ -96,9 +90,9 @@ class Client:
     ) -> Answer:
         if self.authority:
             context = ssl.create_default_context(cafile=str(self.authority))
-            made: Any = http.client.HTTPSConnection("localhost", self.port, timeout=30, context=context)
+            made: Any = http.client.HTTPSConnection("localhost", self.port, timeout=120, context=context)
         else:
-            made = http.client.HTTPConnection("127.0.0.1", self.port, timeout=30)
+            made = http.client.HTTPConnection("127.0.0.1", self.port, timeout=120)
         try:
             more = {"Content-Type": content_type} if content_type else {}
             made.request(method, path, data, {**(headers or {}), **more})

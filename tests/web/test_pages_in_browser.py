@@ -53,6 +53,7 @@ def test_every_page_is_accessible_within_its_policy_and_its_width(address, chrom
     from axe_playwright_python.sync_playwright import Axe
 
     context = chromium.new_context(viewport={"width": width, "height": 900}, color_scheme=scheme)
+    context.set_default_timeout(90_000)
     page = context.new_page()
     page.add_init_script(
         "document.addEventListener('securitypolicyviolation', (e) => console.error('policy ' + e.blockedURI))"
@@ -72,8 +73,8 @@ def test_every_page_is_accessible_within_its_policy_and_its_width(address, chrom
     look("sign in")
     page.fill("#login", "orme")
     page.fill("#password", PASSWORD)
-    page.click("main button")
-    page.wait_for_load_state()
+    with page.expect_navigation(url=lambda url: "/signin" not in url):
+        page.click("main button")
     for path in PAGES:
         page.goto(address + path)
         look(path)
