@@ -27,7 +27,7 @@ def python(tmp_path_factory) -> Path:
     venv.create(place / "env", with_pip=False, symlinks=True)
     python = place / "env" / "bin" / "python"
     site = next((place / "env" / "lib").glob("python*/site-packages"))
-    subprocess.run([sys.executable, "-m", "pip", "install", "-q", "--no-deps", "--target", site, wheel], check=True, capture_output=True)
+    subprocess.run([sys.executable, "-m", "pip", "install", "-q", "--disable-pip-version-check", "--no-index", "--no-deps", "--target", site, wheel], check=True, capture_output=True)
     ours = Path(next(p for p in sys.path if p.endswith("site-packages")))
     # third-party packages by path; the editable fieldkit of this environment is shut out by its .pth not being read
     (site / "others.py").write_text("")

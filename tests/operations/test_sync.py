@@ -6,7 +6,7 @@ import threading
 
 import pytest
 from sqlalchemy import select, text
-from station_in_tests import PASSWORD, held, issue, jpeg, sheet, whole_run
+from station_in_tests import PASSWORD, held, issue, jpeg, patient, sheet, whole_run
 from tablet_in_python import RunOnTablet, TabletInPython
 
 from fieldkit.operations import devices, notices, records, runs
@@ -230,8 +230,9 @@ def test_a_chain_that_does_not_stand_on_its_sheet_is_kept(tablet, sheet_sha):
     assert answer["have"] == -1 and [k["code"] for k in answer["kept"]] == ["broken-chain"]
 
 
-def test_eight_threads_sending_the_same_and_other_runs_lose_and_double_nothing(app, tablet, sheet_sha):
+def test_eight_threads_sending_the_same_and_other_runs_lose_and_double_nothing(app, tablet, sheet_sha, monkeypatch):
     """Four runs, each sent by two threads at once, batch by batch."""
+    patient(app, monkeypatch)
     made = [whole_run(tablet, sheet_sha, f"260731-B2-7RUN{n}", remarks=20) for n in range(4)]
     failed = []
 

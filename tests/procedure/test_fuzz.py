@@ -122,7 +122,7 @@ def test_no_mutation_of_a_shipped_procedure_gives_a_traceback(mutate, formulas: 
 
 
 def hostile() -> dict[str, bytes]:
-    """Files made to hurt: each must be answered within a second."""
+    """Files made to hurt: each must be answered quickly all the same."""
     small = (STEPS / "act.yaml").read_text()
     deep = "steps:\n" + "".join(f"{'  ' * n}- when: heater on\n{'  ' * n}  steps:\n" for n in range(14))
     chain = "(" * 900 + "1 A" + ")" * 900
@@ -142,11 +142,25 @@ def hostile() -> dict[str, bytes]:
     }
 
 
-@pytest.mark.parametrize("name", hostile())
-def test_a_hostile_file_is_answered_within_a_second(name: str, formulas: Library) -> None:
-    data = hostile()[name]
+def spent(data: bytes, formulas: Library) -> float:
+    """Processor seconds that compiling takes."""
     begun = time.process_time()
+    compile_bytes(data, "timed.yaml", formulas)
+    return time.process_time() - begun
+
+
+@pytest.fixture(scope="module")
+def real(formulas: Library) -> float:
+    """What the largest shipped procedure takes here: machines differ, and a busy one is slow for both."""
+    data = max((path.read_bytes() for path in BIG), key=len)
+    return min(spent(data, formulas) for _ in range(5))
+
+
+@pytest.mark.parametrize("name", hostile())
+def test_a_hostile_file_takes_no_longer_than_a_few_real_ones(name: str, formulas: Library, real: float) -> None:
+    """Six times a real one was the most when this was written; what grows with the square would be hundreds."""
+    data = hostile()[name]
+    assert any(spent(data, formulas) < 20 * real for _ in range(3))
     sheet, problems = compile_bytes(data, "hostile.yaml", formulas)
-    assert time.process_time() - begun < 1.0
     assert sheet is None
     assert any(p.weight == "problem" for p in problems)

@@ -6,6 +6,7 @@ Pure functions of the file's bytes. Not here: what an insider does before sealin
 from __future__ import annotations
 
 import io
+import zlib
 
 import pikepdf
 from pyhanko.pdf_utils import generic
@@ -17,17 +18,31 @@ def flip(data: bytes, at: int) -> bytes:
     return data[:at] + bytes([data[at] ^ 1]) + data[at + 1 :]
 
 
-def stream_at(data: bytes, objid: int) -> int:
-    """Some byte in the middle of a stream's own bytes in the file."""
-    start = data.index(b"\n%d 0 obj" % objid)
-    return (data.index(b"stream\n", start) + data.index(b"endstream", start)) // 2
+def _flipped(data: bytes, objid: int) -> bytes:
+    """A bit flipped in the middle of a packed stream's own bytes in the file: at the first place that changes what it unpacks to."""
+    start = data.index(b"stream\n", data.index(b"\n%d 0 obj" % objid)) + len(b"stream\n")
+    end = data.index(b"endstream", start)
+    before = _unpacked(data[start:end])
+    for at in range((start + end) // 2, end):
+        forged = flip(data, at)
+        if _unpacked(forged[start:end]) != before:
+            return forged
+    raise AssertionError("no bit of the stream changes what it unpacks to")
+
+
+def _unpacked(packed: bytes) -> bytes | None:
+    """What a reader that forgives much makes of it, the checksum at the end included in what it forgives; None if nothing."""
+    try:
+        return zlib.decompressobj(wbits=-15).decompress(packed[2:])
+    except zlib.error:
+        return None
 
 
 def page(data: bytes, number: int = 1) -> bytes:
     """A byte of a page's content flipped."""
     with pikepdf.open(io.BytesIO(data)) as pdf:
         objid = pdf.pages[number].obj.Contents.objgen[0]
-    return flip(data, stream_at(data, objid))
+    return _flipped(data, objid)
 
 
 def attachment(data: bytes, begins: str = "picture-") -> bytes:
@@ -36,7 +51,7 @@ def attachment(data: bytes, begins: str = "picture-") -> bytes:
         names = list(pdf.Root.Names.EmbeddedFiles.Names)
         spec = next(s for label, s in zip(names[::2], names[1::2], strict=True) if str(label).startswith(begins))
         objid = spec.EF.F.objgen[0]
-    return flip(data, stream_at(data, objid))
+    return _flipped(data, objid)
 
 
 def _last_digit(data: bytes, field: str) -> int:

@@ -27,6 +27,7 @@ from fieldkit.operations.actor import HOUSE
 from fieldkit.sheet.controls import Remark
 from fieldkit.sheet.model import Sheet, Step
 from fieldkit.sheet.moves import Move
+from fieldkit.store import db as database
 from fieldkit.store.db import db
 from fieldkit.trust import keys
 from fieldkit.web.app import create_app
@@ -123,6 +124,13 @@ def inside(app: Flask) -> Iterator[Flask]:
     with app.app_context():
         yield app
         db.session.remove()
+
+
+def patient(app: Flask, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Connections made from now on wait long: on a slow disk eight who write without a pause keep one out for many seconds."""
+    monkeypatch.setattr(database, "BUSY_SECONDS", 300)
+    with app.app_context():
+        db.engine.dispose()
 
 
 def held(app: Flask) -> station.Station:
