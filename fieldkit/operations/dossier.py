@@ -14,7 +14,7 @@ from sqlalchemy import func, select
 
 from fieldkit import __version__
 from fieldkit.errors import Refusal
-from fieldkit.operations import runs, settings
+from fieldkit.operations import moment, runs, settings
 from fieldkit.operations.runs import Loaded
 from fieldkit.record import build, model, words
 from fieldkit.record.context import Check, Context, KeptEvent, LastRun, Returned, Reviewer
@@ -137,10 +137,12 @@ def _last_run(run: Run) -> dict[str, LastRun]:
     query = (
         select(Run)
         .where(Run.tube == run.tube, Run.procedure == run.procedure, Run.id != run.id, Run.rehearsal.is_(False))
-        .where(Run.phase.in_(("done", "stopped")), Run.started < run.started)
-        .order_by(Run.started.desc())
+        .where(Run.phase.in_(("done", "stopped")))
     )
-    before = db.session.scalars(query.limit(1)).first()
+    # as moments: the tablets' texts may have different offsets from UTC
+    begun = [(moment.order(one.started), one.id, one) for one in db.session.scalars(query)]
+    earlier = [one for one in begun if one[0] < moment.order(run.started)]
+    before = max(earlier)[2] if earlier else None
     if before is None or run.rehearsal:
         return {}
     try:

@@ -71,7 +71,7 @@ class Ready:
 def lines() -> list[Line]:
     """Every run whose record waits, was returned or is countersigned, and every open one; oldest first."""
     names = {p.id: p.name for p in db.session.scalars(select(Person))}
-    query = select(Run, RecordRow).outerjoin(RecordRow, RecordRow.run == Run.id).order_by(Run.started, Run.id)
+    query = select(Run, RecordRow).outerjoin(RecordRow, RecordRow.run == Run.id)
     found = []
     for run, record in db.session.execute(query):
         by, reason = _by(record, names) if record is not None else ("", "")
@@ -93,7 +93,7 @@ def lines() -> list[Line]:
                 reason=reason,
             )
         )
-    return sorted(found, key=lambda line: (line.since, line.run))
+    return sorted(found, key=lambda line: (moment.order(line.since), line.run))
 
 
 def _by(record: RecordRow, names: dict[str, str]) -> tuple[str, str]:

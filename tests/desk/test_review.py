@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import hashlib
 
 import played_run as play
@@ -38,7 +39,8 @@ def ready(desk: Desk, actor: Actor = ORME, run: str = RUN) -> tuple[Ready, bytes
 def test_a_finished_run_waits_and_an_open_one_is_under_way(desk, inside):
     desk.waiting()
     desk.arrive(desk.pen("260731-B2-2BBBB").isolate(), picture=None)
-    assert [(line.run, line.state) for line in review.lines()] == [(RUN, "waiting"), ("260731-B2-2BBBB", "open")]
+    # oldest first: that one was begun an hour ago, this one came to wait just now
+    assert [(line.run, line.state) for line in review.lines()] == [("260731-B2-2BBBB", "open"), (RUN, "waiting")]
 
 
 def test_a_run_whose_picture_has_not_arrived_does_not_wait_yet(desk, inside):
@@ -63,6 +65,16 @@ def test_the_tubes_last_run_stands_on_the_scales_of_the_next(desk, inside):
     reading = next(r for r in dossier(RUN).record.readings if r.step == "heater")
     assert [(p.name, p.value) for p in reading.pointers] == [("last run", "6.30")]
     assert all(not r.pointers for r in dossier("260731-B2-0ZZZZ").record.readings)
+
+
+@pytest.mark.parametrize(("hours", "offset", "last"), [(3, 5, True), (1, -9, False)])
+def test_the_last_run_is_the_one_before_in_time_whatever_the_tablets_offset(desk, inside, hours, offset, last):
+    """Three hours earlier at an offset of five hours more its text sorts later; and the other way round."""
+    pen = desk.pen("260731-B2-0ZZZZ", hours, zone=dt.timezone(dt.timedelta(hours=offset)))
+    desk.arrive(play.clean(pen, SHA))
+    desk.arrive(play.clean(desk.pen(RUN, 2), SHA))
+    reading = next(r for r in dossier(RUN).record.readings if r.step == "heater")
+    assert [p.value for p in reading.pointers] == (["6.30"] if last else [])
 
 
 @pytest.mark.parametrize(

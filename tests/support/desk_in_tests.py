@@ -19,6 +19,7 @@ from fieldkit.operations.actor import HOUSE, Actor
 from fieldkit.store.db import db
 from fieldkit.trust import jws, keys
 
+ZONE = dt.timezone(dt.timedelta(hours=1))
 PICTURE = jpeg((70, 90, 110), (320, 200))
 SHA = hashlib.sha256(PICTURE).hexdigest()
 QUILL = Actor("quill", "S. Quill", ("technician", "supervisor"))
@@ -44,9 +45,9 @@ class Desk:
         x5c = self.tablet.certificates[person]
         return jws.sign(claims, self.tablet.people[person], "fieldkit-signature", x5c=x5c)
 
-    def pen(self, run: str, hours: int = 1, **started: Any) -> play.Pen:
+    def pen(self, run: str, hours: int = 1, zone: dt.tzinfo = ZONE, **started: Any) -> play.Pen:
         """A run that began some hours ago."""
-        now = dt.datetime.now(dt.timezone(dt.timedelta(hours=1))).replace(microsecond=0)
+        now = dt.datetime.now(zone).replace(microsecond=0)
         began = now - dt.timedelta(hours=hours)
         chain = f"{self.tablet.device}.EPOCH001"
         device = {**play.STARTED["tablet"], "device": self.tablet.device}
