@@ -176,6 +176,14 @@ def sum_refused(page: Any) -> None:
     page.fill("[data-typed=inlet]", "120")
 
 
+def sum_uncertain(page: Any) -> None:
+    sum_typed(page)
+    page.click("[data-uncertain]")
+    page.select_option("[data-margin=flow] .sum-with select", "FM-2/80 L/min")
+    page.fill("[data-width=outlet]", "0.4")
+    page.fill("[data-width=inlet]", "-0.4")
+
+
 def sums_found(page: Any) -> None:
     page.click("[data-subject=coolant]")
     page.click("[data-sum=coolant_heat_water]")
@@ -221,6 +229,7 @@ def _outside() -> list[Place]:
         Place("sums, an older kit", "screen sums", lambda: scene(sums=None), waiting("[data-no-sums]"), "#sums"),
         Place("a sum", "screen sums", scene, sum_typed, "#sums?name=coolant_heat_water"),
         Place("a sum, out of range", "screen sums", scene, sum_refused, "#sums?name=coolant_heat_water"),
+        Place("a sum with uncertainty", "screen sums", scene, sum_uncertain, "#sums?name=coolant_heat_water"),
         Place("a sum of two results", "screen sums", scene, sum_typed, "#sums?name=directivity_bounds"),
         Place("a sum in any unit", "screen sums", scene, sum_typed, "#sums?name=conformance_probability"),
         Place("a page that cannot be shown", "screen run", begun, hash="#run?run=no-such-run"),

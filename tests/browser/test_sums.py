@@ -19,6 +19,8 @@ from look_server import LookServer, scene
 from fieldkit import units, values
 from fieldkit.files import folder
 from fieldkit.formula import display, library
+from fieldkit.formula.answer import answer
+from fieldkit.formula.entry import Formula
 from fieldkit.formula.evaluate import evaluate
 
 pytestmark = pytest.mark.browser
@@ -377,6 +379,135 @@ def test_field_keys_and_result_are_in_sight_together_at_every_width(
             page.focus(f"[data-typed={argument}]")
             page.evaluate("() => new Promise((go) => requestAnimationFrame(() => requestAnimationFrame(go)))")
             assert page.evaluate(CLEAR) == {"field": True, "result": True, "key": True, "wide": True}, (name, argument)
+
+
+# ---- uncertainty -----------------------------------------------------------------------------------------------------
+
+
+def margins(page: Any, **typed: str) -> None:
+    page.click("[data-uncertain]")
+    for name, text in typed.items():
+        page.fill(f"[data-width={name}]", text)
+
+
+def test_uncertainty_is_hidden_until_wanted_and_then_shown_as_calc_shows_it(page: Any, look: LookServer) -> None:
+    opened(page, look, "coolant_heat_water")
+    assert not page.locator("[data-width]").first.is_visible() and not page.locator("[data-worth]").is_visible()
+    margins(page, inlet="0.4", outlet="0.4")
+    page.select_option("[data-margin=flow] .sum-unit-of select", "%")
+    page.click("[data-width=flow]")
+    page.click("[data-keypad] [data-key='4']")
+    calc = answer("coolant_heat_water(flow=60 L/min ± 4 %, inlet=35 degC ± 0.4 K, outlet=45 degC ± 0.4 K)", LIBRARY)
+    assert calc.shown() == "41.5 kW ± 2.9 kW"
+    assert page.text_content("[data-result]") == "41.5 ± 2.9"
+    assert "temperature at the inlet (33 %)" in page.inner_text("[data-most]")
+    worth = page.inner_text("[data-worth]")
+    assert "k = 2" in worth and page.locator("[data-worth] li").count() == 3
+    page.wait_for_function("() => document.querySelector('[data-say]').textContent === '41.5 ± 2.9 kW'")
+    page.fill("[data-width=inlet]", "-1")
+    assert page.text_content("[data-result]") == "41.54" and "no sign" in page.inner_text("[data-most]")
+    assert page.get_attribute("[data-width=inlet]", "aria-invalid") == "true"
+    page.click("[data-uncertain]")
+    assert page.text_content("[data-result]") == "41.54" and not page.locator("[data-width=flow]").is_visible()
+
+
+def test_a_meter_of_the_run_gives_the_uncertainty_of_what_it_reads(page: Any, look: LookServer) -> None:
+    made = at("heater_left")
+    show(page, look, f"#run?run={made['runs'][0]['run']}&over=sums", made)
+    page.fill("[data-find]", "heater resistance")
+    page.click("[data-sum=heater_resistance]")
+    page.fill("[data-typed=voltage]", "6.3")
+    page.fill("[data-typed=current]", "9.1")
+    page.click("[data-uncertain]")
+    offered = page.locator("[data-margin=voltage] .sum-with option").all_text_contents()
+    # what reads a heater's voltage first, and nothing that reads something else
+    assert offered[0] == "± as typed here" and offered[1] == "DM-04 heater voltage, 20 V"
+    assert any("beam voltage" in one for one in offered) and not any("current" in one for one in offered)
+    page.select_option("[data-margin=voltage] .sum-with select", "DM-04/20 V")
+    # 0.3 % of 6.3 V and one digit of 0.01 V; U = 2 a / root(3)
+    half = 0.003 * 6.3 + 0.01
+    assert page.inner_text("[data-width-from=voltage]") == f"± {2 * half / math.sqrt(3):.3f}"
+    assert f"accuracy ±{half:.3f} V" in page.inner_text("[data-margin=voltage]")
+    assert page.text_content("[data-result]").endswith(f"± {2 * half / math.sqrt(3) / 9.1:.4f}")
+    meaning = LIBRARY.formulas["heater_resistance"].arguments[0].meaning
+    assert page.inner_text("[data-most]") == f"All of it comes from {meaning}."
+    page.fill("[data-typed=voltage]", "25")
+    assert "DM-04 cannot show 25 V: its range is 0 to 20 V." in page.inner_text("[data-margin=voltage]")
+    assert "±" not in page.text_content("[data-result]")
+    page.select_option("[data-margin=voltage] .sum-with select", "")
+    assert page.locator("[data-width=voltage]").is_visible()
+
+
+def test_one_meter_for_two_values_is_said_and_so_is_an_overdue_one(page: Any, look: LookServer) -> None:
+    opened(page, look, "winding_rise")
+    page.click("[data-uncertain]")
+    for name in ("cold_temperature", "ambient"):
+        page.select_option(f"[data-margin={name}] .sum-with select", "TI-2/100 degC")
+    assert "TI-2 gave more than one value. They are counted as independent" in page.inner_text("[data-worth]")
+    page.evaluate("() => { Date.now = () => Date.parse('2026-12-01T12:00:00Z'); }")
+    page.fill("[data-typed=ambient]", "24")
+    assert "Its calibration ran out on 30 Nov 2026." in page.inner_text("[data-margin=ambient]")
+
+
+def test_with_uncertainty_field_keys_and_result_are_in_sight_at_every_width(page: Any, look: LookServer) -> None:
+    opened(page, look, "directivity_bounds")
+    margins(page, return_loss="0.5", directivity="1")
+    for name, (w, h) in WIDTHS.items():
+        page.set_viewport_size({"width": w, "height": h})
+        for field in ("[data-width=return_loss]", "[data-width=directivity]"):
+            page.evaluate("() => document.activeElement?.blur()")
+            page.focus(field)
+            page.evaluate("() => new Promise((go) => requestAnimationFrame(() => requestAnimationFrame(go)))")
+            assert page.evaluate(CLEAR) == {"field": True, "result": True, "key": True, "wide": True}, (name, field)
+
+
+def uncertain(formula: Formula) -> tuple[str, dict[str, float], dict[str, float]] | None:
+    """The first worked example as text for calc, ± 1 % or 1 K or 1 dB after what may have it; values and U in SI."""
+    example = next((e for e in formula.examples if not e.fault), None)
+    if example is None or any(a.unit in (units.ANY, units.ANY_DIFFERENCE) for a in formula.arguments):
+        return None
+    parts, at_, wide = [], dict[str, float](), dict[str, float]()
+    for a, written in zip(formula.arguments, example.written, strict=True):
+        si = answer(written, LIBRARY).values[0].si
+        own, text = a.unit.symbol, ""
+        if own in ("degC", "dB", "dBm"):
+            text, wide[a.name] = f" ± 1 {'K' if own == 'degC' else 'dB'}", 1.0
+        elif si and not a.whole and "%" not in written:
+            text, wide[a.name] = " ± 1 %", abs(si) * 0.01
+        parts.append(f"{a.name}={written}{text}")
+        at_[a.name] = si
+    return (f"{formula.name}({', '.join(parts)})", at_, wide) if wide else None
+
+
+def test_every_formula_has_the_uncertainty_that_calc_gives_it(page: Any, look: LookServer) -> None:
+    show(page, look)
+    asked = {f.name: case for f in LIBRARY.formulas.values() if (case := uncertain(f)) is not None}
+    got = page.evaluate(
+        """async (asked) => {
+      const near = (name) => document.querySelector("script[type=module]").src.replace("main.js", name), book = await (await fetch("/sums.json")).json();
+      const { sumOf, resultUnits } = await import(near("sums/book.js")), { prepared } = await import(near("sums/reckon.js")), { withMargin } = await import(near("sums/digits.js")), { carrier } = await import(near("sums/carry.js"));
+      return Object.fromEntries(Object.entries(asked).map(([name, [, values, widths]]) => {
+        const sum = sumOf(book, name), ready = prepared(sum, book.formulas), results = ready.all(values), { results: [of], says } = carrier(sum, book.formulas, ready)(values, widths, results);
+        return [name, { shown: of && of.u ? withMargin(results[0], of.u, resultUnits(book, sum.results[0], "V")[0], sum.results[0].digits) : null, shares: of?.shares.map((s) => [s.argument.name, s.percent]), minds: says.length }];
+      }));
+    }""",
+        {name: list(case) for name, case in asked.items()},
+    )
+    assert len(got) > 60
+    for name, (text, _, _) in asked.items():
+        found = answer(text, LIBRARY)
+        value = found.values[0]
+        assert len(found.warnings) == got[name]["minds"], name
+        if value.carried is None or not value.carried.u:
+            assert got[name]["shown"] is None, name
+            continue
+        said = [
+            part.removesuffix(f" {unit.shown}").partition("e")[0]
+            for part, unit in zip(value.shown().split(" ± "), (value.unit, display.difference(value.unit)), strict=True)
+        ]
+        assert [got[name]["shown"]["value"].replace("−", "-"), got[name]["shown"]["margin"]] == said, name
+        shares = {s.name: s.percent for s in value.carried.shares}
+        assert dict(got[name]["shares"]) == pytest.approx(shares, rel=1e-9, abs=1e-9), name
 
 
 def test_an_older_kit_without_sums_says_what_to_do(page: Any, look: LookServer) -> None:

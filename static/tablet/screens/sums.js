@@ -5,8 +5,10 @@
 import { alertUser } from "../announce.js";
 import { chime } from "../chime.js";
 import { h, put } from "../dom.js";
+import { now } from "../clockwatch.js";
 import { sumOf } from "../sums/book.js";
 import { listView } from "../sums/list.js";
+import { metersOf } from "../sums/meters.js";
 import { sumView } from "../sums/sum.js";
 import { opensWords } from "../opens.js";
 import { lower } from "../words.js";
@@ -31,19 +33,20 @@ async function bookOf(host) {
 /**
  * The list or one sum, whichever is asked for.
  * @param {{book: any, says: string}} from @param {string} name @param {(name: string) => void} open
+ * @param {{instruments: any[], today: () => string}} kit what values may have been measured with
  * @returns {{node: HTMLElement, title: string, isSum: boolean, stop: () => void, focus: HTMLElement | null}}
  */
-function view(from, name, open) {
+function view(from, name, open, kit) {
   const sum = from.book && name ? sumOf(from.book, name) : null, none = { stop: () => undefined, focus: null };
   if (!from.book) return { ...none, node: h("p", { class: "heed", "data-no-sums": true }, from.says), title: "Sums", isSum: false };
-  if (sum) return { ...sumView(from.book, sum, open), title: sum.title, isSum: true };
+  if (sum) return { ...sumView(from.book, sum, open, { meters: metersOf(kit.instruments), today: kit.today }), title: sum.title, isSum: true };
   const list = listView(from.book, open);
   return { ...none, ...list, title: "Sums", isSum: false };
 }
 
 /** As a page of its own. @param {any} app @param {Record<string, string>} args */
 export async function sumsScreen(app, args) {
-  const open = (/** @type {string} */ name) => app.go("sums", { name }), made = view(await bookOf(app.host), args.name ?? "", open);
+  const open = (/** @type {string} */ name) => app.go("sums", { name }), made = view(await bookOf(app.host), args.name ?? "", open, { instruments: Object.values(app.held?.kit?.registers?.instruments ?? {}), today: () => now().wall });
   const run = app.held?.runs.find((/** @type {any} */ r) => !["ended", "voided"].includes(r.phase));
   const all = made.isSum ? h("button", { type: "button", class: "tool", "data-all-sums": true, on: { click: () => app.go("sums") } }, "All sums") : null;
   const safe = run ? makeSafeMark(() => app.go("run", { run: run.run, over: "make_safe" })) : null;
@@ -70,7 +73,7 @@ export function sumsPage(ctx, args) {
   put(ways, back);
   void bookOf(ctx.host).then((from) => {
     if (!node.isConnected) return;
-    const made = view(from, args.name ?? "", open);
+    const made = view(from, args.name ?? "", open, { instruments: ctx.state.started?.instruments ?? [], today: () => ctx.run.now().wall });
     stop = made.stop;
     put(heading, made.title);
     node.setAttribute("aria-label", made.title);

@@ -83,10 +83,10 @@ export function sameKind(book, symbol) {
   return kind.map((s) => unitOf(s, book.units[s]));
 }
 
-/** The unit of a difference of two values in a unit: K where they are in °C. @param {Book} book @param {string} symbol @returns {Unit} */
-function differenceOf(book, symbol) {
-  if (!book.units[symbol].absolute) return unitOf(symbol, book.units[symbol]);
-  return unitOf("K", book.units.K);
+/** The unit of a difference of two values in a unit: K where they are in °C, dB where they are in dBm. @param {Book} book @param {string} symbol @returns {Unit} */
+export function differenceOf(book, symbol) {
+  const other = book.units[symbol].absolute ? "K" : symbol === "dBm" ? "dB" : symbol;
+  return unitOf(other, book.units[other]);
 }
 
 /** @param {Book} book @returns {Unit[]} */

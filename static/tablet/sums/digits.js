@@ -4,7 +4,7 @@
  *
  * Not here: reading what was typed, and values in SI (core/values.js).
  */
-import { Dec, compare, dec, number, to_shown, to_text, trim } from "../../core/values.js";
+import { Dec, beside, compare, dec, number, to_shown, to_text, trim } from "../../core/values.js";
 import { minus } from "../words.js";
 
 /** @typedef {{symbol: string, shown: string, factor: string, offset: string}} Unit */
@@ -47,6 +47,33 @@ export function written(text, most = MOST) {
 
 /** A number in SI as it is shown in a unit. @param {number} si @param {Unit} unit @param {number} [most] */
 export const shown = (si, unit, most) => written(to_shown(si, unit), most);
+
+/**
+ * A number in SI with its uncertainty, as they are shown in a unit: "41.5", "1.4"; `tail` is a power of ten of both.
+ * Two digits of the uncertainty, none finer than `most` digits of the value.
+ * @param {number} si @param {number} u in SI @param {Unit} unit @param {number} [most] @returns {{value: string, margin: string, tail: string}}
+ */
+export function withMargin(si, u, unit, most = MOST) {
+  const texts = [to_shown(si, unit), to_shown(u, { factor: unit.factor, offset: "0" })], powers = texts.map(powerOf), power = Math.max(...powers);
+  const by = power >= -4 && power < 10 ? 0 : power, places = Math.max(0, most - 1 - (powers[0] === -Infinity ? 0 : powers[0] - by));
+  const [value, margin] = beside(lifted(texts[0], -by), lifted(texts[1], -by), to_text(new Dec(0n, places)));
+  return { value: minus(value), margin, tail: by ? ` × ${tenTo(by)}` : "" };
+}
+
+/** The same in one line: "41.5 ± 1.4", "(4.807 ± 0.048) × 10⁻¹⁹". @param {{value: string, margin: string, tail: string}} of */
+export const inLine = ({ value, margin, tail }) => (tail ? `(${value} ± ${margin})${tail}` : `${value} ± ${margin}`);
+
+/** The power of ten of the first digit. @param {string} text */
+function powerOf(text) {
+  const value = size(dec(text));
+  return value.digits === 0n ? -Infinity : value.digits.toString().length - 1 - value.scale;
+}
+
+/** A decimal text times a power of ten. @param {string} text @param {number} power */
+function lifted(text, power) {
+  const from = dec(text), scale = from.scale - power;
+  return to_text(scale >= 0 ? new Dec(from.digits, scale) : new Dec(from.digits * 10n ** BigInt(-scale), 0));
+}
 
 /** A figure and its unit. @param {string} figure @param {{shown: string}} unit */
 export const withUnit = (figure, unit) => `${figure}${["", "°"].includes(unit.shown) ? "" : " "}${unit.shown}`;
