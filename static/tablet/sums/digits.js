@@ -63,6 +63,12 @@ export function withMargin(si, u, unit, most = MOST) {
 /** The same in one line: "41.5 ± 1.4", "(4.807 ± 0.048) × 10⁻¹⁹". @param {{value: string, margin: string, tail: string}} of */
 export const inLine = ({ value, margin, tail }) => (tail ? `(${value} ± ${margin})${tail}` : `${value} ± ${margin}`);
 
+/** An uncertainty by itself, in the unit of its value: "0.35", "5.8 × 10⁻⁹". @param {number} u in SI @param {Unit} unit */
+export function alone(u, unit) {
+  const { margin, tail } = withMargin(0, u, { ...unit, offset: "0" }, 12);
+  return `${margin}${tail}`;
+}
+
 /** The power of ten of the first digit. @param {string} text */
 function powerOf(text) {
   const value = size(dec(text));

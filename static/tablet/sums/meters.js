@@ -18,7 +18,7 @@ import { withUnit } from "./digits.js";
 /** Every range whose accuracy is known. @param {any[]} instruments as a kit or the start of a run holds them @returns {Meter[]} */
 export function metersOf(instruments) {
   return instruments.flatMap((one) => {
-    const whole = Array.isArray(one.ranges) ? one : { ...one, ranges: [{ percent_of_range: "0", ...one, name: "" }] };
+    const whole = { calibrated_on: null, interval_months: null, calibrated_to: null, temperature: null, ...one, ranges: one.ranges ?? [{ percent_of_range: "0", ...one, name: "" }] };
     return readings.by_size(whole.ranges).map((range) => readings.flat(whole, range));
   }).filter((meter) => {
     const accuracy = worth.half("0", { ...meter, percent: "0" }, meter.unit);

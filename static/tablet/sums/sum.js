@@ -8,7 +8,7 @@ import { keypad } from "../keypad.js";
 import { lower, pretty, sentence } from "../words.js";
 import { called, everyUnit, firstAny, quantity, resultUnits, titleOf, unitsFor } from "./book.js";
 import { carrier } from "./carry.js";
-import { end, inLine, rangeWords, shown, withMargin, withUnit } from "./digits.js";
+import { alone, end, inLine, rangeWords, shown, withMargin, withUnit } from "./digits.js";
 import * as kept from "./kept.js";
 import { marginRow, mostOf, sharesOf, twiceWords } from "./margin.js";
 import { says, span, stops, svg } from "./plot.js";
@@ -127,7 +127,7 @@ export function sumView(book, sum, open, kit) {
     for (const { a, margin } of fields) {
       if (!margin) continue;
       const unit = units[a.name], width = widthOf(book, a, got.fields[a.name], unit, margin.given(), today);
-      margin.show(width, width.state === "good" && margin.meter() ? withMargin(0, width.u, { ...unit, offset: "0" }).margin : "");
+      margin.show(width, width.state === "good" && margin.meter() ? alone(width.u, unit) : "");
       if (width.state === "good" && width.u) widths[a.name] = width.u;
       if (width.state === "wrong") minds.push(width.says);
     }

@@ -3,7 +3,7 @@ import assert from "node:assert/strict";
 import { test } from "node:test";
 import { sumOf } from "../../../static/tablet/sums/book.js";
 import { carrier, mostWords, percentWords } from "../../../static/tablet/sums/carry.js";
-import { inLine, withMargin } from "../../../static/tablet/sums/digits.js";
+import { alone, inLine, withMargin } from "../../../static/tablet/sums/digits.js";
 import { keyOf, measured, metersFor, metersOf, nameOf } from "../../../static/tablet/sums/meters.js";
 import { prepared } from "../../../static/tablet/sums/reckon.js";
 import { widthOf } from "../../../static/tablet/sums/widths.js";
@@ -30,6 +30,8 @@ for (const [si, u, symbol, digits, is] of [
   [10.05762, 0.027, "V", 12, "10.058 ± 0.027"], [41543.2, 1437, "kW", 4, "41.5 ± 1.4"], [298.15, 0.4, "degC", 6, "25.00 ± 0.40"], [-0.5, 12, "V", 6, "0 ± 12"], [0, 1, "V", 6, "0.0 ± 1.0"], [41543.2, 0.5, "kW", 4, "41.54 ± 0.01"],
   [41543.2, 2999, "V", 4, "41500 ± 3000"], [4.807e-19, 4.8e-21, "A s", 6, "(4.807 ± 0.048) × 10⁻¹⁹"], [-4.807e-19, 4.8e-21, "A s", 6, "(−4.807 ± 0.048) × 10⁻¹⁹"], [1e300, 1e300, "V", 6, "(1.0 ± 1.0) × 10³⁰⁰"], [1e-9, 0.5, "V", 6, "0.00 ± 0.50"],
 ]) test(`${si} with ${u} is shown ${is}`, () => assert.equal(inLine(withMargin(si, u, UNITS[symbol], digits)), is));
+
+for (const [u, symbol, is] of [[0.346, "K", "0.35"], [5.8e-9, "A", "5.8 × 10⁻⁹"], [508, "kV", "0.51"], [0.346, "degC", "0.35"]]) test(`${u} alone is shown ${is}`, () => assert.equal(alone(u, UNITS[symbol]), is));
 
 // ---- what was typed
 
