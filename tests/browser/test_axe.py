@@ -17,7 +17,7 @@ from typing import Any
 
 import pytest
 from axe_playwright_python.sync_playwright import Axe
-from driving import ARGS, CHROMIUM
+from driving import ARGS, CHROMIUM, PATIENCE_S
 from look_places import PLACES, Place
 from look_server import LookServer
 
@@ -68,7 +68,7 @@ def complaints() -> list[str]:
 def page(playwright_here: Any, complaints: list[str]) -> Iterator[Any]:
     browser = playwright_here.chromium.launch(executable_path=CHROMIUM, args=ARGS)
     made = browser.new_page(viewport={"width": 820, "height": 1180})
-    made.set_default_timeout(10_000)
+    made.set_default_timeout(PATIENCE_S * 1000)
     made.on("console", lambda m: complaints.append(m.text) if "Content Security Policy" in m.text else None)
     made.on("pageerror", lambda e: complaints.append(str(e)))
     yield made

@@ -44,7 +44,7 @@ class Twin:
         assert self.process.stdin and self.process.stdout
         self.process.stdin.close()
         self.process.stdout.close()
-        self.process.wait(10)
+        self.process.wait(120)
 
 
 def digest(text: str) -> str:

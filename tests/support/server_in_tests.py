@@ -10,6 +10,7 @@ import ssl
 import subprocess
 import sys
 import time
+from contextlib import suppress
 from pathlib import Path
 from typing import Any
 
@@ -43,17 +44,22 @@ class Serving:
             start_new_session=True,
         )
         until = time.monotonic() + 120
-        while not self.answers():
-            assert self.process.poll() is None, Path(self.log.name).read_text()
-            assert time.monotonic() < until, "the server does not begin to answer"
-            time.sleep(0.1)
+        try:
+            while not self.answers():
+                assert self.process.poll() is None, Path(self.log.name).read_text()
+                assert time.monotonic() < until, "the server does not begin to answer"
+                time.sleep(0.1)
+        except BaseException:
+            self.kill()
+            raise
 
     def answers(self) -> bool:
         return answers(self.port)
 
     def kill(self) -> None:
         """The process and its worker, at once and without warning."""
-        os.killpg(self.process.pid, signal.SIGKILL)
+        with suppress(ProcessLookupError):
+            os.killpg(self.process.pid, signal.SIGKILL)
         self._gone()
 
     def stop(self) -> int:
