@@ -7,6 +7,7 @@ languages are compared in the wire form of tests/js/twins.mjs.
 from __future__ import annotations
 
 import json
+import os
 import shutil
 import struct
 import subprocess
@@ -23,6 +24,9 @@ from fieldkit.formula.evaluate import evaluate
 from fieldkit.formula.functions import FUNCTIONS
 
 TESTS = Path(__file__).resolve().parent
+
+# what a command prints is broken into lines by the width of the terminal; here it has one width, whoever runs it
+os.environ["COLUMNS"] = "100"
 
 
 def encode(x: Any) -> Any:
