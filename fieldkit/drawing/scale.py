@@ -70,7 +70,7 @@ def _outside(ink: str, x0: int, x1: int, hit: bool) -> str:
 
 
 def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, caution: int | None) -> str:
-    """Guard band cross hatched from the post to the acceptance limit, caution strip beyond; yellow where the reading is.
+    """Guard band cross-hatched from post to the acceptance limit, caution strip beyond; yellow where a reading is.
 
     A reading at the inner edge is clear of the band: the acceptance limit itself passes.
     """

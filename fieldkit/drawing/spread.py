@@ -1,7 +1,8 @@
 """Which stretch of the axis a scale shows, as exact integers.
 
 Limits plus a quarter of their distance each side, stretched to hold reading ± U; one-sided limits stand where the
-same limit of a two-sided scale would, and the other end stays open. A reading too far off to stretch to is `far`.
+same limit of a two-sided scale would, and the other end stays open. A reading too far off to stretch to is `far`, and
+leaves the axis as it is: half a number, typed, is far off, and its limits should not jump with every key.
 Twin: static/core/drawing/spread.js.
 """
 
@@ -56,9 +57,6 @@ def spread(model: dict[str, Any], stretch: bool) -> Spread:
             far, b = ("", value + u + (b - a) // 20) if value + u - b <= room else ("high", b)
         if far and a <= value <= b:
             far = ""
-        elif far and stretch:
-            end = (b - a) // 5
-            a, b = (a - end, b) if far == "low" else (a, b + end)
     return Spread(
         places, keep, a, b, low, high, n["caution_low"], n["caution_high"], n["accept_low"], n["accept_high"],
         value, u, n["plate"], old, far,

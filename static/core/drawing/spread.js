@@ -59,11 +59,6 @@ export function spread(model, stretch) {
       else far = "high";
     }
     if (far && a <= value && value <= b) far = "";
-    else if (far && stretch) {
-      const end = floor(b - a, 5n);
-      if (far === "low") a -= end;
-      else b += end;
-    }
   }
   return { places, keep, a, b, low, high, caution_low, caution_high, accept_low, accept_high, value, u, plate, olds: old, far };
 }
