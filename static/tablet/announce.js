@@ -1,4 +1,10 @@
-/** What is said to screen readers: `say` politely (verdicts, saved), `alertUser` at once (refusals, a wait that is over). */
+/**
+ * What is said to screen readers: `say` politely (saved), `sayOncePaused` politely when nothing more is typed (verdicts),
+ * `alertUser` at once (refusals, a wait that is over).
+ */
+
+/** Without a key for so long, typing has paused (own choice: a figure a second is slow typing). */
+export const PAUSE_MS = 700;
 
 /** @param {string} where @param {string} text */
 function speak(where, text) {
@@ -6,8 +12,19 @@ function speak(where, text) {
   if (!region || region.textContent === text) return;
   region.textContent = text;
 }
+/** @type {ReturnType<typeof setTimeout> | undefined} */
+let pause;
+
 /** @param {string} text */
-export const say = (text) => speak("say", text);
+export function say(text) {
+  clearTimeout(pause);
+  speak("say", text);
+}
+/** Half a number has a verdict that nobody wants to hear. @param {string} text "" takes back what has not been said yet */
+export function sayOncePaused(text) {
+  clearTimeout(pause);
+  if (text) pause = setTimeout(() => speak("say", text), PAUSE_MS);
+}
 /** @param {string} text */
 export function alertUser(text) {
   speak("alert", "");

@@ -33,6 +33,9 @@ export function day(iso) {
   return y ? `${d} ${MONTHS[m - 1]} ${y}` : "";
 }
 
+/** Dates inside a sentence as people write them: "ran out on 30 Nov 2026". @param {string} text */
+export const dated = (text) => text.replace(/\b\d{4}-\d\d-\d\d\b/g, (iso) => day(iso));
+
 /** Seconds that are still to wait, as shown: "6:18", "1:02:05"; never early, so parts of a second count up. @param {number | string} seconds */
 export function countdown(seconds) {
   const s = Math.max(0, Math.ceil(Number(seconds) - 1e-6));
@@ -97,4 +100,11 @@ export function limitWords(limits, unit) {
   if (low && high) return `${minus(low)} to ${minus(high)} ${unit}`;
   if (low) return `at least ${minus(low)} ${unit}`;
   return high ? `at most ${minus(high)} ${unit}` : "";
+}
+
+/** What passes where the limits are guarded, as two parts: ["6.13 to 6.47 V passes;", " within the meter's ..."]; empty where they are not. @param {any} limits @param {string} unit @returns {[string, string]} */
+export function acceptWords(limits, unit) {
+  if (!limits?.guarded || limits.coarse || limits.fault || limits.reach) return ["", ""];
+  const accepted = limitWords({ low: limits.accept_low, high: limits.accept_high }, unit);
+  return accepted ? [`${sentence(accepted)} passes;`, " within the meter’s uncertainty of a limit the verdict is conditional."] : ["", ""];
 }

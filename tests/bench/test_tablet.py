@@ -3,10 +3,13 @@
 The real app with the real kit, on readings of the warm-up. The floor is a page that takes the same keys and the same
 click in the same browser, at the same throttle, and computes and stores nothing. Both are timed alike: from the time
 stamp of the event to the first task after the frame that shows what came of it.
+A verdict with its uncertainty may take one frame longer than the floor. Whatever else the machine does adds to the app
+more than to the floor, so both are typed turn by turn, and the best of some turns counts.
 """
 
 from __future__ import annotations
 
+import itertools
 import statistics
 from collections.abc import Callable, Iterator
 from datetime import UTC, datetime
@@ -24,7 +27,11 @@ from fieldkit.web.app import here
 
 pytestmark = [pytest.mark.bench, pytest.mark.browser]
 THROTTLE = 6
-FIRST, LAST = "air_pressure", "heater_on"
+FIRST, LAST = "coolant_flow", "heater_on"
+#: for the first, whose limits are guarded: below, in the guard band, inside, far off; and the verdict of each
+FIGURES = {"38.0": "fail", "40.4": "conditional pass", "48.2": "pass", "4820": "pass"}
+#: one frame, and in how many turns it may be shown
+FRAME_MS, TURNS = 16, 5
 STATES = {
     "beam_supply": "locked", "rf_drive": "locked", "heater": "off", "bias": "off", "magnets": "off", "ion_pump": "on",
     "coolant": "off", "air": "off",
@@ -128,76 +135,123 @@ def begin(tablet: Tablet) -> str:
     return run
 
 
-def type_and_record(page: Any, text: str) -> None:
-    """Every key by itself, each drawn before the next; then Record, until the next step stands there."""
+def opened(tablet: Tablet, run: str) -> Any:
+    """The app at the first reading."""
+    page = tablet.page
+    page.goto("about:blank")  # a page that was opened before the kit came would not have it
+    page.goto(f"{tablet.server.url}/app/#run?run={run}")
+    page.locator("[data-typed]").wait_for()
+    page.evaluate(PROBE)
+    return page
+
+
+def bare(tablet: Tablet) -> Any:
+    """The floor, in another page of the same browser."""
+    page = tablet.context.new_page()
+    page.set_content(FLOOR)
+    page.evaluate(FLOOR_WORK)
+    page.evaluate(PROBE)
+    return page
+
+
+def keyed(page: Any) -> tuple[list[float], list[str]]:
+    """Every figure typed and rubbed out again, each key drawn before the next: what it took, what verdict stood there."""
+    page.bring_to_front()
     page.locator("[data-typed]").focus()
-    for key in text:
-        seen = page.evaluate("() => took.key.length")
-        page.keyboard.press(key)
-        page.wait_for_function("(n) => took.key.length > n", arg=seen)
+    begun = page.evaluate("() => took.key.length")
+    for text in FIGURES:
+        for key in (*text, *["Backspace"] * len(text)):
+            seen = page.evaluate("() => took.key.length")
+            page.keyboard.press(key)
+            page.wait_for_function("(n) => took.key.length > n", arg=seen)
+    took = page.evaluate("(n) => [took.key.slice(n), took.verdicts.slice(n)]", begun)
+    return took[0], took[1]
+
+
+def turns(app: Any, floor: Any) -> tuple[list[float], list[float]]:
+    """What keys took on both, of the turn in which they came closest."""
+    best: tuple[list[float], list[float]] | None = None
+    starts = itertools.accumulate((2 * len(text) for text in FIGURES), initial=0)
+    ends = {start + len(text) - 1: verdict for start, (text, verdict) in zip(starts, FIGURES.items(), strict=False)}
+    for _ in range(TURNS):
+        took, verdicts = keyed(app)
+        # the verdict of the whole number stood there when its last key counted as drawn, with U on the scale
+        assert {k: verdicts[k] for k in ends} == ends
+        plain, _ = keyed(floor)
+        assert len(took) == len(plain) == sum(2 * len(text) for text in FIGURES) and min(took + plain) > 0
+        if best is None or apart(took, plain) < apart(*best):
+            best = took, plain
+        if apart(*best) <= FRAME_MS:
+            break
+    assert best is not None
+    return best
+
+
+def apart(app: list[float], floor: list[float]) -> float:
+    """ms by which a key takes longer on the app, by the medians."""
+    return statistics.median(app) - statistics.median(floor)
+
+
+def recorded(page: Any, text: str) -> None:
+    """A reading typed, then Record, until the next step stands there."""
+    page.locator("[data-typed]").fill(text)
     seen = page.evaluate("() => took.record.length")
     page.locator("[data-first]").click()
     page.wait_for_function("(n) => took.record.length > n", arg=seen)
 
 
-def on_the_app(tablet: Tablet, run: str) -> tuple[dict[str, list[Any]], list[str]]:
-    """Through the row of readings on the screen; what was timed, and what was typed."""
+def record_all(tablet: Tablet, run: str) -> list[str]:
+    """Through the row of readings on the screen; gives what was typed."""
     page, typed = tablet.page, []
-    page.goto("about:blank")  # a page that was opened before the kit came would not have it
-    page.goto(f"{tablet.server.url}/app/#run?run={run}")
-    page.locator("[data-typed]").wait_for()
-    page.evaluate(PROBE)
+    page.bring_to_front()
     while True:
         told = tablet.run(run, "progress")
         step = told["step"]
         page.locator("[data-step-title]", has_text=step["title"]).wait_for()
         if step["id"] == LAST:
-            return page.evaluate("() => took"), typed
+            return typed
         if step["control"]["control"] == "number":
             text = readings.WARM_UP.get(step["id"]) or told["plate"]
-            type_and_record(page, text)
+            recorded(page, text)
             typed.append(text)
         else:
             tablet.command(run, step=step["id"], **answer(step, told["plate"]))
 
 
-def on_the_floor(page: Any, typed: list[str]) -> dict[str, list[Any]]:
-    page.set_content(FLOOR)
-    page.evaluate(FLOOR_WORK)
-    page.evaluate(PROBE)
-    for text in typed:
-        type_and_record(page, text)
-    took: dict[str, list[Any]] = page.evaluate("() => took")
-    return took
-
-
 def test_step_latency_at_a_sixth_of_the_processor(tablet: Tablet, show: Callable[[Ratios], None]) -> None:
     run = begin(tablet)
-    throttle = tablet.context.new_cdp_session(tablet.page)
-    throttle.send("Emulation.setCPUThrottlingRate", {"rate": THROTTLE})
-    app, typed = on_the_app(tablet, run)
-    tablet.page.goto("about:blank")
-    floor = on_the_floor(tablet.page, typed)
-    throttle.send("Emulation.setCPUThrottlingRate", {"rate": 1})
+    app, floor = opened(tablet, run), bare(tablet)
+    sessions = [tablet.context.new_cdp_session(page) for page in (app, floor)]
+    for one in sessions:
+        one.send("Emulation.setCPUThrottlingRate", {"rate": THROTTLE})
 
-    keys, records = sum(len(text) for text in typed), len(typed)
-    assert records >= 5
-    for took in (app, floor):
-        assert (len(took["key"]), len(took["record"])) == (keys, records)
-        assert min(took["key"] + took["record"]) > 0
-    # the verdict of the whole number stood there when its last key counted as drawn
-    ends = [sum(len(text) for text in typed[: n + 1]) - 1 for n in range(records)]
-    assert {app["verdicts"][n] for n in ends} == {"pass", "not judged"}, app["verdicts"]
+    keys = turns(app, floor)
+    app.bring_to_front()
+    app.locator("[data-typed]").fill("48.2")
+    said = app.locator("[data-scale] svg").get_attribute("aria-label")
+    assert "±1.1 L/min" in said, said
+    typed = record_all(tablet, run)
+    floor.bring_to_front()
+    for text in typed:
+        recorded(floor, text)
+    records = [page.evaluate("() => took.record") for page in (app, floor)]
+    for one in sessions:
+        one.send("Emulation.setCPUThrottlingRate", {"rate": 1})
+
+    assert len(records[0]) == len(records[1]) == len(typed) >= 5
     assert tablet.violations == []
-
-    what = {"key": "a key to its verdict, drawn", "record": "Record to the next step, stored and drawn"}
-    for name, said in what.items():
+    for said, (took, plain) in {
+        "a key to its verdict with U, drawn": keys,
+        "Record to the next step, stored and drawn": (records[0], records[1]),
+    }.items():
         table = Ratios(
-            f"Tablet at {THROTTLE} x throttle, {len(app[name])} goes",
+            f"Tablet at {THROTTLE} x throttle, {len(took)} goes",
             "floor page: same event, nothing computed, median",
-            statistics.median(floor[name]) / 1000,
+            statistics.median(plain) / 1000,
         )
-        table.add("floor page, worst", max(floor[name]) / 1000)
-        table.add(f"{said}, median", statistics.median(app[name]) / 1000)
-        table.add(f"{said}, worst", max(app[name]) / 1000)
+        table.add("floor page, worst", max(plain) / 1000)
+        table.add(f"{said}, median", statistics.median(took) / 1000)
+        table.add(f"{said}, worst", max(took) / 1000)
+        table.add("apart, by the medians", apart(took, plain) / 1000)
         show(table)
+    assert apart(*keys) <= FRAME_MS, (apart(*keys), keys)

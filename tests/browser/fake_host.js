@@ -69,7 +69,7 @@ async function load(kept) {
   };
   return {
     sheet, get state() { return state; }, get events() { return events; }, readonly: Boolean(kept.readonly), says: kept.readonly ?? "",
-    progress: () => progress(sheet, state, now()), now, screenSays: () => "",
+    progress: (using = null) => progress(sheet, state, now(), using), now, screenSays: () => "",
     command: async ({ statement, passphrase, ...command }) => {
       globalThis.commands.push(command);
       await new Promise((r) => setTimeout(r, scene.slow ?? 0));

@@ -1,40 +1,48 @@
 /**
  * Number: one reading, typed as text, judged while it is typed. What was typed stays on a refusal, with the words beside
  * the field. Enter never records: a scanner or a sleeve must not.
+ * A key touches only what the typed text changes (judging, drawing, words); everything else is brought up to date by the clock.
  */
 import { h, part, put } from "../dom.js";
-import { acting, reasonList } from "../acting.js";
+import { acting, showReasons } from "../acting.js";
 import { keypad } from "../keypad.js";
-import { judged, meterWords, showSentence } from "../judging.js";
-import { limitScale } from "../scale.js";
+import { judged, showSentence, showWords } from "../judging.js";
+import { meterPart } from "../meter.js";
+import { redraw, reword } from "../redraw.js";
+import { scaleText } from "../scale.js";
 import { showVerdict } from "../verdict_box.js";
-import { say } from "../announce.js";
+import { sayOncePaused } from "../announce.js";
 import { spoken } from "../spoken.js";
-import { limitWords, minus, pretty } from "../words.js";
+import { acceptWords, limitWords, minus, pretty } from "../words.js";
 
-/** Shows which meter is to be read. @param {HTMLElement} node @param {any} words */
-export function showMeter(node, words) {
-  if (!words) { node.hidden = true; return; }
-  put(node, `${words.kind} `, h("span", { class: "id" }, words.id), words.accuracy ? `, ${words.accuracy}` : "", words.calibrated ? h(words.overdue ? "b" : "span", { class: words.overdue ? null : "roomy" }, `, ${words.calibrated}`) : null);
-}
+/** Why Record is shut where the meter is refused; what to do about it stands beside the meter. */
+const OTHER_METER = { says: "Opens with a meter that is in date.", left: null };
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
   const control = ctx.step.control, unit = control.unit.symbol;
-  const input = part(el.l, "typed"), wrong = part(el.l, "wrong"), box = part(el.l, "verdict-box");
-  const { instrument } = ctx.progress;
-  showMeter(part(el.l, "meter"), meterWords(instrument, control.meter, ctx.run.now().wall));
+  const [input, wrong, box, scale, sentence, words] = ["typed", "wrong", "verdict-box", "scale", "sentence", "spoken"].map((name) => part(el.l, name));
+  const reasonsAt = part(el.r, "reasons"), old = ctx.lastReading(ctx.step.id);
+  const meter = meterPart(part(el.l, "meter"), ctx, { asked: control.meter, changed: show });
   put(part(el.l, "label"), `${ctx.step.title}, in ${pretty(unit)}`);
   put(part(el.l, "unit"), pretty(unit));
   put(part(el.r, "pad"), keypad(() => input));
   const act = acting(ctx, { run: record });
   put(part(el.r, "act"), act.node);
+  const typed = h("span", { class: "num" }), recordIt = ["Record", typed, pretty(unit)];
+  let today = ctx.run.now().wall, reasons = /** @type {any[]} */ ([]);
+  let said = /** @type {{text: string, found: any}} */ ({ text: "", found: null }), soon = /** @type {ReturnType<typeof setTimeout> | undefined} */ (undefined);
   input.value = ctx.draft.text ?? "";
 
-  input.addEventListener("input", () => { put(wrong); input.setAttribute("aria-invalid", "false"); ctx.keep({ text: input.value }); show(); });
+  input.addEventListener("input", () => {
+    if (wrong.firstChild) { put(wrong); input.setAttribute("aria-invalid", "false"); }
+    ctx.keep({ text: input.value });
+    show();
+  });
   input.addEventListener("keydown", (/** @type {KeyboardEvent} */ e) => { if (e.key === "Enter") e.preventDefault(); });
 
   async function record() {
+    const { instrument } = ctx.progress;
     const answer = await ctx.answer({ do: "read", text: input.value.trim(), unit, instrument: instrument?.id ?? null, range: instrument?.range ?? "" });
     if (!answer.refused) return;
     put(wrong, answer.refused.says);
@@ -42,24 +50,44 @@ export function mount(ctx, el) {
     input.focus();
   }
 
+  /** What the typed text and the meter's range say: the verdict and its scale in this frame, the words in the next. */
   function show() {
-    const text = input.value.trim();
-    input.dataset.long = text.length > 6 ? "2" : text.length > 4 ? "1" : "0";
-    put(part(el.l, "spoken"), spoken(text));
-    const limits = ctx.progress.limits;
-    const found = text ? judged({ text, unit, limits, resolution: control.resolution, instrument, protects: control.protects, day: ctx.run.now().wall }) : null;
-    const usable = found && !found.refused;
-    showVerdict(box, usable ? found.verdict : null, text ? "not a number yet" : limits ? limitWords(limits, unit) || "no limits" : "no limits");
-    put(part(el.l, "scale"), limits ? limitScale({ limits, plate: ctx.progress.plate, found: usable ? found : null, text: usable ? text : null, unit, old: ctx.lastReading(ctx.step.id) }) : null);
-    showSentence(part(el.l, "sentence"), found);
-    if (usable) say(`${minus(text)} ${pretty(unit)}, ${found.verdict}`);
-    update();
+    const text = input.value.trim(), { limits, plate, instrument } = ctx.progress;
+    const long = text.length > 6 ? "2" : text.length > 4 ? "1" : "0";
+    if (input.dataset.long !== long) input.dataset.long = long;
+    const found = text ? judged({ text, unit, limits, resolution: control.resolution, instrument, protects: control.protects, day: today }) : null;
+    const usable = found && !found.refused, unfit = !text && Boolean(limits?.coarse || limits?.fault);
+    showVerdict(box, usable ? found.verdict : unfit ? "not judged" : null, text ? "not a number yet" : limitWords(limits, unit) || "no limits");
+    redraw(scale, limits ? scaleText({ limits, plate, found: usable ? found : null, text: usable ? text : null, unit, old }) : "");
+    label(text);
+    sayOncePaused(usable ? `${minus(text)} ${pretty(unit)}, ${found.verdict}` : "");
+    said = { text, found };
+    clearTimeout(soon);
+    soon = setTimeout(say);
+  }
+  /** The typed number in words, and the judge's sentence. */
+  function say() {
+    const { text, found } = said, { limits } = ctx.progress, aloud = spoken(text), much = aloud.length > 36 ? "1" : "0";
+    reword(words, aloud);
+    if (words.dataset.long !== much) words.dataset.long = much;
+    if (!text) showWords(sentence, "", "");
+    if (found) showSentence(sentence, { ...found, reach: limits?.reach });
+    else showWords(sentence, ...acceptWords(limits, unit));
+  }
+  /** @param {string} text */
+  function label(text) {
+    reword(typed, minus(text));
+    act.show({ label: text ? recordIt : "Type the reading", ready: Boolean(text), reasons });
   }
   function update() {
-    const text = input.value.trim(), reasons = ctx.shutReasons();
-    put(part(el.r, "reasons"), reasons.length ? reasonList(reasons) : null);
-    act.show({ label: text ? ["Record", h("span", { class: "num" }, minus(text)), pretty(unit)] : "Type the reading", ready: Boolean(text), reasons });
+    today = ctx.run.now().wall;
+    meter.update();
+    reasons = [...(meter.refused() ? [OTHER_METER] : []), ...ctx.shutReasons()];
+    showReasons(reasonsAt, ctx.shutReasons());
+    label(input.value.trim());
   }
+  update();
   show();
-  return { update, focus: input };
+  say();
+  return { update, focus: input, stop: () => clearTimeout(soon) };
 }

@@ -13,6 +13,8 @@ import { openPage } from "./open_page.js";
 import { overPage } from "./overs.js";
 
 const TICK_MS = 500;
+/** A draft is written when no key has come for so long: the disk does not compete with the drawing of a key. */
+const DRAFT_MS = 100;
 
 /** What makes an open page another one: the step, its tries, what it waits for. @param {any} state */
 function pageKey(state) {
@@ -21,9 +23,9 @@ function pageKey(state) {
   return [state.phase, state.node, tries, again, state.pending?.seq ?? "", state.stop?.seq ?? "", state.recorder, state.signatures?.length ?? 0].join("|");
 }
 
-/** @param {any} run @returns {any} progress, or an empty one where the engine has nothing to say */
-function progressOf(run) {
-  try { return run.progress() ?? {}; } catch { return { reasons: [], moves: [], waits: [], may: [], path: [] }; }
+/** @param {any} run @param {any} [using] instrument and range that the person reads with, if not those proposed @returns {any} progress, or an empty one where the engine has nothing to say */
+function progressOf(run, using = null) {
+  try { return run.progress(using) ?? {}; } catch { return { reasons: [], moves: [], waits: [], may: [], path: [] }; }
 }
 
 /** @param {any} app @param {Record<string, string>} args */
@@ -31,7 +33,7 @@ export async function runScreen(app, args) {
   const run = await app.host.openRun(args.run);
   const sheet = run.sheet;
   const drafts = /** @type {Map<string, any>} */ (new Map());
-  let over = /** @type {{name: string, args: any} | null} */ (null), page = /** @type {any} */ (null), key = "", busy = false, drawn = "";
+  let over = /** @type {{name: string, args: any} | null} */ (null), page = /** @type {any} */ (null), key = "", busy = false, drawn = "", draftTimer = 0;
   const view = frame(sheet, { makeSafe: () => ctx.over("make_safe"), thisRun: () => ctx.over("this_run") });
 
   /** @type {any} */
@@ -40,6 +42,9 @@ export async function runScreen(app, args) {
     over: (/** @type {string} */ name, /** @type {any} */ more = {}) => { over = { name, args: more }; key = ""; void draw(); },
     shut: (/** @type {boolean} */ toHead = true) => { over = null; key = ""; void draw(toHead); },
     answer, send, keep, repaint,
+    // Limits, guard and what is too coarse follow at once; nothing is recorded.
+    use: (/** @type {any} */ using) => { keep({ using }); ctx.progress = told(); },
+    settle: () => view.settle(),
     shutReasons: () => (ctx.progress.open === false ? ctx.progress.reasons ?? [] : []),
     people: () => (ctx.state.started?.people ?? []).filter((/** @type {any} */ p) => ctx.state.started.present.includes(p.id)).map(withKey),
     everyone: () => (ctx.state.started?.people ?? []).map(withKey),
@@ -59,9 +64,18 @@ export async function runScreen(app, args) {
   function keep(patch) {
     ctx.draft = { ...ctx.draft, ...patch };
     if (!ctx.step) return;
-    drafts.set(ctx.step.id, ctx.draft);
-    void Promise.resolve(run.saveDraft(ctx.step.id, ctx.draft)).catch(() => undefined);
+    const { id } = ctx.step;
+    drafts.set(id, ctx.draft);
+    clearTimeout(draftTimer);
+    draftTimer = setTimeout(() => saveDraft(id), DRAFT_MS);
   }
+  /** What was typed in a step, or nothing once it is answered, as it stands in memory. @param {string} step */
+  function saveDraft(step) {
+    clearTimeout(draftTimer);
+    return Promise.resolve(run.saveDraft(step, drafts.get(step) ?? null)).catch(() => undefined);
+  }
+  /** Progress with what the person chose to read the open step with. */
+  const told = () => progressOf(run, ctx.step && ctx.step.id === run.state.node ? ctx.draft.using ?? null : null);
   /** Send a command; "saved" is said only once it is on disk. @param {any} command @param {string} [statement] what the person who is spoken for signs */
   async function send(command, statement) {
     if (busy) return { refused: { code: "busy", says: "" } };
@@ -84,7 +98,7 @@ export async function runScreen(app, args) {
       setTimeout(() => page?.refuse?.(result.refused.says), 0);
       await draw();
     } else {
-      if (step) { ctx.draft = {}; drafts.delete(step); await Promise.resolve(run.saveDraft(step, null)).catch(() => undefined); }
+      if (step) { ctx.draft = {}; drafts.delete(step); await saveDraft(step); }
       await draw(true);
       say("Saved on this tablet");
     }
@@ -119,19 +133,20 @@ export async function runScreen(app, args) {
   /** Head and rails after a record that leaves its page open. */
   function repaint() {
     ctx.state = run.state;
-    ctx.progress = progressOf(run);
+    ctx.progress = told();
     view.lanes(openRails());
     paintHead();
   }
 
   async function draw(toHead = false) {
     ctx.state = run.state;
-    ctx.progress = progressOf(run);
+    ctx.progress = told();
     ctx.step = ["going"].includes(ctx.state.phase) ? ctx.progress.step ?? null : null;
     const fresh = over ? `over:${over.name}` : pageKey(ctx.state);
     if (fresh !== key) {
       key = fresh;
       if (ctx.step && !over) ctx.draft = drafts.get(ctx.step.id) ?? (await Promise.resolve(run.draft(ctx.step.id)).catch(() => null)) ?? {};
+      if (ctx.draft.using) ctx.progress = told();
       page?.stop?.();
       page = over ? overPage(ctx, over.name, over.args) : openPage(ctx);
       view.open(openRails(), page.node, Boolean(over));
@@ -147,7 +162,7 @@ export async function runScreen(app, args) {
   }
   function tick() {
     if (busy) return;
-    ctx.progress = progressOf(run);
+    ctx.progress = told();
     page?.update?.();
     paintHead();
   }
@@ -162,6 +177,6 @@ export async function runScreen(app, args) {
 
   return {
     node: view.node, title: sheet.title, focus: page.focus ?? null,
-    stop: () => { clearInterval(timer); document.removeEventListener("visibilitychange", seen); forget?.(); quiet(); page?.stop?.(); run.close?.(); },
+    stop: () => { clearInterval(timer); if (draftTimer && ctx.step) void saveDraft(ctx.step.id); document.removeEventListener("visibilitychange", seen); forget?.(); quiet(); page?.stop?.(); run.close?.(); },
   };
 }
