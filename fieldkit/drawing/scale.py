@@ -50,13 +50,14 @@ def _channel(ink: str, s: Spread, width: int, model: dict[str, Any]) -> str:
     left = _x(s, width, s.low) if s.low is not None else _PAD
     right = _x(s, width, s.high) if s.high is not None else width - _PAD
     out = rect(ink, "key", left, _TOP, right - left, _HIGH)
+    value = judged(s, model)
     if s.low is not None:
-        out += _outside(ink, _PAD, left, s.value is not None and s.value < s.low)
+        out += _outside(ink, _PAD, left, value is not None and value < s.low)
     if s.high is not None:
-        out += _outside(ink, right, width - _PAD, s.value is not None and s.value > s.high)
+        out += _outside(ink, right, width - _PAD, value is not None and value > s.high)
     for limit, guard, caution in ((s.low, s.accept_low, s.caution_low), (s.high, s.accept_high, s.caution_high)):
         if limit is not None:
-            out += _bands(ink, s, width, limit, guard, caution)
+            out += _bands(ink, s, width, limit, guard, caution, value)
     dash = "6 4" if model.get("verdict") == "not judged" else ""
     edge = f"M{px(left)} {px(_TOP)}H{px(right)}M{px(left)} {px(_FOOT)}H{px(right)}"
     return out + path(ink, edge, "", "ink", "2", dash)
@@ -69,7 +70,9 @@ def _outside(ink: str, x0: int, x1: int, hit: bool) -> str:
     return out
 
 
-def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, caution: int | None) -> str:
+def _bands(
+    ink: str, s: Spread, width: int, limit: int, guard: int | None, caution: int | None, value: int | None
+) -> str:
     """Guard band cross-hatched from post to the acceptance limit, caution strip beyond; yellow where a reading is.
 
     A reading at the inner edge is clear of the band: the acceptance limit itself passes.
@@ -79,7 +82,7 @@ def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, cauti
     if not edges:
         return ""
     inner = max(edges) if low else min(edges)
-    hot = s.value is not None and in_band(s.value, limit, inner, low)
+    hot = value is not None and in_band(value, limit, inner, low)
     x0, x1 = sorted((_x(s, width, limit), _x(s, width, inner)))
     role = "on-caution" if hot else "ink-2"
     out = rect(ink, "caution", x0, _TOP, x1 - x0, _HIGH) if hot else ""
@@ -92,6 +95,11 @@ def _bands(ink: str, s: Spread, width: int, limit: int, guard: int | None, cauti
             edge = g1 if low else g0
             out += path(ink, f"M{px(edge)} {px(_TOP)}V{px(_FOOT)}", "", role, "2")
     return out
+
+
+def judged(s: Spread, model: dict[str, Any]) -> int | None:
+    """The reading where it is judged: colour says a verdict, so what is not judged gets none."""
+    return None if model.get("verdict") == "not judged" else s.value
 
 
 def in_band(value: int, limit: int, inner: int, low: bool) -> bool:

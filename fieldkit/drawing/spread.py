@@ -36,6 +36,8 @@ class Spread(NamedTuple):
     far: str
 
 
+#: limits that rounding to a coarse meter's steps has crossed bound nothing, and are not drawn
+_BOUNDS = ("low", "high", "caution_low", "caution_high", "accept_low", "accept_high")
 _FIELDS = ("low", "high", "caution_low", "caution_high", "accept_low", "accept_high", "value", "u", "plate")
 
 
@@ -45,6 +47,8 @@ def spread(model: dict[str, Any], stretch: bool) -> Spread:
     places = decimals(*[model.get(f) for f in _FIELDS], *olds) + _EXTRA
     keep = decimals(model.get("value"), model.get("low"), model.get("high"))
     n = {f: scaled(model.get(f), places) for f in _FIELDS}
+    if n["low"] is not None and n["high"] is not None and n["low"] > n["high"]:
+        n |= dict.fromkeys(_BOUNDS)
     low, high, value, u = n["low"], n["high"], n["value"], n["u"] or 0
     old = tuple(o for o in (scaled(text, places) for text in olds) if o is not None)
     a, b = _plain(low, high, value, u, n["plate"], old, 10**places)

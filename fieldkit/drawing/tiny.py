@@ -11,7 +11,7 @@ from typing import Any
 from fieldkit.drawing import says
 from fieldkit.drawing.number import px, ratio
 from fieldkit.drawing.paint import hatch, path, rect, svg
-from fieldkit.drawing.scale import in_band
+from fieldkit.drawing.scale import in_band, judged
 from fieldkit.drawing.spread import Spread, spread
 
 _TOP = 70
@@ -30,8 +30,9 @@ def tiny(model: dict[str, Any]) -> str:
     left = x(s.low) if s.low is not None else 0
     right = x(s.high) if s.high is not None else width
     out = rect(ink, "out", 0, _TOP, width, high) + rect(ink, "key", left, _TOP, right - left, high)
-    under = s.value is not None and s.low is not None and s.value < s.low
-    over = s.value is not None and s.high is not None and s.value > s.high
+    value = judged(s, model)
+    under = value is not None and s.low is not None and value < s.low
+    over = value is not None and s.high is not None and value > s.high
     if under:
         out += rect(ink, "danger", 0, _TOP, left, high)
     if over:
@@ -41,7 +42,7 @@ def tiny(model: dict[str, Any]) -> str:
         if limit is None or not edges:
             continue
         inner = max(edges) if limit == s.low else min(edges)
-        hot = s.value is not None and in_band(s.value, limit, inner, limit == s.low)
+        hot = value is not None and in_band(value, limit, inner, limit == s.low)
         c0, c1 = sorted((x(limit), x(inner)))
         if c1 <= c0:
             continue

@@ -74,6 +74,7 @@ def tiny(reading: Reading) -> Markup:
         "olds": [{"name": p.name, "value": p.value} for p in reading.pointers],
         "verdict": reading.verdict,
         "why": reading.reason,
+        "says": reading.words,
         "width": _TINY[0],
         "height": _TINY[1],
         "ink": "print",

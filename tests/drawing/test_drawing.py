@@ -122,6 +122,19 @@ def test_yellow_is_the_guard_band_without_the_acceptance_limit_which_passes(
     assert ("f-caution" in drawing.DRAWINGS[draw](model)) is yellow
 
 
+@pytest.mark.parametrize("draw", ["scale", "tiny"])
+@pytest.mark.parametrize("value", ["6.12", "6.05", "6.60"])
+def test_what_is_not_judged_carries_no_colour_wherever_it_lies(draw: str, value: str) -> None:
+    svg = drawing.DRAWINGS[draw]({**HEATER, "value": value, "verdict": "not judged"})
+    assert "caution" not in svg and "danger" not in svg and "stroke-dasharray" in svg
+
+
+@pytest.mark.parametrize("draw", ["scale", "tiny"])
+def test_limits_that_a_coarse_meters_steps_have_crossed_are_not_drawn(draw: str) -> None:
+    svg = drawing.DRAWINGS[draw]({**HEATER, "low": "7", "high": "6", "value": "6", "verdict": "not judged"})
+    assert posts(svg, 6) == [] and posts(svg, 3.6) == []
+
+
 def test_a_reading_far_off_breaks_the_axis_and_leaves_the_limits_readable() -> None:
     svg = drawing.scale({**HEATER, "value": "660", "verdict": "fail"})
     left, right = posts(svg, 6)

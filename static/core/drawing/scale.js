@@ -39,10 +39,11 @@ function channel(ink, s, width, model) {
   const left = s.low !== null ? x(s, width, s.low) : PAD;
   const right = s.high !== null ? x(s, width, s.high) : width - PAD;
   let out = rect(ink, "key", left, TOP, right - left, HIGH);
-  if (s.low !== null) out += outside(ink, PAD, left, s.value !== null && s.value < s.low);
-  if (s.high !== null) out += outside(ink, right, width - PAD, s.value !== null && s.value > s.high);
-  if (s.low !== null) out += bands(ink, s, width, s.low, s.accept_low, s.caution_low);
-  if (s.high !== null) out += bands(ink, s, width, s.high, s.accept_high, s.caution_high);
+  const value = judged(s, model);
+  if (s.low !== null) out += outside(ink, PAD, left, value !== null && value < s.low);
+  if (s.high !== null) out += outside(ink, right, width - PAD, value !== null && value > s.high);
+  if (s.low !== null) out += bands(ink, s, width, s.low, s.accept_low, s.caution_low, value);
+  if (s.high !== null) out += bands(ink, s, width, s.high, s.accept_high, s.caution_high, value);
   const dash = model.verdict === "not judged" ? "6 4" : "";
   const edge = `M${px(left)} ${px(TOP)}H${px(right)}M${px(left)} ${px(FOOT)}H${px(right)}`;
   return out + path(ink, edge, "", "ink", "2", dash);
@@ -57,14 +58,14 @@ function outside(ink, x0, x1, hit) {
 
 /**
  * @param {string} ink @param {Spread} s @param {number} width @param {bigint} limit @param {bigint | null} guard
- * @param {bigint | null} caution
+ * @param {bigint | null} caution @param {bigint | null} value
  */
-function bands(ink, s, width, limit, guard, caution) {
+function bands(ink, s, width, limit, guard, caution, value) {
   const edges = known([guard, caution]);
   if (!edges.length) return "";
   const low = limit === s.low;
   const inner = low ? most(edges) : least(edges);
-  const hot = s.value !== null && in_band(s.value, limit, inner, low);
+  const hot = value !== null && in_band(value, limit, inner, low);
   const [x0, x1] = ordered(x(s, width, limit), x(s, width, inner));
   const role = hot ? "on-caution" : "ink-2";
   let out = hot ? rect(ink, "caution", x0, TOP, x1 - x0, HIGH) : "";
@@ -77,6 +78,12 @@ function bands(ink, s, width, limit, guard, caution) {
     }
   }
   return out;
+}
+
+/** The reading where it is judged: colour says a verdict, so what is not judged gets none.
+ * @param {Spread} s @param {Model} model */
+export function judged(s, model) {
+  return model.verdict === "not judged" ? null : s.value;
 }
 
 /** Whether a reading lies in the band beside a limit, whose inner edge does not belong to it.

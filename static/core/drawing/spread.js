@@ -36,6 +36,9 @@ export const least = (of) => of.reduce((x, y) => (y < x ? y : x));
 /** @param {(bigint | null)[]} of @returns {bigint[]} */
 export const known = (of) => of.filter((x) => x !== null);
 
+/** how many of a model's fields are limits */
+const BOUNDS = 6;
+
 /** @param {Model} model @param {boolean} stretch @returns {Spread} */
 export function spread(model, stretch) {
   const olds = (model.olds || []).map((o) => o.value);
@@ -43,7 +46,10 @@ export function spread(model, stretch) {
     model.value, model.u, model.plate];
   const places = decimals(...fields, ...olds) + EXTRA;
   const keep = decimals(model.value, model.low, model.high);
-  const [low, high, caution_low, caution_high, accept_low, accept_high, value, given, plate] = fields.map((f) => scaled(f, places));
+  const found = fields.map((f) => scaled(f, places));
+  // limits that rounding to a coarse meter's steps has crossed bound nothing, and are not drawn
+  if (found[0] !== null && found[1] !== null && found[0] > found[1]) found.fill(null, 0, BOUNDS);
+  const [low, high, caution_low, caution_high, accept_low, accept_high, value, given, plate] = found;
   const u = given ?? 0n;
   const old = known(olds.map((o) => scaled(o, places)));
   let [a, b] = plain(low, high, value, u, plate, old, 10n ** BigInt(places));

@@ -3,7 +3,7 @@
 import { half, px, ratio } from "./number.js";
 import { hatch, path, rect, svg } from "./paint.js";
 import * as says from "./says.js";
-import { in_band } from "./scale.js";
+import { in_band, judged } from "./scale.js";
 import { known, least, most, spread } from "./spread.js";
 
 /** @typedef {import("./spread.js").Model} Model @typedef {import("./spread.js").Spread} Spread */
@@ -23,8 +23,9 @@ export function tiny(model) {
   const left = s.low !== null ? x(s.low) : 0;
   const right = s.high !== null ? x(s.high) : width;
   let out = rect(ink, "out", 0, TOP, width, high) + rect(ink, "key", left, TOP, right - left, high);
-  const under = s.value !== null && s.low !== null && s.value < s.low;
-  const over = s.value !== null && s.high !== null && s.value > s.high;
+  const value = judged(s, model);
+  const under = value !== null && s.low !== null && value < s.low;
+  const over = value !== null && s.high !== null && value > s.high;
   if (under) out += rect(ink, "danger", 0, TOP, left, high);
   if (over) out += rect(ink, "danger", right, TOP, width - right, high);
   /** @type {[bigint | null, bigint | null, bigint | null][]} */
@@ -33,7 +34,7 @@ export function tiny(model) {
     const edges = known([guard, caution]);
     if (limit === null || !edges.length) continue;
     const inner = limit === s.low ? most(edges) : least(edges);
-    const hot = s.value !== null && in_band(s.value, limit, inner, limit === s.low);
+    const hot = value !== null && in_band(value, limit, inner, limit === s.low);
     const c0 = Math.min(x(limit), x(inner));
     const c1 = Math.max(x(limit), x(inner));
     if (c1 <= c0) continue;
