@@ -33,10 +33,11 @@ export function frame(sheet, acts) {
     const phone = matchMedia("(max-width: 640px)").matches;
     const ROW = rowHeight(), most = strip.clientHeight < 700 || ROW > 48 ? 1 : 2;
     const above = isOver || phone ? 0 : Math.min(most, past.children.length), below = isOver || phone ? 0 : Math.min(ROW > 48 ? 1 : 2, ahead.children.length);
+    strip.style.setProperty("--seen", `${strip.clientHeight}px`);
     now.style.setProperty("--open-height", `${Math.max(0, strip.clientHeight - (above + below) * ROW)}px`);
     // Where the step needs more than that, rows give way first: the button at its foot stays in sight.
-    const room = Math.max(0, strip.clientHeight - now.offsetHeight);
-    strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - Math.min(above * ROW, room));
+    const room = Math.floor(Math.max(0, strip.clientHeight - now.offsetHeight) / ROW);
+    strip.scrollTop = isOver ? 0 : Math.max(0, now.offsetTop - strip.offsetTop - Math.min(above, room) * ROW);
   }
   const watch = new ResizeObserver(() => settle());
   watch.observe(strip);

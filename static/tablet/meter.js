@@ -56,7 +56,8 @@ export function notesPart() {
 export function rangeWords(told, control) {
   const limits = [told.limits, ...(told.points ?? []).map((/** @type {any} */ p) => p.limits)].filter(Boolean);
   if (limits.some((one) => one.coarse)) return { serves: false, small: "not judged" };
-  if (limits.some((one) => one.reach)) return { serves: false, small: "cannot pass" };
+  const short = limits.map((one) => one.reach).find(Boolean);
+  if (short) return { serves: false, small: short.includes(" ends ") ? "too low" : "too high" };
   const at = told.plate ?? limits.flatMap((one) => [one.low, one.high]).filter(Boolean).reduce((a, b) => (a === null || Math.abs(Number(b)) > Math.abs(Number(a)) ? b : a), /** @type {string | null} */ (null));
   const u = at === null ? null : worth.expanded(at, told.instrument, control.unit.symbol);
   return { serves: true, small: u === null ? "" : `±${worth.rounded(u, told.instrument.resolution)}` };
@@ -102,15 +103,14 @@ export function meterPart(line, ctx, { asked, changed }) {
   /** @param {any} progress */
   function otherMeters({ instrument, instruments }) {
     if (instruments.length < 2) { put(others); put(list); return; }
-    const chosen = picks({
-      legend: "Read with", quiet: true, chosen: [instrument.id], onchange: () => { open = false; choose({ instrument: chosen.values()[0] }); others.querySelector("button")?.focus({ preventScroll: true }); },
-      options: instruments.map((/** @type {string} */ id) => ({ value: id, label: id, small: calibration(id) })),
-    });
-    const toggle = h("button", { type: "button", class: "close", "data-another-meter": true, "aria-expanded": String(open), on: { click: () => { open = !open; show(); ctx.settle(); } } }, "Another meter");
-    const show = () => { chosen.node.hidden = !open; toggle.setAttribute("aria-expanded", String(open)); };
+    const one = (/** @type {string} */ id) => h("button", { type: "button", class: "way", "data-meter-id": id, "aria-pressed": String(id === instrument.id),
+      on: { click: () => { open = false; choose({ instrument: id }); others.querySelector("button")?.focus({ preventScroll: true }); } } }, h("b", { class: "id" }, id), h("span", {}, calibration(id)));
+    const choice = h("div", { class: "picks", role: "group", "aria-label": "Read with" }, instruments.map(one));
+    const toggle = h("button", { type: "button", class: "close", "data-another-meter": true, on: { click: () => { open = !open; show(); ctx.settle(); } } }, "Another meter");
+    const show = () => { choice.hidden = !open; toggle.setAttribute("aria-expanded", String(open)); };
     show();
     put(others, toggle);
-    put(list, chosen.node);
+    put(list, choice);
   }
 
   /** @param {string} id */

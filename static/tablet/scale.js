@@ -31,8 +31,11 @@ function model(spec) {
   };
 }
 
-/** @param {Spec} spec @returns {boolean} whether there is anything to draw a reading on */
-const hasLimits = (spec) => Boolean(spec.limits) && (spec.limits.low != null || spec.limits.high != null);
+/** Whether there is anything to draw a reading on; limits that rounding to a coarse meter's steps has crossed are nothing. @param {Spec} spec @returns {boolean} */
+function hasLimits({ limits }) {
+  if (!limits || (limits.low == null && limits.high == null)) return false;
+  return limits.low == null || limits.high == null || Number(limits.low) <= Number(limits.high);
+}
 
 /** The limit scale as text, for a place that is redrawn with every key. @param {Spec} spec @returns {string} "" where there is nothing to draw on */
 export const scaleText = (spec) => (hasLimits(spec) ? drawing.scale({ ...model(spec), width: room() }) : "");

@@ -56,6 +56,24 @@ def after(step: str, *commands: dict[str, Any], **more: Any) -> Scene:
     return scene(play, **more)
 
 
+def ranged(name: str, low: str, high: str, resolution: str, percent: str = "0.3") -> dict[str, str]:
+    """A range in V, as a register has it."""
+    return {"name": name, "unit": "V", "low": low, "high": high, "resolution": resolution, "percent": percent, "digits": "1", "percent_of_range": "0"}  # fmt: skip
+
+
+#: a heater meter with ranges that the limits of 6.10 to 6.50 V lie beyond, on, and too finely for
+RANGES = [ranged("2 V", "-2", "2", "0.001"), ranged("20 V", "-20", "20", "0.01"), ranged("200 V", "-200", "200", "0.1"), ranged("1000 V", "-1000", "1000", "1")]  # fmt: skip
+OUT = {"calibrated_on": "2025-06-30", "interval_months": 12, "calibrated_to": "2026-06-30"}
+#: a step that takes no overdue meter, read with a hand instrument of which there is another one
+STRICT = {"meter": {"role": "", "instrument": "RM-1", "hand_at": "", "overdue": "refuse", "correlated": False}, "unit": {"symbol": "mW/cm2", "factor": "10", "offset": "0"}, "limits": None, "plate": None, "typical": None}  # fmt: skip
+
+
+def metered(step: str = "heater_left", procedure: str = "warm-up", *, strict: bool = False, **meter: Any) -> Scene:
+    """A run at a reading whose meter is another than the register's, or is refused where it is overdue."""
+    controls = {step: STRICT} if strict else {}
+    return scene(Play(procedure, instruments={"DM-04": meter}, controls=controls).to(step, picks={"next": "look"}))
+
+
 def safe_item() -> str:
     return str(Play("warm-up").sheet["make_safe"][0]["id"])
 
@@ -89,6 +107,17 @@ ALONE = {"code": "alone", "says": "This procedure needs 2 people, and 1 is named
 PAUSED = {"do": "paused", "reason": "called to the other cabinet"}
 
 # ---- acts ------------------------------------------------------------------------------------------------------------
+
+
+def on_range(name: str, *then: Act) -> Act:
+    """Another range than the proposed one is chosen."""
+
+    def act(page: Any) -> None:
+        page.get_by_role("radio", name=name).check()
+        for one in then:
+            one(page)
+
+    return act
 
 
 def over(name: str, *clicks: str) -> Act:
@@ -253,6 +282,18 @@ def _steps() -> list[Place]:
         Place("number, conditional", "control number", lambda: at("heater_left"), typing("6.48")),
         Place("number, fail", "control number", lambda: at("heater_left"), typing("6.62")),
         Place("number, refused", "control number", lambda: at("heater_left"), typing("1e5", "[data-first]")),
+        Place("number, ranges", "control number", lambda: metered(ranges=RANGES), typing("6.48")),
+        Place("number, too coarse", "control number", lambda: metered(ranges=RANGES), on_range("1000 V")),
+        Place("number, not judged", "control number", lambda: metered(ranges=RANGES), on_range("1000 V", typing("6"))),
+        Place("number, wrong range", "control number", lambda: metered(ranges=RANGES), on_range("2 V", typing("1.9"))),
+        Place("number, overdue", "control number", lambda: metered(**OUT), typing("6.30")),
+        Place("number, refused meter", "control number", lambda: metered(strict=True)),
+        Place(
+            "number, another meter",
+            "control number",
+            lambda: metered(strict=True),
+            lambda p: (clicking("[data-meter-id=RM-2]")(p), typing("0.3")(p)),
+        ),
         Place("ways on", "phase pending", lambda: at("heater_left"), typing("6.62", "[data-first]")),
         Place("taken again", "phase pending", lambda: at("heater_left"), lambda p: (typing("6.62")(p), again(p))),
         Place("deviation", "phase pending", over_limit, deviation),
@@ -267,6 +308,7 @@ def _steps() -> list[Place]:
         Place("lock", "control lock", lambda: at("lock_q1", HV)),
         Place("prove", "control prove", lambda: at("prove_beam", HV)),
         Place("prove, a line", "control prove", lambda: at("prove_beam", HV), typing("502", "[data-first]")),
+        Place("prove, range too high", "control prove", lambda: at("prove_beam", HV), on_range("40 kV", typing("502"))),
         Place("earth", "control earth", lambda: at("earth_e1", HV)),
         Place("people in", "control people", lambda: at("hands_in", HV)),
         Place("people out", "control people", lambda: at("hands_out", HV)),

@@ -6,6 +6,7 @@ the signatures' bytes are made up here. `Play(procedure, ...).to(step)` gives th
 
 from __future__ import annotations
 
+import copy
 import json
 from datetime import datetime, timedelta, timezone
 from pathlib import Path
@@ -43,9 +44,21 @@ class Play:
     """One run that goes on as long as it is asked to."""
 
     def __init__(
-        self, procedure: str, cabinet: str = "B2", tube: str = "T-0417", present: tuple[str, ...] = ("vell", "arkle")
+        self,
+        procedure: str,
+        cabinet: str = "B2",
+        tube: str = "T-0417",
+        present: tuple[str, ...] = ("vell", "arkle"),
+        instruments: dict[str, Any] | None = None,
+        controls: dict[str, Any] | None = None,
     ) -> None:
+        """`instruments` changes entries of the register by id, `controls` what steps of the sheet ask, by step."""
         self.sheet, self.sha256 = sheet_of(procedure)
+        self.instruments = {k: {**v, **(instruments or {}).get(k, {})} for k, v in STATION["instruments"].items()}
+        if controls:
+            self.sheet = copy.deepcopy(self.sheet)
+            for step in self.sheet["steps"]:
+                step["control"].update(controls.get(step["id"], {}))
         self.at = START
         self.texts: list[str] = []
         self.run = folding.begin(self.sheet)
@@ -82,12 +95,21 @@ class Play:
             "sheet": self.sha256, "procedure": self.sheet["procedure"], "edition": self.sheet["edition"], "site": site,
             "site_name": STATION["sites"][site]["name"], "cabinet": cabinet, "tube": tube,
             "givens": {g["name"]: held[g["origin"]][g["name"]] for g in self.sheet["givens"]}, "meters": at["meters"],
-            "instruments": list(STATION["instruments"].values()), "places": at["places"],
+            "instruments": self._aboard(at["meters"]), "places": at["places"],
             "people": [{"id": k, "name": p["name"], "roles": p["roles"]} for k, p in STATION["people"].items()],
             "present": list(present), "locks": locks, "earths": [], "earlier": earlier,
             "tablet": {"device": "d1", "name": "tablet 3", "installed": True, "persisted": True, "probe": "8 MB written and read back in 0.2 s"},
             "kit": "k" * 64,
         }  # fmt: skip
+
+    def _aboard(self, meters: dict[str, str]) -> list[dict[str, Any]]:
+        """What static/tablet/begin.js takes along: the sheet's instruments, and hand instruments that read the same."""
+        asked = [s["control"].get(key) for s in self.sheet["steps"] for key in ("meter", "tester")]
+        ids = {one["instrument"] or meters[one["role"]] for one in asked if one}
+        built_in = {i for cabinet in STATION["cabinets"].values() for i in cabinet["meters"].values()}
+        reads = {self.instruments[i]["reads"] for i in ids - built_in}
+        ids |= {i for i, one in self.instruments.items() if i not in built_in and one["reads"] in reads}
+        return [self.instruments[i] for i in sorted(ids)]
 
     def now(self) -> dict[str, str]:
         mono = (self.at - START) / timedelta(milliseconds=1)

@@ -64,7 +64,7 @@ def held(plays: list[Play], **more: Any) -> dict[str, Any]:
 
 
 def scene(*plays: Play, held_more: dict[str, Any] | None = None, **more: Any) -> dict[str, Any]:
-    sheets = {sha: sheet for sheet, sha in (sheet_of(p.sheet["procedure"]) for p in plays)}
+    sheets = {p.sha256: p.sheet for p in plays}
     runs = [{"run": p.state["run"], "chain": p.state["chain"], "sheet": p.sha256, "events": p.texts} for p in plays]
     return {"held": held(list(plays), **(held_more or {})), "sheets": sheets, "runs": runs, **more}
 

@@ -422,7 +422,7 @@ def test_a_meter_of_the_run_gives_the_uncertainty_of_what_it_reads(page: Any, lo
     offered = page.locator("[data-margin=voltage] .sum-with option").all_text_contents()
     # what reads a heater's voltage first, and nothing that reads something else
     assert offered[0] == "± as typed here" and offered[1] == "DM-04 heater voltage, 20 V"
-    assert any("beam voltage" in one for one in offered) and not any("current" in one for one in offered)
+    assert any("bias voltage" in one for one in offered) and not any("current" in one for one in offered)
     page.select_option("[data-margin=voltage] .sum-with select", "DM-04/20 V")
     # 0.3 % of 6.3 V and one digit of 0.01 V; U = 2 a / root(3)
     half = 0.003 * 6.3 + 0.01

@@ -16,7 +16,7 @@ import { spoken } from "../spoken.js";
 import { acceptWords, limitWords, minus, pretty } from "../words.js";
 
 /** Why Record is shut where the meter is refused; what to do about it stands beside the meter. */
-const OTHER_METER = { says: "Opens with a meter that is in date.", left: null };
+const OTHER_METER = { says: "Opens with another meter.", left: null };
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
@@ -26,6 +26,8 @@ export function mount(ctx, el) {
   const meter = meterPart(part(el.l, "meter"), ctx, { asked: control.meter, changed: show });
   put(part(el.l, "label"), `${ctx.step.title}, in ${pretty(unit)}`);
   put(part(el.l, "unit"), pretty(unit));
+  // A long unit stands over the words, so that the figures keep their room.
+  input.closest(".well")?.classList.toggle("stack", pretty(unit).length > 2);
   put(part(el.r, "pad"), keypad(() => input));
   const act = acting(ctx, { run: record });
   put(part(el.r, "act"), act.node);

@@ -14,7 +14,7 @@ import { freshen } from "../step_page.js";
 import { limitWords, minus, pretty } from "../words.js";
 
 /** Why Record is shut where the tester is refused; what to do about it stands beside the tester. */
-const OTHER_TESTER = { says: "Opens with a tester that is in date.", left: null };
+const OTHER_TESTER = { says: "Opens with a tester in date.", left: null };
 
 /** @param {any} ctx @param {{l: HTMLElement, r: HTMLElement}} el */
 export function mount(ctx, el) {
