@@ -209,7 +209,9 @@ def test_with_gloves_everything_is_larger(page: Any, server: LookServer, place: 
 
 BROKEN = """() => {
   const add = (where, text) => { const holder = document.createElement("template"); holder.innerHTML = text; document.querySelector(where).append(holder.content); };
-  add(".work .r", "<button type='button' class='act first' data-bad='nameless'></button><button type='button' class='bad'>x</button><p class='pale'>pale words</p><p class='wide'>wide</p>");
+  add(".work .r", "<button type='button' class='act first' data-bad='nameless'></button><button type='button' class='bad'>x</button><p class='wide'>wide</p>");
+  // at the top, in sight: of what lies under a dock axe says that it cannot tell
+  document.querySelector(".work .r").prepend(Object.assign(document.createElement("p"), { className: "pale", textContent: "pale words" }));
   const set = (one, styles) => Object.assign(document.querySelector(one).style, styles);
   set(".bad", { width: "30px", height: "30px", marginTop: "-6px" });
   set(".pale", { color: "#bbb", background: "#fff" });
