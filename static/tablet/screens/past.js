@@ -28,13 +28,13 @@ export function pastPage(ctx, { row: shown }) {
   if (row.text && row.unit) rows.push(["Reading", h("span", {}, (row.old ?? []).map((/** @type {any} */ o) => [h("s", { class: "num" }, minus(o.text)), " "]), h("span", { class: "num" }, minus(row.text)), ` ${pretty(row.unit)}`)]);
   if (row.verdict) rows.push(["Verdict", row.verdict]);
   if (row.limits) rows.push(["Limits", `${limitWords(row.limits, row.unit ?? "") || "none"}${row.limits.low_name || row.limits.high_name ? ` (${[...new Set([row.limits.low_name, row.limits.high_name].filter(Boolean))].join(", ")})` : ""}`]);
-  if (row.instrument) rows.push(["Meter", h("span", { class: "id" }, row.instrument)]);
+  if (row.instrument) rows.push(["Meter", h("span", {}, h("span", { class: "id" }, row.instrument), row.range ? `, ${pretty(row.range)} range` : "", row.overdue ? ", calibration overdue" : "")]);
   for (const old of row.old ?? []) rows.push(["Corrected", `was ${minus(old.text)}: ${old.reason}`]);
   for (const [name, label, text] of fields) if (name !== "text" || row.kind !== "read") rows.push([label, text ?? ""]);
   if (body?.heard) rows.push(["Heard by", body.heard.map((/** @type {string} */ id) => personName(ctx.state, id)).join(", ")]);
   if (row.reason || body?.reason) rows.push(["Reason", row.reason || body.reason]);
   if (row.note || body?.note) rows.push(["Note", row.note || body.note]);
-  const scale = row.limits && row.text && row.unit ? limitScale({ limits: row.limits, found: { u: row.u, margin: row.margin, verdict: row.verdict }, text: String(row.text), unit: row.unit }) : null;
+  const scale = row.limits && row.text && row.unit ? limitScale({ limits: row.limits, found: { u: row.u, margin: row.margin, verdict: row.verdict, words: row.words }, text: String(row.text), unit: row.unit }) : null;
   const may = fields.length && !ctx.run.readonly && (ctx.progress.may ?? ["correct"]).includes("correct");
   const form = h("div", { "data-correction": true });
   const open = h("button", { type: "button", class: "act", "data-correct": true, on: { click: () => { put(form, correction(ctx, row, fields)); open.remove(); /** @type {HTMLElement | null} */ (form.querySelector("input, textarea"))?.focus(); } } }, "Correct it");

@@ -53,7 +53,7 @@ function recorded(ctx, row) {
   showSentence(sentence, row);
   showVerdict(box, row.verdict ?? null);
   return [h("div", { class: "entry" }, h("div", { class: "well" }, h("span", { class: "figure" }, h("span", {}, minus(text ?? "")), h("span", { class: "u" }, pretty(row.unit ?? "")))), box),
-    h("div", { class: "scalebox" }, row.limits && text ? limitScale({ limits: row.limits, plate: ctx.progress.plate, found: { u: row.u, margin: row.margin, verdict: row.verdict }, text: String(text), unit: row.unit }) : null),
+    h("div", { class: "scalebox" }, row.limits && text ? limitScale({ limits: row.limits, plate: ctx.progress.plate, found: { u: row.u, margin: row.margin, verdict: row.verdict, words: row.words }, text: String(text), unit: row.unit }) : null),
     sentence];
 }
 
