@@ -5,7 +5,6 @@
 import { drawn } from "./dom.js";
 
 const SVG = "http://www.w3.org/2000/svg";
-const SHAPE = /<(\w+)[^>]*?\/>|<(\w+)[^>]*>[^<]*<\/\2>/g;
 
 /** what stands in an element now @type {WeakMap<Element, {text: string, head: string, shapes: string[] | null}>} */
 const standing = new WeakMap();
@@ -33,11 +32,10 @@ export function redraw(holder, text) {
   }
 }
 
-/** The tag of the drawing itself, and its shapes; null for these where they are not flat. @param {string} text */
+/** The tag of the drawing itself, and its shapes, each without its outer brackets; null for these where they are not flat. @param {string} text */
 function taken(text) {
-  const head = text.slice(0, text.indexOf(">") + 1), body = text.slice(head.length, -"</svg>".length);
-  const found = body.match(SHAPE) ?? [];
-  return { head, shapes: text && found.join("") === body ? found : null };
+  const head = text.slice(0, text.indexOf(">") + 1), body = text.slice(head.length + 1, -"></svg>".length);
+  return { head, shapes: text && !/<g|<svg|><\//.test(body) ? body.split("><") : null };
 }
 
 /** Shapes at both ends that are the same stay; between them one of the same kind is changed, others come or go. @param {Element} svg @param {string[]} was @param {string[]} now */
@@ -64,14 +62,15 @@ function shapes(svg, was, now) {
 }
 
 /** @param {string} shape */
-const kindOf = (shape) => shape.slice(1, shape.search(/[ >/]/));
+const kindOf = (shape) => shape.slice(0, shape.indexOf(" "));
 
 /** @param {Element} node @param {string} was @param {string} now */
 function change(node, was, now) {
   if (was === now) return;
-  const [before, after] = [was.indexOf(">") + 1, now.indexOf(">") + 1];
-  dress(node, was.slice(0, before), now.slice(0, after));
-  if (now.length > after) reword(node, plain(now.slice(after, now.lastIndexOf("<"))));
+  // a text's words stand after its tag; a shape has none
+  const [before, after] = [was.indexOf(">"), now.indexOf(">")];
+  dress(node, before < 0 ? was : was.slice(0, before), after < 0 ? now : now.slice(0, after));
+  if (after >= 0) reword(node, plain(now.slice(after + 1, now.lastIndexOf("<"))));
 }
 
 /** Attributes as the tag has them. @param {Element} node @param {string} was @param {string} now */

@@ -15,6 +15,9 @@ import { sayOncePaused } from "../announce.js";
 import { spoken } from "../spoken.js";
 import { acceptWords, limitWords, minus, pretty } from "../words.js";
 
+/** The words follow when no key came for so long: whoever still types does not read them, and the next verdict comes sooner. */
+const WORDS_MS = 60;
+
 /** Why Record is shut where the meter is refused; what to do about it stands beside the meter. */
 const OTHER_METER = { says: "Opens with another meter.", left: null };
 
@@ -52,7 +55,7 @@ export function mount(ctx, el) {
     input.focus();
   }
 
-  /** What the typed text and the meter's range say: the verdict and its scale in this frame, the words in the next. */
+  /** What the typed text and the meter's range say: the verdict and its scale at once, the words once typing rests. */
   function show() {
     const text = input.value.trim(), { limits, plate, instrument } = ctx.progress;
     const long = text.length > 6 ? "2" : text.length > 4 ? "1" : "0";
@@ -65,7 +68,7 @@ export function mount(ctx, el) {
     sayOncePaused(usable ? `${minus(text)} ${pretty(unit)}, ${found.verdict}` : "");
     said = { text, found };
     clearTimeout(soon);
-    soon = setTimeout(say);
+    soon = setTimeout(say, WORDS_MS);
   }
   /** The typed number in words, and the judge's sentence. */
   function say() {
