@@ -4,6 +4,7 @@
  */
 import * as readings from "../core/readings.js";
 import * as worth from "../core/worth.js";
+import { say } from "./announce.js";
 import { h, picks, put } from "./dom.js";
 import { meterWords } from "./judging.js";
 import { verdictMark } from "./icons.js";
@@ -78,6 +79,8 @@ export function meterPart(line, ctx, { asked, changed }) {
   function choose(using) {
     ctx.use(using);
     update();
+    const { instrument } = ctx.progress, [note] = beforehand(ctx.progress);
+    say(note ? note.bold + note.rest : `${instrument.id}${instrument.range ? `, ${pretty(instrument.range)} range` : ""}`);
     changed();
     ctx.settle();
   }

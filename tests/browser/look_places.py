@@ -74,6 +74,15 @@ def metered(step: str = "heater_left", procedure: str = "warm-up", *, strict: bo
     return scene(Play(procedure, instruments={"DM-04": meter}, controls=controls).to(step, picks={"next": "look"}))
 
 
+def unknown_accuracy() -> Scene:
+    """A result of a reading whose meter states no accuracy, against guarded limits."""
+    sheet = Play("warm-up").sheet
+    asked = next(step["control"]["limits"] for step in sheet["steps"] if step["id"] == "heater_hot")
+    bare = [ranged("20 V", "0", "20", "0.01", "") | {"digits": ""}]
+    play = Play("warm-up", instruments={"DM-04": {"ranges": bare}}, controls={"heater_hot": {"limits": asked | {"guarded": True}}})  # fmt: skip
+    return scene(play.to("heater_hot", picks={"next": "look"}))
+
+
 def safe_item() -> str:
     return str(Play("warm-up").sheet["make_safe"][0]["id"])
 
@@ -299,6 +308,7 @@ def _steps() -> list[Place]:
         Place("deviation", "phase pending", over_limit, deviation),
         Place("wait", "control wait", lambda: at("warm")),
         Place("result", "control result", lambda: at("heater_hot")),
+        Place("result, not judged", "control result", unknown_accuracy),
         Place("picture", "control picture", lambda: at("picture_meters")),
         Place("remark", "control remark", lambda: at("what_waits")),
         Place("hold", "control hold", lambda: at("walk_round", HV)),

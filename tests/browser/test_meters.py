@@ -139,6 +139,7 @@ def test_a_range_that_does_not_serve_is_said_so_before_anyone_reads(show: Any, n
     assert page.locator("[data-note]").count() == 0
     choose(page, name)
     assert page.inner_text("[data-beforehand]") == note
+    page.locator("[data-say]", has_text=note).wait_for(state="attached")
     # not by colour: its frame is broken, and the mark is the one of a reading that is not judged
     assert page.locator("[data-note] svg path[stroke-dasharray]").count() == 1
     assert page.evaluate("() => getComputedStyle(document.querySelector('[data-note]')).borderStyle") == "dashed"
